@@ -1,0 +1,290 @@
+"""What every stock value contributes to the checks of a transistor output, at every corner.
+
+Corners C are those of `corner_list`; the ends of a resistor's own tolerance are folded in where the direction is
+certain, and kept side by side (axis of two) where it is not.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, fields, replace
+from typing import TypeVar
+
+import numpy as np
+
+from optopick.brief import Brief, OutputCircuit, Position
+from optopick.corners import resistor_span
+from optopick.coupler import Coupler, Transfer, Transistor
+from optopick.model.corner_list import CornerList, corner_list
+from optopick.model.led_candidates import DARK_FRACTION, LedCandidates, led_candidates
+from optopick.physics import switching
+from optopick.physics.heat import derated, output_dissipation, resistor_derated
+from optopick.physics.leakage import dark_current, dark_current_held
+from optopick.physics.saturation import load_current, overdrive_to_hold, rise_with_current
+from optopick.physics.transfer import base_led_current, collector_current, led_current_for, relative_ctr
+from optopick.physics.types import Array
+
+
+@dataclass(frozen=True)
+class LoadCandidates:
+    """Load resistors in stock. r_load: (n,) [ohm].
+
+    Over corner C, the two ends of its tolerance, and value n: i_sat [A], tau [s], on and off fractions (C, 1, 1) of
+    the swing. Over (C, n): for_margin: LED current for the CTR margin [A] (None without that limit); for_level: LED
+    current that holds the on level [A]; leak_room: leakage the off level allows [A]. heat: (T, n) output dissipation
+    [W]; power: (n,) worst average power of the output path [W]. keep: check name to (n,) mask.
+    """
+
+    r_load: Array
+    i_sat: Array
+    tau: Array
+    on: Array
+    off: Array
+    for_margin: Array | None
+    for_level: Array
+    leak_room: Array
+    heat: Array
+    power: Array
+    keep: dict[str, np.ndarray]
+
+
+@dataclass(frozen=True)
+class BaseCandidates:
+    """Base-emitter resistors in stock, infinite where the position may stay empty. r_be: (n,) [ohm].
+
+    i_be_low, i_be_high: LED current it takes at its largest and at its least resistance [A]; leak: dark current [A];
+    all (C, n). keep: check name to (n,) mask.
+    """
+
+    r_be: Array
+    i_be_low: Array
+    i_be_high: Array
+    leak: Array
+    keep: dict[str, np.ndarray]
+
+
+@dataclass(frozen=True)
+class Candidates:
+    """All three positions of one coupler, its corners, and the light currents of every branch.
+
+    i_low, i_high: (C, n_led) extreme light [A]; i_lit_off: (C, n_led) collector current of the LED's rest [A].
+    total_room: (T,) package dissipation allowed [W]; c_be [F], tau_s [s], i_input_off [A].
+    """
+
+    corners: CornerList
+    led: LedCandidates
+    load: LoadCandidates
+    base: BaseCandidates
+    i_low: Array
+    i_high: Array
+    i_lit_off: Array
+    total_room: Array
+    c_be: float
+    tau_s: float
+    i_input_off: float
+
+    @property
+    def sizes(self) -> tuple[int, int, int]:
+        """Number of LED branches, load resistors, base resistors."""
+        return len(self.led.r_led), len(self.load.r_load), len(self.base.r_be)
+
+
+    def take(self, i: np.ndarray, j: np.ndarray, m: np.ndarray) -> Candidates:
+        """The same with only the LED branches `i`, load resistors `j` and base resistors `m`, in that order."""
+        return replace(
+            self,
+            led=_taken(self.led, i),
+            load=_taken(self.load, j),
+            base=_taken(self.base, m),
+            i_low=self.i_low[:, i],
+            i_high=self.i_high[:, i],
+            i_lit_off=self.i_lit_off[:, i],
+        )
+
+
+Part = TypeVar("Part", LedCandidates, LoadCandidates, BaseCandidates)
+
+
+def _taken(part: Part, values: np.ndarray) -> Part:
+    """One position with only some of its values: the last axis of every array but the fractions of the swing."""
+    changed: dict[str, object] = {"keep": {name: mask[values] for name, mask in part.keep.items()}}
+    for field in fields(part):
+        array = getattr(part, field.name)
+        if isinstance(array, np.ndarray) and field.name not in ("on", "off"):
+            changed[field.name] = array[..., values]
+    return replace(part, **changed)  # type: ignore[arg-type]
+
+
+def candidates(brief: Brief, coupler: Coupler) -> Candidates:
+    """Evaluate every stock value for a coupler with a transistor output."""
+    transfer, transistor = coupler.transfer, coupler.transistor
+    if transfer is None or transistor is None:
+        raise ValueError(f"{coupler.part} has no transistor output")
+    c = corner_list(brief, coupler, transfer, transistor)
+    led = led_candidates(brief, coupler, transfer.curve_i[0], DARK_FRACTION * transfer.i_ref)
+    light = 1.0 + c.age * (led.light - 1.0)
+    i_off = led.i_off[c.t_index]
+    g_off = relative_ctr(transfer, np.clip(i_off, transfer.curve_i[0], transfer.curve_i[-1]))
+    t = np.unique(c.t[:, 0])
+    return Candidates(
+        corners=c,
+        led=led,
+        load=_load(brief, coupler, transfer, transistor, c),
+        base=_base(brief, coupler, transfer, transistor, c),
+        i_low=led.i_min[c.t_index] * light,
+        i_high=led.i_max[c.t_index] * light,
+        i_lit_off=c.ctr * c.h * g_off * i_off,
+        total_room=derated(coupler.p_total, t),
+        c_be=transistor.c_be,
+        tau_s=transistor.tau_s,
+        i_input_off=input_current(brief, on=False),
+    )
+
+
+def input_current(brief: Brief, on: bool) -> float:
+    """What the receiver adds to the coupler's current with the output on, or off [A].
+
+    A low input sources input_current_low; either level leaks input_leakage.
+    """
+    output = brief.output
+    low = on == (output.circuit is OutputCircuit.PULL_UP)
+    return max(output.input_leakage, output.input_current_low) if low else output.input_leakage
+
+
+def _load(brief: Brief, coupler: Coupler, transfer: Transfer, transistor: Transistor, c: CornerList) -> LoadCandidates:
+    stock = brief.stock.r_load
+    r = _ends(stock, brief.stock.drift, c.t)
+    i_in = input_current(brief, on=True)
+    at = c.v_cc[:, :, None]
+    j_s = load_current(at, transistor.v_ce_sat, r, i_in)
+    i_sat = led_current_for(transfer, c.ctr[:, :, None], c.h[:, :, None], j_s)
+    tau = _tau(brief, transfer, transistor, c, r, i_sat)
+    on, off = _fractions(brief, transistor, c)
+    margin = brief.limits.ctr_margin
+    lifted = None if margin is None else led_current_for(transfer, c.ctr[:, :, None], c.h[:, :, None], margin * j_s)
+    t = np.unique(c.t[:, 0]).reshape(-1, 1)
+    r_t = resistor_span(np.asarray(stock.values), np.asarray(stock.tolerance), brief.stock.drift, t)[0]
+    v_max = float(c.v_cc.max())
+    heat = output_dissipation(v_max, r_t, i_in)
+    return LoadCandidates(
+        r_load=np.asarray(stock.values),
+        i_sat=np.asarray(np.minimum(i_sat, transfer.curve_i[-1])),
+        tau=tau,
+        on=on,
+        off=off,
+        for_margin=None if lifted is None else np.asarray(lifted.max(axis=1)),
+        for_level=_for_level(brief, transfer, transistor, c, r, j_s),
+        leak_room=_leak_room(brief, c, r),
+        heat=heat,
+        power=brief.signal.lit * v_max * load_current(v_max, transistor.v_ce_sat, r_t, i_in).max(axis=0),
+        keep=_load_masks(coupler, transfer, transistor, c, stock, j_s, heat, v_max * v_max / r_t),
+    )
+
+
+def _ends(position: Position, drift: float, t: Array) -> Array:
+    """Least and largest resistance of every value at every corner, (C, 2, n) [ohm]."""
+    ends = resistor_span(np.asarray(position.values), np.asarray(position.tolerance), drift, t)
+    return np.stack(ends, axis=1)
+
+
+def _tau(brief: Brief, transfer: Transfer, transistor: Transistor, c: CornerList, r: Array, i_sat: Array) -> Array:
+    """Time constants, (C, 2, n) [s]; infinite where the CTR curve does not reach the load's current."""
+    reachable = np.isfinite(i_sat)
+    g = relative_ctr(transfer, np.where(reachable, i_sat, transfer.curve_i[-1]))
+    gain = c.h_fe[:, :, None] * g / transistor.h_fe
+    tau = switching.time_constant(transistor.tau_0, transistor.c_m, gain, r, brief.output.capacitance)
+    return np.asarray(np.where(reachable, tau, np.inf))
+
+
+def _fractions(brief: Brief, transistor: Transistor, c: CornerList) -> tuple[Array, Array]:
+    """Share of the swing up to the receiver's threshold, turning on and off, (C, 1, 1) [1]."""
+    full = c.v_cc - transistor.v_ce_sat
+    if brief.output.circuit is OutputCircuit.PULL_UP:
+        on, off = (c.v_cc - c.v_il) / full, (c.v_ih - transistor.v_ce_sat) / full
+    else:
+        on, off = c.v_ih / full, 1.0 - c.v_il / full
+    return np.maximum(on, 0.0)[:, :, None], np.clip(off, 0.0, 1.0 - 1e-9)[:, :, None]
+
+
+def _for_level(brief: Brief, transfer: Transfer, transistor: Transistor, c: CornerList, r: Array, j_s: Array) -> Array:
+    """LED current, less the base resistor's, that holds the output's on level, (C, n) [A]."""
+    noise = brief.output.noise_margin
+    pulled_up = brief.output.circuit is OutputCircuit.PULL_UP
+    v_ce = (c.v_il - noise if pulled_up else c.v_cc - c.v_ih - noise)[:, :, None]
+    sheet = float(collector_current(transfer, transfer.ctr_min, 1.0, transistor.sat_i_f)) / transistor.sat_i_c
+    v_sat = rise_with_current(transistor.v_ce_sat, j_s, transistor.sat_i_c)
+    t, h_fe = c.t[:, :, None], c.h_fe[:, :, None]
+    overdrive = overdrive_to_hold(v_ce, v_sat, sheet, h_fe, transistor.beta_r, t)
+    carried = np.maximum(load_current(c.v_cc[:, :, None], v_ce, r, input_current(brief, on=True)), 1e-12)
+    i = led_current_for(transfer, c.ctr[:, :, None], c.h[:, :, None], overdrive * carried)
+    return np.asarray(i.max(axis=1))
+
+
+def _leak_room(brief: Brief, c: CornerList, r: Array) -> Array:
+    """Leakage that the off level allows, the receiver's own included, (C, n) [A]."""
+    noise = brief.output.noise_margin
+    pulled_up = brief.output.circuit is OutputCircuit.PULL_UP
+    swing = c.v_cc - c.v_ih - noise if pulled_up else c.v_il - noise
+    return np.asarray((swing[:, :, None] / r).min(axis=1))
+
+
+def _load_masks(
+    coupler: Coupler,
+    transfer: Transfer,
+    transistor: Transistor,
+    c: CornerList,
+    stock: Position,
+    j_s: Array,
+    heat: Array,
+    p_load: Array,
+) -> dict[str, np.ndarray]:
+    """Limits on the load resistor alone: check name to mask, (n,) each."""
+    t = np.unique(c.t[:, 0]).reshape(-1, 1)
+    top = np.minimum(derated(coupler.led.i_max, c.t), transfer.curve_i[-1])
+    most = collector_current(transfer, c.ctr, c.h, top)
+    v_max = float(c.v_cc.max())
+    held = {
+        "deliverable_current": j_s.max(axis=1) <= most,
+        "collector_current": j_s.max(axis=1) <= transistor.i_c_max,
+        "collector_voltage": np.full((1, len(stock.values)), v_max <= transistor.v_ceo),
+        "output_power": heat <= derated(coupler.p_out, t),
+        "r_load_power": p_load <= resistor_derated(np.asarray(stock.power), t),
+        "r_load_voltage": np.full((1, len(stock.values)), v_max) <= np.asarray(stock.voltage),
+    }
+    return {name: np.asarray(mask.all(axis=0)) for name, mask in held.items()}
+
+
+def _base(brief: Brief, coupler: Coupler, transfer: Transfer, transistor: Transistor, c: CornerList) -> BaseCandidates:
+    stock = brief.stock.r_be if coupler.base_pin else None
+    if stock is None:
+        return _no_base(transistor, c)
+    values = np.append(stock.values, np.inf) if stock.absent else np.asarray(stock.values)
+    pad = values.size - len(stock.values)
+    tolerance, rating = np.append(stock.tolerance, [0.0] * pad), np.append(stock.power, [1e9] * pad)
+    low, high = resistor_span(values, tolerance, brief.stock.drift, c.t)
+    h_fe_cold = c.ctr / (np.sqrt(transfer.ctr_min * transfer.ctr_max) * c.light) * transistor.h_fe
+    leak = [dark_current_held(_dark(transistor, c), h_fe_cold, r) for r in (low, high)]
+    return BaseCandidates(
+        r_be=values,
+        i_be_low=base_led_current(c.v_be, high, c.eta),
+        i_be_high=base_led_current(c.v_be, low, c.eta),
+        leak=np.maximum(*leak),
+        keep={"r_be_power": np.asarray((c.v_be**2 / low <= resistor_derated(rating, c.t)).all(axis=0))},
+    )
+
+
+def _no_base(transistor: Transistor, c: CornerList) -> BaseCandidates:
+    """The one choice of a coupler whose base is not brought out, or of a brief without that position."""
+    none = np.zeros((c.count, 1))
+    return BaseCandidates(np.array([np.inf]), none, none, _dark(transistor, c), {})
+
+
+def _dark(transistor: Transistor, c: CornerList) -> Array:
+    return dark_current(transistor.i_ceo_1, transistor.t_1, transistor.i_ceo_2, transistor.t_2, c.t)
+
+
+def triples(sizes: tuple[int, int, int]) -> int:
+    """Number of combinations."""
+    return int(np.prod(sizes))
+
+
+__all__ = ["BaseCandidates", "Candidates", "LoadCandidates", "candidates", "input_current", "triples"]

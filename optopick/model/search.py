@@ -1,0 +1,164 @@
+"""The best design of one coupler under limits, with its proof: tighten, solve, evaluate exactly, ask for better."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from optopick.brief import GoalName
+from optopick.model.box import Box, Choice, narrowed, tightened, whole_box
+from optopick.model.ranges import undominated
+from optopick.model.rows import Ask, Rows
+from optopick.model.solver import Answer, Clock, Outcome, Problem, solve
+from optopick.model.transistor import TransistorModel
+
+STEP = 1e-6
+"""A design counts as better only if it is so by this share; the proof's resolution."""
+
+GRID = (24, 10, 8)
+"""How many values per position the first look tries."""
+
+
+@dataclass(frozen=True)
+class Found:
+    """The best combination, its goal's value, and the bound below which the coupler has none.
+
+    Where no combination is better than the value to beat, `choice` is None and `value` is that value; an infinite
+    bound says that the coupler has no design at all.
+    """
+
+    choice: Choice | None
+    value: float
+    bound: float
+
+
+def best(model: TransistorModel, goal: GoalName, ask: Ask, clock: Clock, below: float = np.inf) -> Found:
+    """The least `goal` of one coupler within `ask`, if it is better than `below`.
+
+    Each round asks for a design better than the best so far. A round ends the search when ranges or the solver show
+    that there is none: that is the proof. Where time runs out, `bound` is the best that is shown so far.
+    """
+    return _Search(model, goal, ask, clock).run(below)
+
+
+def first_look(model: TransistorModel, goal: GoalName, ask: Ask) -> tuple[Choice, float] | None:
+    """A good design of one coupler, found without the solver and without proof; None where none shows."""
+    box = whole_box(model, ask)
+    box = tightened(box, ask) if box else None
+    found = _look(box, goal, ask) if box else None
+    return (box.whole(found[0]), found[1]) if box and found else None
+
+
+class _Search:
+    def __init__(self, model: TransistorModel, goal: GoalName, ask: Ask, clock: Clock) -> None:
+        self.goal, self.ask, self.clock = goal, ask, clock
+        self.box = whole_box(model, ask)
+        self.scale = float(sum(np.median(part) for part in model.power))
+
+    def run(self, below: float) -> Found:
+        choice: Choice | None = None
+        value, bound = below, 0.0
+        while bound < value * (1 - STEP):
+            wanted = self._better_than(value)
+            self.box = narrowed(self.box, wanted) if self.box else None
+            if self.box is None:
+                self.clock.by_ranges += 1
+                return _proved(choice, value)
+            better = _look(self.box, self.goal, wanted)
+            if better is None:
+                outcome, better = self._solve(self.box, wanted)
+                bound = max(bound, outcome.bound * self.scale) if self.goal is GoalName.POWER else bound
+                if outcome.answer is Answer.NONE:
+                    return _proved(choice, value)
+                if better is None:
+                    return Found(choice, value, max(bound, self._bound_by_ranges(value)))
+            choice, value = self.box.whole(better[0]), better[1]
+        return Found(choice, value, bound)
+
+    def _better_than(self, value: float) -> Ask:
+        """What a better design must do."""
+        if not np.isfinite(value):
+            return self.ask
+        return self.ask.limited(self.goal, min(self.ask.limit(self.goal), value * (1 - STEP)))
+
+    def _solve(self, box: Box, wanted: Ask) -> tuple[Outcome, tuple[Choice, float] | None]:
+        """Solver calls, with cuts for what the exact times refuse, until one answer stands."""
+        cut: Box | None = box
+        while cut is not None and not self.clock.out:
+            outcome = solve(Problem(undominated(cut.rows), cut.model.sizes, self._linear_goal(cut)), self.clock.left)
+            self.clock.solves += 1
+            self.box = cut
+            if outcome.choice is None:
+                return outcome, None
+            index = tuple(np.array([k]) for k in outcome.choice)
+            scores = cut.model.scores(*index)
+            if bool(scores.within(wanted)[0]) and bool(cut.rows.holds(*index)[0]):
+                return outcome, (outcome.choice, float(scores.of(self.goal)[0]))
+            cut = tightened(cut.with_cuts(_cuts(cut, wanted, outcome.choice)), wanted)
+        return (Outcome(Answer.OUT_OF_TIME, None, 0.0) if cut else Outcome(Answer.NONE, None, np.inf)), None
+
+    def _linear_goal(self, box: Box) -> tuple[np.ndarray, np.ndarray] | None:
+        if self.goal is not GoalName.POWER:
+            return None
+        p, q = box.model.power
+        return p / self.scale, q / self.scale
+
+    def _bound_by_ranges(self, value: float) -> float:
+        """The largest goal that tightening alone excludes, by bisection; 0 where there is nothing to halve."""
+        low, high = 0.0, value if np.isfinite(value) else 0.0
+        for _ in range(20):
+            middle = (low + high) / 2
+            gone = self.box is None or narrowed(self.box, self.ask.limited(self.goal, middle)) is None
+            low, high = (middle, high) if gone else (low, middle)
+        return low
+
+
+def _proved(choice: Choice | None, value: float) -> Found:
+    """Nothing better than `value` exists; nothing at all where no value was to be beaten."""
+    return Found(choice, value, value * (1 - STEP) if np.isfinite(value) else np.inf)
+
+
+def _cuts(box: Box, wanted: Ask, choice: Choice) -> Rows:
+    """Rows that forbid a combination the exact times refuse, and as many like it as can be."""
+    cuts = box.model.cuts(wanted, *choice)
+    index = tuple(np.array([k]) for k in choice)
+    return _only(choice, box.model.sizes) if not len(cuts) or bool(cuts.holds(*index)[0]) else cuts
+
+
+def _only(choice: Choice, sizes: tuple[int, int, int]) -> Rows:
+    """A row that forbids one combination and no other."""
+    parts = []
+    for k, n in zip(choice, sizes, strict=True):
+        part = np.ones(n)
+        part[k] = -0.3
+        parts.append(part[None, :])
+    return Rows(("one_combination",), *parts)
+
+
+def _look(box: Box, goal: GoalName, wanted: Ask) -> tuple[Choice, float] | None:
+    """A coarse grid over the box, then all neighbours of the best: cheap, and often enough."""
+    found = _best_of(box, [_spread(n, count) for n, count in zip(box.model.sizes, GRID, strict=True)], goal, wanted)
+    while found is not None:
+        near = [np.arange(max(k - 4, 0), min(k + 5, n)) for k, n in zip(found[0], box.model.sizes, strict=True)]
+        nearer = _best_of(box, near, goal, wanted)
+        if nearer is None or nearer[1] >= found[1]:
+            return found
+        found = nearer
+    return None
+
+
+def _best_of(box: Box, values: list[np.ndarray], goal: GoalName, wanted: Ask) -> tuple[Choice, float] | None:
+    i, j, m = (axis.ravel() for axis in np.meshgrid(*values, indexing="ij"))
+    keep = box.rows.holds(i, j, m)
+    if not keep.any():
+        return None
+    i, j, m = i[keep], j[keep], m[keep]
+    scores = box.model.scores(i, j, m)
+    values_ = np.where(scores.within(wanted), scores.of(goal), np.inf)
+    k = int(values_.argmin())
+    return ((int(i[k]), int(j[k]), int(m[k])), float(values_[k])) if np.isfinite(values_[k]) else None
+
+
+def _spread(size: int, count: int) -> np.ndarray:
+    return np.unique(np.linspace(0, size - 1, min(size, count)).astype(int))

@@ -1,0 +1,142 @@
+"""The one module that knows Pyomo and HiGHS: one value per position, every row held, least of a linear goal."""
+
+from __future__ import annotations
+
+import time
+from dataclasses import dataclass
+from enum import StrEnum
+from typing import Any
+
+import numpy as np
+
+from optopick.model.rows import Rows
+from optopick.physics.types import Array
+
+FEASIBILITY = 1e-9
+"""HiGHS's absolute tolerance on rows and on integrality; rows come scaled to about one."""
+
+
+class Answer(StrEnum):
+    """What one solver call established."""
+
+    FOUND = "found"
+    NONE = "none"
+    OUT_OF_TIME = "out of time"
+
+
+@dataclass(frozen=True)
+class Outcome:
+    """An answer, the combination (i, j, m) where there is one, and the goal's lower bound."""
+
+    answer: Answer
+    choice: tuple[int, int, int] | None
+    bound: float
+
+
+@dataclass(frozen=True)
+class Problem:
+    """Rows, the sizes of the positions, and a linear goal p[i] + q[j] (None where any design will do)."""
+
+    rows: Rows
+    sizes: tuple[int, int, int]
+    goal: tuple[Array, Array] | None
+
+
+def solver_name() -> str:
+    """The solver and its version, for the proof line."""
+    from importlib.metadata import version  # noqa: PLC0415
+
+    return f"HiGHS {version('highspy')} through Pyomo {version('pyomo')}"
+
+
+def build(problem: Problem) -> Any:
+    """The Pyomo model: binaries `pick_led`, `pick_load`, `pick_base`, one chosen in each, and the rows in order."""
+    import pyomo.environ as pyo  # noqa: PLC0415 - half a second that help and input errors must not pay
+    from pyomo.core.expr.numeric_expr import LinearExpression  # noqa: PLC0415
+
+    model = pyo.ConcreteModel()
+    chosen: list[Any] = []
+    for name, size in zip(("led", "load", "base"), problem.sizes, strict=True):
+        binaries = pyo.Var(range(size), domain=pyo.Binary)
+        model.add_component(f"pick_{name}", binaries)
+        chosen.extend(binaries.values())
+        one = LinearExpression(linear_coefs=[1.0] * size, linear_vars=list(binaries.values()))
+        model.add_component(f"one_{name}", pyo.Constraint(expr=one == 1.0))
+    model.rows = pyo.ConstraintList()
+    for k in range(len(problem.rows)):
+        terms = LinearExpression(linear_coefs=_coefficients(problem, k), linear_vars=chosen)
+        model.rows.add(terms >= 0.0)
+    model.goal = pyo.Objective(expr=LinearExpression(linear_coefs=_costs(problem), linear_vars=chosen))
+    return model
+
+
+def _coefficients(problem: Problem, k: int) -> list[float]:
+    rows = problem.rows
+    found: list[float] = np.concatenate([rows.a[k], rows.b[k], rows.c[k]]).tolist()
+    return found
+
+
+def _costs(problem: Problem) -> list[float]:
+    if problem.goal is None:
+        return [0.0] * sum(problem.sizes)
+    found: list[float] = np.concatenate([*problem.goal, np.zeros(problem.sizes[2])]).tolist()
+    return found
+
+
+def solve(problem: Problem, seconds: float) -> Outcome:
+    """Solve with one thread and a fixed seed, within `seconds`. Infinite row entries must have been ranged out."""
+    from pyomo.contrib.solver.common.results import SolutionStatus, TerminationCondition  # noqa: PLC0415
+    from pyomo.contrib.solver.solvers.highs import Highs  # noqa: PLC0415
+
+    model = build(problem)
+    solver = Highs()
+    config = solver.config
+    config.load_solutions, config.raise_exception_on_nonoptimal_result = False, False
+    config.threads, config.rel_gap, config.abs_gap = 1, 0.0, 1e-9
+    config.time_limit = max(seconds, 0.01) if np.isfinite(seconds) else None
+    config.solver_options = {
+        "random_seed": 7,
+        "mip_feasibility_tolerance": FEASIBILITY,
+        "primal_feasibility_tolerance": FEASIBILITY,
+    }
+    found = solver.solve(model)
+    bound = -np.inf if found.objective_bound is None else float(found.objective_bound)
+    if found.solution_status in (SolutionStatus.optimal, SolutionStatus.feasible):
+        found.solution_loader.load_vars()
+        return Outcome(Answer.FOUND, _chosen(model), bound)
+    if found.termination_condition is TerminationCondition.provenInfeasible:
+        return Outcome(Answer.NONE, None, np.inf)
+    if found.termination_condition is TerminationCondition.maxTimeLimit:
+        return Outcome(Answer.OUT_OF_TIME, None, bound)
+    raise RuntimeError(f"the solver stopped without an answer: {found.termination_condition}")
+
+
+def _chosen(model: Any) -> tuple[int, int, int]:
+    parts = (model.pick_led, model.pick_load, model.pick_base)
+    picked = [max(part, key=lambda index: part[index].value) for part in parts]
+    return picked[0], picked[1], picked[2]
+
+
+class Clock:
+    """A deadline, and the count of solver calls made under it."""
+
+    def __init__(self, seconds: float = np.inf) -> None:
+        self.started = time.monotonic()
+        self.deadline = self.started + seconds
+        self.solves = 0
+        self.by_ranges = 0
+
+    @property
+    def left(self) -> float:
+        """Seconds left."""
+        return self.deadline - time.monotonic()
+
+    @property
+    def spent(self) -> float:
+        """Seconds since the start."""
+        return time.monotonic() - self.started
+
+    @property
+    def out(self) -> bool:
+        """Whether the time is up."""
+        return self.left <= 0

@@ -1,0 +1,269 @@
+"""The rows, exact times and cuts of a coupler with a transistor output."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Iterator
+from dataclasses import dataclass
+from functools import cached_property
+
+import numpy as np
+
+from optopick.brief import Brief
+from optopick.coupler import Coupler
+from optopick.model.candidates import Candidates, candidates
+from optopick.model.ranges import Live
+from optopick.model.rows import Ask, Rows, Scores, scaled, stack
+from optopick.physics import switching
+from optopick.physics.types import Array
+
+Index = np.ndarray
+
+STAIRCASES = 48
+"""How many base resistors get a cut at once."""
+
+
+@dataclass(frozen=True)
+class Family:
+    """A time at corners and load ends, monotone in the light and in what the base resistor takes.
+
+    time(i_eff, i_be, select): time [s] for load parameters picked by `select` (a function from (C, 2, n) arrays).
+    more_light_hurts, more_base_hurts: the directions. limit: the field of Ask.
+    """
+
+    name: str
+    limit: str
+    more_light_hurts: bool
+    more_base_hurts: bool
+
+
+FAMILIES = (
+    Family("delay_on", "delay", more_light_hurts=False, more_base_hurts=True),
+    Family("delay_off", "delay", more_light_hurts=True, more_base_hurts=False),
+    Family("late_off", "distortion", more_light_hurts=True, more_base_hurts=False),
+    Family("late_on", "distortion", more_light_hurts=False, more_base_hurts=True),
+)
+"""late_off: delay off less delay on; late_on: the other way round."""
+
+
+@dataclass(frozen=True)
+class LoadSide:
+    """Load parameters at the corners in question, broadcast against the light: time constant and friends."""
+
+    tau: Array
+    i_sat: Array
+    on: Array
+    off: Array
+    v_be: Array
+    eta: Array
+
+
+@dataclass(frozen=True)
+class Extremes:
+    """Light [A] and what the base resistor takes of it [A] at one extreme of the live values, (C, 1, 1) each."""
+
+    i_low: Array
+    i_high: Array
+    i_be_low: Array
+    i_be_high: Array
+
+
+class TransistorModel:
+    """One coupler with a transistor output, against every value in stock."""
+
+    def __init__(self, brief: Brief, found: Candidates) -> None:
+        self.brief = brief
+        self.candidates = found
+        self.sizes = found.sizes
+
+    @classmethod
+    def of(cls, brief: Brief, coupler: Coupler) -> TransistorModel:
+        """The model of a coupler over all that the brief stocks."""
+        return cls(brief, candidates(brief, coupler))
+
+    def take(self, i: Index, j: Index, m: Index) -> TransistorModel:
+        """The model over some of the values."""
+        return TransistorModel(self.brief, self.candidates.take(i, j, m))
+
+    @property
+    def power(self) -> tuple[Array, Array]:
+        """Worst average power of each LED branch and of each load resistor [W]."""
+        return self.candidates.led.power, self.candidates.load.power
+
+    def start(self, dropped: frozenset[str] = frozenset()) -> Live:
+        """The values that hold the limits on one value alone."""
+        parts = (self.candidates.led.keep, self.candidates.load.keep, self.candidates.base.keep)
+        masks = []
+        for keep, n in zip(parts, self.sizes, strict=True):
+            held = [mask for name, mask in keep.items() if name not in dropped]
+            masks.append(np.all([np.ones(n, dtype=bool), *held], axis=0))
+        return Live(*masks)
+
+    def rows(self, ask: Ask) -> Rows:
+        """Every linear row of what is asked; for delays a relaxation, the closer the fewer values are left."""
+        blocks = [*self._static(ask.dropped), *self._edges(ask), *self._delays(ask)]
+        if np.isfinite(ask.power):
+            p, q = self.power
+            blocks.append(scaled("power", ask.power - p, -q, np.zeros(self.sizes[2])))
+        return stack(blocks, self.sizes)
+
+    @cached_property
+    def _all_static(self) -> tuple[Rows, ...]:
+        x = self.candidates
+        zero_base = np.zeros(self.sizes[2])
+        blocks = []
+        if x.load.for_margin is not None:
+            blocks.append(scaled("ctr_margin", x.i_low, -x.load.for_margin, -x.base.i_be_high))
+        level_on, level_off = ("output_low", "output_high") if self._pulled_up else ("output_high", "output_low")
+        blocks.append(scaled(level_on, x.i_low, -x.load.for_level, -x.base.i_be_high))
+        blocks.append(scaled(level_off, -x.i_lit_off, x.load.leak_room - x.i_input_off, -x.base.leak))
+        total = scaled("total_power", x.total_room.reshape(-1, 1) - x.led.heat, -x.load.heat, zero_base)
+        conducts = scaled("conducts", x.i_low, 0.0 * x.load.leak_room, -x.base.i_be_high * (1 + 1e-6))
+        return (*blocks, total, conducts)
+
+    @property
+    def _pulled_up(self) -> bool:
+        return self.brief.output.circuit == "pull-up"
+
+    def _static(self, dropped: frozenset[str]) -> Iterator[Rows]:
+        return (block for block in self._all_static if block.names[0] not in dropped)
+
+    def _edges(self, ask: Ask) -> Iterator[Rows]:
+        """Edge on: i_eff - i_be >= phi[j]; edge off: i_be >= rho[j]; both exact."""
+        if not np.isfinite(ask.edge):
+            return
+        x = self.candidates
+        phi = switching.drive_for_edge_on(ask.edge, x.load.tau, x.load.i_sat).max(axis=1)
+        rho = switching.extraction_for_edge_off(ask.edge, x.load.tau, x.load.i_sat).max(axis=1)
+        yield scaled("edge_on", x.i_low, -phi, -x.base.i_be_high)
+        yield scaled("edge_off", np.zeros(self.sizes[0]), -rho, x.base.i_be_low)
+
+    def _delays(self, ask: Ask) -> Iterator[Rows]:
+        """Each part of a delay must fit beside the least that the other parts can be.
+
+        A limit on distortion bounds each delay by the most that the other can be.
+        """
+        if not ask.has_delays:
+            return
+        strong, weak = self._extremes(light_most=True), self._extremes(light_most=False)
+        longest_on = self._time("delay_on", self._everywhere, weak.i_high, weak.i_be_low)
+        longest_off = self._time("delay_off", self._everywhere, strong.i_low, strong.i_be_high)
+        yield from self._on_rows(np.minimum(ask.delay, ask.distortion + longest_off), strong)
+        yield from self._off_rows(np.minimum(ask.delay, ask.distortion + longest_on), weak)
+
+    def _extremes(self, light_most: bool) -> Extremes:
+        """The values at each corner that switch on fastest (most light, least taken), or off fastest."""
+        x = self.candidates
+        first, second = (np.max, np.min) if light_most else (np.min, np.max)
+        light = [first(a, axis=1)[:, None, None] for a in (x.i_low, x.i_high)]
+        taken = [second(a, axis=1)[:, None, None] for a in (x.base.i_be_low, x.base.i_be_high)]
+        return Extremes(*light, *taken)
+
+    @cached_property
+    def _everywhere(self) -> LoadSide:
+        return self._side(np.arange(self.candidates.corners.count)[:, None, None])
+
+    def _on_rows(self, limit: Array, strong: Extremes) -> Iterator[Rows]:
+        """Delay on within `limit` (C, 2, n): the crossing beside the shortest charging."""
+        x, side = self.candidates, self._everywhere
+        charge = switching.base_charging(x.c_be, side.v_be, side.eta, strong.i_low, strong.i_be_high)
+        phi = switching.drive_for_crossing_on(limit - charge, x.load.tau, x.load.on, x.load.i_sat)
+        yield scaled("delay_on", x.i_low, -phi.max(axis=1), -x.base.i_be_high)
+
+    def _off_rows(self, limit: Array, weak: Extremes) -> Iterator[Rows]:
+        """Delay off within `limit` (C, 2, n): the fall beside the shortest storage, and the storage beside the fall."""
+        x = self.candidates
+        held = switching.storage(x.tau_s, weak.i_high, weak.i_be_low, x.load.i_sat)
+        rho = switching.extraction_for_crossing_off(limit - held, x.load.tau, x.load.off, x.load.i_sat)
+        yield scaled("delay_off", np.zeros(self.sizes[0]), -rho.max(axis=1), x.base.i_be_low)
+        fall = switching.crossing_off(x.load.tau, x.load.off, weak.i_be_low, x.load.i_sat)
+        stretch = np.exp(np.clip((limit - fall) / x.tau_s, -50.0, 50.0))
+        room = (stretch * x.load.i_sat).min(axis=1)
+        most = stretch.min(axis=1).max(axis=1)[:, None]
+        yield scaled("storage", -x.i_high, room, most * x.base.i_be_low)
+
+    def _side(self, corner: Index, end: Index | None = None, j: Index | None = None) -> LoadSide:
+        """Load parameters at corners (and ends and values, where given)."""
+        x, c = self.candidates, self.candidates.corners
+        flat = np.asarray(corner)
+        pick: Callable[[Array], Array] = (lambda a: a) if end is None or j is None else (lambda a: a[flat, end, j])
+        return LoadSide(
+            tau=pick(x.load.tau),
+            i_sat=pick(x.load.i_sat),
+            on=x.load.on[flat, 0, 0],
+            off=x.load.off[flat, 0, 0],
+            v_be=c.v_be[flat, 0],
+            eta=c.eta[flat, 0],
+        )
+
+    def _time(self, family: str, side: LoadSide, i_eff: Array, i_be: Array) -> Array:
+        """The time of a family [s]; every argument broadcasts."""
+        if family == "delay_on":
+            charge = switching.base_charging(self.candidates.c_be, side.v_be, side.eta, i_eff, i_be)
+            return charge + switching.crossing_on(side.tau, side.on, i_eff, i_be, side.i_sat)
+        if family == "delay_off":
+            held = switching.storage(self.candidates.tau_s, i_eff, i_be, side.i_sat)
+            return held + switching.crossing_off(side.tau, side.off, i_be, side.i_sat)
+        on, off = (self._time(name, side, i_eff, i_be) for name in ("delay_on", "delay_off"))
+        with np.errstate(invalid="ignore"):
+            late = off - on if family == "late_off" else on - off
+        return np.nan_to_num(late, nan=np.inf, posinf=np.inf, neginf=-np.inf)
+
+    def _worst_times(self, family: Family, i: Index, j: Index, m: Index) -> Array:
+        """Times of K designs at every corner and load end, (C, 2, K) [s]."""
+        x = self.candidates
+        light = (x.i_high if family.more_light_hurts else x.i_low)[:, None, i]
+        taken = (x.base.i_be_high if family.more_base_hurts else x.base.i_be_low)[:, None, m]
+        corner = np.arange(x.corners.count)[:, None, None]
+        side = self._side(corner, np.array([0, 1])[None, :, None], j[None, None, :])
+        return self._time(family.name, side, light, taken)
+
+    def scores(self, i: Index, j: Index, m: Index) -> Scores:
+        """Worst-case goals of K designs, exactly."""
+        x = self.candidates
+        tau, i_sat = x.load.tau[:, :, j], x.load.i_sat[:, :, j]
+        on = switching.edge_on(tau, x.i_low[:, None, i], x.base.i_be_high[:, None, m], i_sat)
+        off = switching.edge_off(tau, x.base.i_be_low[:, None, m], i_sat)
+        by_name = {family.name: self._worst_times(family, i, j, m).max(axis=(0, 1)) for family in FAMILIES}
+        p, q = self.power
+        return Scores(
+            edge=np.maximum(on, off).max(axis=(0, 1)),
+            delay=np.maximum(by_name["delay_on"], by_name["delay_off"]),
+            distortion=np.maximum(by_name["late_on"], by_name["late_off"]),
+            power=p[i] + q[j],
+        )
+
+    def cuts(self, ask: Ask, i: int, j: int, m: int) -> Rows:
+        """Staircase rows that forbid (i, j, m) and all that are worse, for each family of times that it fails.
+
+        Other base resistors get their staircases at the same corner too: they would fail next.
+        """
+        blocks: list[Rows] = []
+        others = _spread(np.arange(self.sizes[2]), STAIRCASES).tolist()
+        for family in FAMILIES:
+            limit = getattr(ask, family.limit)
+            late = self._worst_times(family, *(np.array([k]) for k in (i, j, m)))[:, :, 0]
+            if late.max() > limit:
+                corner, end = (int(k) for k in np.unravel_index(int(late.argmax()), late.shape))
+                blocks.extend(self._staircase(family, limit, (corner, end), k) for k in sorted({m, *others}))
+        return stack(blocks, self.sizes)
+
+    def _staircase(self, family: Family, limit: float, at: tuple[int, int], m: int) -> Rows:
+        """For base resistor m and those that are worse at this corner: the least rank of light that each load needs."""
+        x, (corner, end) = self.candidates, at
+        light = (x.i_high if family.more_light_hurts else x.i_low)[corner]
+        taken = (x.base.i_be_high if family.more_base_hurts else x.base.i_be_low)[corner]
+        order = np.argsort(-light if family.more_light_hurts else light, kind="stable")
+        load = np.arange(self.sizes[1])[:, None]
+        side = self._side(np.full_like(load, corner), np.full_like(load, end), load)
+        fails = self._time(family.name, side, light[order][None, :], taken[m]) > limit
+        rank = np.empty(len(order))
+        rank[order] = np.arange(len(order)) / len(order)
+        need = fails.sum(axis=1) / len(order)
+        worse = taken >= taken[m] if family.more_base_hurts else taken <= taken[m]
+        return Rows((family.name,), rank[None, :], -need[None, :], np.where(worse, 0.0, 1.0)[None, :])
+
+
+def _spread(live: Index, count: int) -> Index:
+    """At most `count` of the live values, evenly."""
+    picked: Index = live if len(live) <= count else live[np.unique(np.linspace(0, len(live) - 1, count).astype(int))]
+    return picked

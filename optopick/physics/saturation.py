@@ -1,0 +1,79 @@
+"""The output on: load current, overdrive, and how low the collector-emitter voltage goes."""
+
+from __future__ import annotations
+
+import numpy as np
+
+from optopick.physics.led import thermal_voltage
+from optopick.physics.types import Array, Real
+
+
+def load_current(v_cc: Real, v_ce: Real, r_load: Real, i_input: Real = 0.0) -> Array:
+    """Current the output must carry at `v_ce` [A]: (v_cc - v_ce)/r_load + i_input.
+
+    Voltages [V], r_load > 0 [ohm], i_input: what the receiver adds [A]. Broadcasts.
+    """
+    return np.asarray((np.asarray(v_cc) - v_ce) / np.asarray(r_load) + i_input)
+
+
+def smallest_load(v_cc: Real, v_ol: Real, ctr: Real, i_f: Real, i_l: Real) -> Array:
+    """Smallest load resistor that still saturates [ohm]: (v_cc - v_ol)/(ctr*i_f - i_l).
+
+    ctr: in saturation [1], currents [A], voltages [V]; infinite where the drive does not even cover `i_l`.
+    Broadcasts. Source: Vishay application note 45.
+    """
+    left = np.asarray(ctr) * i_f - i_l
+    return np.asarray(np.where(left > 0, (np.asarray(v_cc) - v_ol) / np.where(left > 0, left, 1.0), np.inf))
+
+
+def smallest_base_resistor(v_be: Real, h_fe: Real, r_load: Real, i_cb: Real, v_swing: Real) -> Array:
+    """Base-emitter resistor below which the output no longer saturates [ohm].
+
+    v_be*h_fe*r_load/(i_cb*h_fe*r_load - v_swing): the photocurrent `i_cb` [A] less v_be/r_be, times h_fe, carries
+    v_swing/r_load. Infinite where the light alone does not saturate. Broadcasts. Source: Vishay application note 45.
+    """
+    left = np.asarray(i_cb) * h_fe * r_load - v_swing
+    return np.asarray(np.where(left > 0, np.asarray(v_be) * h_fe * r_load / np.where(left > 0, left, 1.0), np.inf))
+
+
+def saturation_shape(overdrive: Real, h_fe: Real, beta_r: float) -> Array:
+    """Argument of the Ebers-Moll saturation logarithm [1]: (1/alpha_r + x/beta_r)/(1 - x/h_fe), x = h_fe/overdrive.
+
+    overdrive > 1: base current over what the load needs [1]. v_ce differs by (kT/q)*ln of the ratio of two of these.
+    Broadcasts. Source: Ebers and Moll, Proc. IRE 42 (1954) 1761.
+    """
+    y = 1.0 / np.asarray(overdrive)
+    inverse_alpha = (1.0 + beta_r) / beta_r
+    return np.asarray((inverse_alpha + y * np.asarray(h_fe) / beta_r) / (1.0 - y))
+
+
+def v_ce_on(v_ce_sat: Real, overdrive_sheet: Real, overdrive: Real, h_fe: Real, beta_r: float, t: Real) -> Array:
+    """Collector-emitter voltage on [V]: the sheet's figure from the sheet's overdrive up, more below it.
+
+    v_ce_sat + (kT/q)*max(0, ln(shape(overdrive)/shape(overdrive_sheet))); infinite for overdrive <= 1.
+    Broadcasts. See `saturation_shape`.
+    """
+    k = np.asarray(overdrive, dtype=float)
+    safe = np.where(k > 1, k, 2.0)
+    ratio = saturation_shape(safe, h_fe, beta_r) / saturation_shape(overdrive_sheet, h_fe, beta_r)
+    return np.asarray(np.where(k > 1, v_ce_sat + thermal_voltage(t) * np.maximum(np.log(ratio), 0.0), np.inf))
+
+
+def overdrive_to_hold(v_ce: Real, v_ce_sat: Real, overdrive_sheet: Real, h_fe: Real, beta_r: float, t: Real) -> Array:
+    """Overdrive that holds the output at `v_ce` or lower [1]: the inverse of `v_ce_on`.
+
+    Above 1, towards 1 for high v_ce. Infinite where v_ce < v_ce_sat: the sheet does not promise it at any drive. Broadcasts.
+    """
+    room = (np.asarray(v_ce, dtype=float) - v_ce_sat) / thermal_voltage(t)
+    reach = np.exp(np.clip(room, 0.0, 500.0)) * saturation_shape(overdrive_sheet, h_fe, beta_r)
+    inverse_alpha = (1.0 + beta_r) / beta_r
+    overdrive = (np.asarray(h_fe) / beta_r + reach) / (reach - inverse_alpha)
+    return np.asarray(np.where(room < -1e-9, np.inf, overdrive))
+
+
+def rise_with_current(v_ce_sat: Real, i_c: Real, i_c_sheet: Real) -> Array:
+    """The sheet's v_ce_sat [V] carried to a larger collector current: proportional above `i_c_sheet` [A], flat below.
+
+    A rule of this program on the safe side: the bulk resistance can take no more than all of the voltage. Broadcasts.
+    """
+    return np.asarray(v_ce_sat * np.maximum(1.0, np.asarray(i_c) / i_c_sheet))

@@ -1,0 +1,56 @@
+"""Read a coupler table: a CSV file, one line per part and CTR bin, as data sheets give the figures.
+
+The columns, their units and the rules that fill gaps are those of `optopick.coupler_columns`.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from pathlib import Path
+
+from optopick.coupler import Coupler
+from optopick.coupler_cells import Row, read_rows
+from optopick.coupler_columns import blank_template, columns_markdown
+from optopick.coupler_rows import resolve
+from optopick.gaps import UnusableError
+
+__all__ = ["CouplerTable", "SetAside", "blank_template", "columns_markdown", "read_couplers"]
+
+
+@dataclass(frozen=True)
+class SetAside:
+    """A row that no brief can use: its part and bin, its line in the file, and why."""
+
+    part: str
+    row: int
+    reason: str
+
+
+@dataclass(frozen=True)
+class CouplerTable:
+    """The couplers of a table in the file's order, the rows set aside, and the file."""
+
+    couplers: tuple[Coupler, ...]
+    set_aside: tuple[SetAside, ...]
+    path: Path
+
+
+def read_couplers(path: Path) -> CouplerTable:
+    """Read the coupler table at `path`, fill its gaps by rule and set aside the rows that keep one.
+
+    Raises InputError with every mistake of the file: unreadable, an unknown or repeated column, a cell that is not
+    what its column asks for or lies outside its range, figures of one row in the wrong order, a part and bin twice.
+    """
+    outcomes = [_outcome(row) for row in read_rows(path)]
+    return CouplerTable(
+        couplers=tuple(outcome for outcome in outcomes if isinstance(outcome, Coupler)),
+        set_aside=tuple(outcome for outcome in outcomes if isinstance(outcome, SetAside)),
+        path=path,
+    )
+
+
+def _outcome(row: Row) -> Coupler | SetAside:
+    try:
+        return resolve(row)
+    except UnusableError as error:
+        return SetAside(row.name, row.line, str(error))

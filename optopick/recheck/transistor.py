@@ -1,0 +1,218 @@
+"""Checks of a transistor output (single or darlington): saturation, leakage, heat, timing, power."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from optopick.brief import Brief, OutputCircuit
+from optopick.corners import thresholds
+from optopick.coupler import Coupler, Transfer, Transistor
+from optopick.physics import switching
+from optopick.physics.heat import derated, output_dissipation, resistor_derated
+from optopick.physics.leakage import dark_current, dark_current_held
+from optopick.physics.saturation import load_current, rise_with_current, v_ce_on
+from optopick.physics.transfer import (
+    base_led_current,
+    collector_current,
+    led_current_for,
+    light_factor,
+    relative_ctr,
+    temperature_factor,
+)
+from optopick.physics.types import Array
+from optopick.recheck.led_side import DARK_FRACTION, LedBranch
+from optopick.recheck.vertices import Vertices, rating_of, worst
+from optopick.result import Check, Design, Timing
+
+
+@dataclass(frozen=True)
+class Stage:
+    """The output stage at every vertex; see the glossary of optopick.physics."""
+
+    h: Array
+    eta: Array
+    h_fe: Array
+    v_be: Array
+    i_eff: Array
+    i_be: Array
+    i_input: float
+    j_s: Array
+    i_sat: Array
+    v_il: Array
+    v_ih: Array
+
+
+@dataclass(frozen=True)
+class Times:
+    """Times at every vertex [s], without guard."""
+
+    edge_on: Array
+    edge_off: Array
+    storage: Array
+    delay_on: Array
+    delay_off: Array
+
+
+def parts_of(coupler: Coupler) -> tuple[Transfer, Transistor]:
+    """Transfer and transistor of a coupler with a transistor output."""
+    if coupler.transfer is None or coupler.transistor is None:
+        raise ValueError(f"{coupler.part} has no transistor output")
+    return coupler.transfer, coupler.transistor
+
+
+def stage(brief: Brief, coupler: Coupler, box: Vertices, branch: LedBranch) -> Stage:
+    """Evaluate the output stage at every vertex."""
+    transfer, transistor = parts_of(coupler)
+    h = temperature_factor(transfer, box.t)
+    ctr_mid = np.sqrt(transfer.ctr_min * transfer.ctr_max)
+    eta = ctr_mid / transistor.h_fe * light_factor(transfer, box.t) * box.light
+    v_be = transistor.v_be + transistor.v_be_tc * (box.t - 25.0)
+    output = brief.output
+    pulled_up = output.circuit is OutputCircuit.PULL_UP
+    i_input = max(output.input_leakage, output.input_current_low) if pulled_up else output.input_leakage
+    j_s = load_current(box.v_cc, transistor.v_ce_sat, box.r_load, i_input)
+    return Stage(
+        h=h,
+        eta=eta,
+        h_fe=box.ctr * h / eta,
+        v_be=v_be,
+        i_eff=branch.i_f * branch.light,
+        i_be=base_led_current(v_be, box.r_be, eta),
+        i_input=i_input,
+        j_s=j_s,
+        i_sat=led_current_for(transfer, box.ctr, h, j_s),
+        v_il=thresholds(output.v_il, output.supply, box.v_cc),
+        v_ih=thresholds(output.v_ih, output.supply, box.v_cc),
+    )
+
+
+def static_checks(brief: Brief, coupler: Coupler, box: Vertices, branch: LedBranch, s: Stage) -> list[Check]:
+    """Curve, dark LED, deliverable current, CTR margin and both output levels."""
+    transfer, _ = parts_of(coupler)
+    top = np.minimum(derated(coupler.led.i_max, box.t), transfer.curve_i[-1])
+    most = collector_current(transfer, box.ctr, s.h, top)
+    drive = collector_current(transfer, box.ctr, s.h, s.i_eff - s.i_be)
+    checks = [
+        worst(box, "led_current_low", branch.i_f, transfer.curve_i[0], ">=", "A"),
+        worst(box, "led_dark", branch.i_off, DARK_FRACTION * transfer.i_ref, "<=", "A"),
+        worst(box, "deliverable_current", s.j_s, most, "<=", "A"),
+    ]
+    if brief.limits.ctr_margin is not None:
+        checks.append(worst(box, "ctr_margin", drive / s.j_s, brief.limits.ctr_margin, ">=", "1"))
+    on = _v_ce(coupler, box, s, drive)
+    off = _off_current(coupler, box, branch, s) + _input_off(brief)
+    noise = brief.output.noise_margin
+    if brief.output.circuit is OutputCircuit.PULL_UP:
+        low, high = on, box.v_cc - off * box.r_load
+    else:
+        low, high = off * box.r_load, box.v_cc - on
+    checks.append(worst(box, "output_low", low, s.v_il - noise, "<=", "V"))
+    checks.append(worst(box, "output_high", high, s.v_ih + noise, ">=", "V"))
+    return checks
+
+
+def _v_ce(coupler: Coupler, box: Vertices, s: Stage, drive: Array) -> Array:
+    """Collector-emitter voltage on [V]: where the transistor's saturation curve meets the load line, by bisection."""
+    transfer, transistor = parts_of(coupler)
+    sheet = float(collector_current(transfer, transfer.ctr_min, 1.0, transistor.sat_i_f)) / transistor.sat_i_c
+    v_sat = rise_with_current(transistor.v_ce_sat, s.j_s, transistor.sat_i_c)
+    shape = np.broadcast_shapes(drive.shape, s.j_s.shape, s.h_fe.shape)
+    low, high = np.zeros(shape), np.broadcast_to(box.v_cc, shape).copy()
+    for _ in range(60):
+        v = (low + high) / 2
+        overdrive = drive / load_current(box.v_cc, v, box.r_load, s.i_input)
+        above = v_ce_on(v_sat, sheet, overdrive, s.h_fe, transistor.beta_r, box.t) > v
+        low, high = np.where(above, v, low), np.where(above, high, v)
+    return np.asarray((low + high) / 2)
+
+
+def _input_off(brief: Brief) -> float:
+    """What the receiver adds to the leakage when the output is off [A]."""
+    output = brief.output
+    if output.circuit is OutputCircuit.PULL_UP:
+        return output.input_leakage
+    return max(output.input_leakage, output.input_current_low)
+
+
+def _off_current(coupler: Coupler, box: Vertices, branch: LedBranch, s: Stage) -> Array:
+    """Collector current when off [A]: dark current, and what little light is left times CTR."""
+    transfer, transistor = parts_of(coupler)
+    i_ceo = dark_current(transistor.i_ceo_1, transistor.t_1, transistor.i_ceo_2, transistor.t_2, box.t)
+    ctr_mid = np.sqrt(transfer.ctr_min * transfer.ctr_max)
+    h_fe_cold = box.ctr / (ctr_mid * box.light) * transistor.h_fe
+    dark = dark_current_held(i_ceo, h_fe_cold, box.r_be)
+    g = relative_ctr(transfer, np.clip(branch.i_off, transfer.curve_i[0], transfer.curve_i[-1]))
+    return np.asarray(dark + box.ctr * s.h * g * branch.i_off)
+
+
+def rating_checks(
+    brief: Brief, coupler: Coupler, design: Design, box: Vertices, branch: LedBranch, s: Stage
+) -> list[Check]:
+    """Voltages, currents and dissipations of the output and of its resistors."""
+    _, transistor = parts_of(coupler)
+    heat = output_dissipation(box.v_cc, box.r_load, s.i_input)
+    _, power, voltage = rating_of(brief, "r_load", design.r_load)
+    checks = [
+        worst(box, "collector_voltage", box.v_cc, transistor.v_ceo, "<=", "V"),
+        worst(box, "collector_current", s.j_s, transistor.i_c_max, "<=", "A"),
+        worst(box, "output_power", heat, derated(coupler.p_out, box.t), "<=", "W"),
+        worst(box, "total_power", branch.i_f * branch.v_f + heat, derated(coupler.p_total, box.t), "<=", "W"),
+        worst(box, "r_load_power", box.v_cc**2 / box.r_load, resistor_derated(power, box.t), "<=", "W"),
+        worst(box, "r_load_voltage", box.v_cc, voltage, "<=", "V"),
+    ]
+    if design.r_be is not None:
+        _, power, _ = rating_of(brief, "r_be", design.r_be)
+        checks.append(worst(box, "r_be_power", s.v_be**2 / box.r_be, resistor_derated(power, box.t), "<=", "W"))
+    return checks
+
+
+def times(brief: Brief, coupler: Coupler, box: Vertices, s: Stage) -> Times:
+    """Edges, storage and delays at every vertex, without guard [s]."""
+    transfer, transistor = parts_of(coupler)
+    reachable = np.isfinite(s.i_sat)
+    i_sat = np.where(reachable, s.i_sat, transfer.curve_i[-1])
+    gain = s.h_fe * relative_ctr(transfer, i_sat) / transistor.h_fe
+    tau = switching.time_constant(transistor.tau_0, transistor.c_m, gain, box.r_load, brief.output.capacitance)
+    tau = np.asarray(np.where(reachable, tau, np.inf))
+    on, off = _fractions(brief, transistor, box, s)
+    held = switching.storage(transistor.tau_s, s.i_eff, s.i_be, i_sat)
+    charge = switching.base_charging(transistor.c_be, s.v_be, s.eta, s.i_eff, s.i_be)
+    return Times(
+        edge_on=switching.edge_on(tau, s.i_eff, s.i_be, i_sat),
+        edge_off=switching.edge_off(tau, s.i_be, i_sat),
+        storage=held,
+        delay_on=charge + switching.crossing_on(tau, on, s.i_eff, s.i_be, i_sat),
+        delay_off=held + switching.crossing_off(tau, off, s.i_be, i_sat),
+    )
+
+
+def _fractions(brief: Brief, transistor: Transistor, box: Vertices, s: Stage) -> tuple[Array, Array]:
+    """Share of the swing from rest to the receiver's threshold, turning on and turning off [1]."""
+    swing = box.v_cc - transistor.v_ce_sat
+    if brief.output.circuit is OutputCircuit.PULL_UP:
+        on, off = (box.v_cc - s.v_il) / swing, (s.v_ih - transistor.v_ce_sat) / swing
+    else:
+        on, off = s.v_ih / swing, 1.0 - s.v_il / swing
+    return np.maximum(on, 0.0), np.clip(off, 0.0, 1.0 - 1e-9)
+
+
+def timing_checks(brief: Brief, box: Vertices, times_: Times) -> tuple[list[Check], Timing]:
+    """Limits on edges, delays, distortion and pulse, and each worst case, guard included."""
+    guard, limits = brief.limits.timing_guard, brief.limits
+    edge = guard * np.maximum(times_.edge_on, times_.edge_off)
+    delay = guard * np.maximum(times_.delay_on, times_.delay_off)
+    with np.errstate(invalid="ignore"):
+        distortion = np.nan_to_num(guard * np.abs(times_.delay_off - times_.delay_on), nan=np.inf, posinf=np.inf)
+    checks = [worst(box, "shortest_pulse", delay, brief.signal.shortest_pulse, "<=", "s")]
+    for name, value, limit in (
+        ("edge_time", edge, limits.edge_time),
+        ("delay", delay, limits.delay),
+        ("distortion", distortion, limits.distortion),
+    ):
+        if limit is not None:
+            checks.append(worst(box, name, value, limit, "<=", "s"))
+    names = ("edge_on", "edge_off", "storage", "delay_on", "delay_off")
+    each = {name: guard * float(np.max(getattr(times_, name))) for name in names}
+    return checks, Timing(**each, distortion=float(np.max(distortion)))

@@ -1,0 +1,133 @@
+"""The box of everything uncertain about one design, as arrays that broadcast: one axis per uncertain quantity."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from optopick.brief import Brief, Position
+from optopick.corners import (
+    AGES,
+    Axis,
+    ctr_axis,
+    drive_axis,
+    drop_axis,
+    light_axis,
+    resistor_span,
+    supply_axis,
+    temperatures,
+    v_f_axis,
+)
+from optopick.coupler import Coupler
+from optopick.physics.types import Array
+from optopick.result import Check, Design
+
+RESISTORS = ("r_led", "r_load", "r_be", "r_shunt")
+ORDER = ("temperature", "age", "ctr", "light", "v_f", "drive", "drop", "supply", *RESISTORS)
+
+
+@dataclass(frozen=True)
+class Vertices:
+    """All ends of all ranges. Each array is shaped to lie along its own axes of `ORDER`; `words` names the ends."""
+
+    t: Array
+    age: Array
+    ctr: Array
+    light: Array
+    v_f: Array
+    drive: Array
+    drop: Array
+    v_cc: Array
+    r_led: Array
+    r_load: Array
+    r_be: Array
+    r_shunt: Array
+    words: tuple[tuple[str, ...], ...]
+
+    def corner(self, margin: Array, flat: int) -> str:
+        """The vertex at flat index `flat` of the margins, in words; what makes no difference there goes unsaid."""
+        index = np.unravel_index(flat, margin.shape)
+        parts = []
+        for axis, k in enumerate(index):
+            along = margin[tuple(slice(None) if n == axis else at for n, at in enumerate(index))]
+            if not np.allclose(along, margin[index], rtol=1e-9, atol=1e-12, equal_nan=True):
+                parts.append(self.words[axis][k])
+        return ", ".join(_drive_as_one([part for part in parts if part]))
+
+
+WEAKEST = frozenset({"V_F max", "drive min", "drop max", "R_LED max"})
+STRONGEST = frozenset({"V_F min", "drive max", "drop min", "R_LED min"})
+
+
+def _drive_as_one(parts: list[str]) -> list[str]:
+    """The ends that all weaken, or all strengthen, the LED's drive said as one."""
+    for ends, phrase in ((WEAKEST, "LED driven least"), (STRONGEST, "LED driven most")):
+        said = [part for part in parts if part in ends]
+        if len(said) > 1 and not any(part in WEAKEST | STRONGEST for part in parts if part not in ends):
+            at = parts.index(said[0])
+            return [*parts[:at], phrase, *(part for part in parts[at:] if part not in ends)]
+    return parts
+
+
+def vertices(brief: Brief, coupler: Coupler, design: Design) -> Vertices:
+    """The box of a design; lots without a transistor have a single point on the CTR and light axes."""
+    one = Axis("", (1.0,), ("",))
+    transfer, transistor = coupler.transfer, coupler.transistor
+    axes = {
+        "temperature": temperatures(brief.environment, transfer),
+        "age": AGES,
+        "ctr": ctr_axis(transfer) if transfer else one,
+        "light": light_axis(transistor.light_spread) if transistor else one,
+        "v_f": v_f_axis(coupler),
+        "drive": drive_axis(brief),
+        "drop": drop_axis(brief),
+        "supply": supply_axis(brief),
+    }
+    placed = [_placed(k, axes[name].values) for k, name in enumerate(ORDER[:8])]
+    resistors = [_resistor(brief, name, getattr(design, name), placed[0]) for name in RESISTORS]
+    ends = tuple((f"{word} min", f"{word} max") for word in ("R_LED", "R_load", "R_BE", "R_shunt"))
+    words = tuple(axes[name].words for name in ORDER[:8]) + ends
+    fields = ("t", "age", "ctr", "light", "v_f", "drive", "drop", "v_cc", *RESISTORS)
+    return Vertices(**dict(zip(fields, [*placed, *resistors], strict=True)), words=words)
+
+
+def stock_of(brief: Brief, name: str) -> Position | None:
+    """The stock of a resistor position, None where the brief does not use it."""
+    position: Position | None = getattr(brief.stock, name)
+    return position
+
+
+def rating_of(brief: Brief, name: str, value: float) -> tuple[float, float, float]:
+    """Tolerance [1], power rating [W] and voltage limit [V] of the stock value nearest to `value` [ohm].
+
+    For a position without stock those of r_load's first value: a `check` may place what the brief does not list.
+    """
+    position = stock_of(brief, name) or brief.stock.r_load
+    k = int(np.argmin(np.abs(np.log(np.asarray(position.values) / value))))
+    return position.tolerance[k], position.power[k], position.voltage[k]
+
+
+def _placed(axis: int, values: tuple[float, ...]) -> Array:
+    shape = [1] * len(ORDER)
+    shape[axis] = len(values)
+    return np.asarray(values, dtype=float).reshape(shape)
+
+
+def _resistor(brief: Brief, name: str, value: float | None, t: Array) -> Array:
+    axis = ORDER.index(name)
+    if value is None:
+        return _placed(axis, (np.inf,))
+    low, high = resistor_span(value, rating_of(brief, name, value)[0], brief.stock.drift, t)
+    return np.concatenate([low, high], axis=axis)
+
+
+def worst(box: Vertices, name: str, value: Array | float, limit: Array | float, sense: str, unit: str) -> Check:
+    """The check at the vertex with the least room; nan counts as failing."""
+    v, lim = np.broadcast_arrays(np.asarray(value, dtype=float), np.asarray(limit, dtype=float))
+    room = lim - v if sense == "<=" else v - lim
+    with np.errstate(invalid="ignore", divide="ignore"):
+        margin = np.where(lim != 0, room / np.abs(lim), room)
+    flat = int(np.argmin(np.nan_to_num(margin, nan=-np.inf)))
+    corner = box.corner(margin, flat) if v.ndim else ""
+    return Check(name, float(v.flat[flat]), float(lim.flat[flat]), sense, unit, corner)

@@ -1,0 +1,1 @@
+"""What people and programs read: terminal text, JSON. Nothing here prints."""

@@ -1,0 +1,89 @@
+"""Results as JSON objects, in SI, with null for what is absent and for what is not a finite number."""
+
+from __future__ import annotations
+
+import json
+import math
+from dataclasses import asdict
+from typing import Any
+
+from optopick.uses.check import Checked
+from optopick.result import Check, Design, Objective, Result, Review
+
+
+def dumps(value: object) -> str:
+    """One JSON object as text; infinities and not-a-number become null."""
+    return json.dumps(_finite(value), ensure_ascii=False, indent=2)
+
+
+def _finite(value: Any) -> Any:  # noqa: ANN401 - JSON values are any of six types
+    if isinstance(value, float) and not math.isfinite(value):
+        return None
+    if isinstance(value, dict):
+        return {key: _finite(inner) for key, inner in value.items()}
+    if isinstance(value, list | tuple):
+        return [_finite(inner) for inner in value]
+    return value
+
+
+def result_object(result: Result) -> dict[str, object]:
+    """The object that `pick --json` prints."""
+    found: dict[str, object] = {
+        "status": result.status.value,
+        "objective": objective_object(result.objective),
+        "second": objective_object(result.second),
+    }
+    found |= review_object(result.review)
+    return found | {
+        "assumed": [asdict(assumed) for assumed in result.assumed],
+        "rejected": [asdict(rejected) for rejected in result.rejected],
+        "proof": asdict(result.proof),
+        "cautions": list(result.cautions),
+    }
+
+
+def review_object(review: Review | None) -> dict[str, object]:
+    """Design, checks, timing and power; nulls where there is no design."""
+    if review is None:
+        return {"design": None, "checks": [], "timing": None, "power": None}
+    return {
+        "design": design_object(review.design),
+        "checks": [check_object(check) for check in review.checks],
+        "timing": asdict(review.timing),
+        "power": asdict(review.power),
+    }
+
+
+def design_object(design: Design) -> dict[str, object]:
+    """Coupler and ohms."""
+    return asdict(design)
+
+
+def check_object(check: Check) -> dict[str, object]:
+    """A check with its margin and whether it holds."""
+    return {
+        "name": check.name,
+        "value": check.value,
+        "limit": check.limit,
+        "sense": check.sense,
+        "margin": check.margin,
+        "unit": check.unit,
+        "corner": check.corner,
+        "passed": check.passed,
+    }
+
+
+def objective_object(objective: Objective | None) -> dict[str, object] | None:
+    """A goal with value, bound, and gap."""
+    return None if objective is None else asdict(objective) | {"gap": objective.gap}
+
+
+def checked_object(checked: Checked) -> dict[str, object]:
+    """The object that `check --json` prints."""
+    return {
+        "status": "passes" if checked.review.passed else "fails",
+        **review_object(checked.review),
+        "notes": list(checked.notes),
+        "assumed": [asdict(assumed) for assumed in checked.assumed],
+        "cautions": list(checked.cautions),
+    }

@@ -1,0 +1,150 @@
+"""What optopick answers: designs, checks, timing, power, proof. Frozen; SI throughout."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from enum import StrEnum
+
+from optopick.coupler import Assumed
+
+
+NOT_CHOSEN = "not among the brief's couplers"
+"""Reason of a coupler that the brief leaves out by name."""
+
+
+class Status(StrEnum):
+    """What is known about the answer."""
+
+    OPTIMAL = "optimal"
+    FEASIBLE = "feasible"
+    INFEASIBLE = "infeasible"
+    UNKNOWN = "unknown"
+
+
+@dataclass(frozen=True)
+class Design:
+    """A coupler and resistor values [ohm]; None where a position stays empty."""
+
+    coupler: str
+    r_led: float
+    r_load: float
+    r_be: float | None
+    r_shunt: float | None
+
+
+@dataclass(frozen=True)
+class Check:
+    """One requirement at its worst corner. `sense` is "<=" or ">=". `margin`: the room left over the limit [1],
+    negative where the check fails (the plain difference where the limit is zero).
+    """
+
+    name: str
+    value: float
+    limit: float
+    sense: str
+    unit: str
+    corner: str
+
+    @property
+    def margin(self) -> float:
+        """Room left, relative to the limit [1]."""
+        room = self.limit - self.value if self.sense == "<=" else self.value - self.limit
+        return room / abs(self.limit) if self.limit else room
+
+    @property
+    def passed(self) -> bool:
+        """Whether the requirement holds, to within rounding; a value that is not a number does not."""
+        return self.margin >= -1e-9
+
+
+@dataclass(frozen=True)
+class Timing:
+    """Worst-case times [s], guard included."""
+
+    edge_on: float
+    edge_off: float
+    storage: float
+    delay_on: float
+    delay_off: float
+    distortion: float
+
+
+@dataclass(frozen=True)
+class Power:
+    """Average power of the link [W], typical parts at mid supplies and at the worst corner."""
+
+    nominal: float
+    worst: float
+
+
+@dataclass(frozen=True)
+class Review:
+    """Every check of one design, from physics alone."""
+
+    design: Design
+    checks: tuple[Check, ...]
+    timing: Timing
+    power: Power
+
+    @property
+    def passed(self) -> bool:
+        """Whether every check holds."""
+        return all(check.passed for check in self.checks)
+
+    @property
+    def failing(self) -> tuple[Check, ...]:
+        """The checks that do not hold."""
+        return tuple(check for check in self.checks if not check.passed)
+
+
+@dataclass(frozen=True)
+class Objective:
+    """What was made least: its value at the design, and the bound below which no design exists."""
+
+    name: str
+    value: float
+    bound: float
+    unit: str
+
+    @property
+    def gap(self) -> float:
+        """(value - bound)/value [1]."""
+        return (self.value - self.bound) / self.value if self.value else 0.0
+
+
+@dataclass(frozen=True)
+class Proof:
+    """How the answer was established: combinations in stock, solver calls, couplers decided without one, seconds."""
+
+    combinations: int
+    solves: int
+    decided_by_ranges: int
+    seconds: float
+    solver: str
+
+
+@dataclass(frozen=True)
+class Rejected:
+    """A coupler that cannot serve, and why."""
+
+    part: str
+    reason: str
+
+
+@dataclass(frozen=True)
+class Result:
+    """The answer to a brief."""
+
+    status: Status
+    objective: Objective | None
+    second: Objective | None
+    review: Review | None
+    assumed: tuple[Assumed, ...]
+    rejected: tuple[Rejected, ...]
+    proof: Proof
+    cautions: tuple[str, ...]
+
+    @property
+    def design(self) -> Design | None:
+        """The design found, if any."""
+        return self.review.design if self.review else None

@@ -1,0 +1,88 @@
+"""An existing design against a brief: every check, and what the table left to assume."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+from difflib import get_close_matches
+
+from optopick.brief import Brief
+from optopick.cautions import cautions
+from optopick.coupler import Assumed, Coupler
+from optopick.errors import InputError, Mistake
+from optopick.read_couplers import read_couplers
+from optopick.recheck import review
+from optopick.result import Design, Review
+from optopick.units import QuantityError, parse_quantity
+
+
+@dataclass(frozen=True)
+class Checked:
+    """A design's review, what was assumed of its coupler, and the cautions."""
+
+    review: Review
+    assumed: tuple[Assumed, ...]
+    notes: tuple[str, ...]
+    cautions: tuple[str, ...]
+
+
+def design_from_text(coupler: str, texts: Mapping[str, str | None]) -> Design:
+    """A design from resistor values as typed; raises InputError with every value that cannot be read."""
+    ohms: dict[str, float | None] = {}
+    mistakes = []
+    for name, text in texts.items():
+        try:
+            ohms[name] = None if text is None else _positive(text)
+        except QuantityError as error:
+            mistakes.append(Mistake(f"--{name.replace('_', '-')}", error.found, error.expected))
+    if mistakes:
+        raise InputError(mistakes)
+    r_led, r_load = ohms["r_led"], ohms["r_load"]
+    assert r_led is not None
+    assert r_load is not None
+    return Design(coupler, r_led, r_load, ohms.get("r_be"), ohms.get("r_shunt"))
+
+
+def _positive(text: str) -> float:
+    value = parse_quantity(text, "ohm")
+    if value <= 0:
+        raise QuantityError(f'"{text}"', 'a resistance above zero such as "2k2"')
+    return value
+
+
+def check_design(brief: Brief, design: Design) -> Checked:
+    """Every check of a design; raises InputError where the table has no such coupler or it has no base pin."""
+    coupler = _coupler(brief, design.coupler)
+    if design.r_be is not None and not coupler.base_pin:
+        found = f"a base-emitter resistor with {coupler.part}, whose base is not brought out"
+        raise InputError([Mistake("--r-be", found, "no --r-be, or a coupler with a base pin")])
+    return Checked(review(brief, coupler, design), coupler.assumed, _notes(brief, coupler, design), cautions(brief))
+
+
+def _coupler(brief: Brief, part: str) -> Coupler:
+    table = read_couplers(brief.couplers.table)
+    for coupler in table.couplers:
+        if coupler.part == part:
+            return coupler
+    for aside in table.set_aside:
+        if aside.part == part:
+            raise InputError(
+                [Mistake("--coupler", f'"{part}", set aside: {aside.reason}', "a complete row of the table")]
+            )
+    parts = [coupler.part for coupler in table.couplers]
+    near = get_close_matches(part, parts, n=1, cutoff=0.4) or parts[:1]
+    expected = f'a part of {table.path.name} such as "{near[0]}"' if near else "a table with usable couplers"
+    raise InputError([Mistake("--coupler", f'"{part}"', expected)])
+
+
+def _notes(brief: Brief, coupler: Coupler, design: Design) -> tuple[str, ...]:
+    """Resistor values that the brief does not stock."""
+    notes = []
+    for name in ("r_led", "r_load", "r_be", "r_shunt"):
+        ohms, stock = getattr(design, name), getattr(brief.stock, name)
+        if ohms is not None and (stock is None or not any(abs(v / ohms - 1) < 1e-6 for v in stock.values)):
+            where = (
+                f"not in the stock ({stock.described})" if stock else "at a position that the brief has no stock for"
+            )
+            notes.append(f"{name} is {where}")
+    return tuple(notes)
