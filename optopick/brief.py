@@ -65,7 +65,7 @@ class Drive:
     off_voltage: field only, the highest voltage that must read as off [V], else None.
     off_current: field only, the leakage a source may give when off [A], else 0.
     on_current_min: field only, least current the input must draw when on [A], else 0.
-    reverse: reverse voltage the input may see [V].
+    reverse: reverse voltage the input may see [V]; reverse_diode: a diode may be placed against it.
     """
 
     circuit: DriveCircuit
@@ -77,6 +77,7 @@ class Drive:
     off_current: float = 0.0
     on_current_min: float = 0.0
     reverse: float = 0.0
+    reverse_diode: bool = False
 
 
 @dataclass(frozen=True)
@@ -134,7 +135,8 @@ class Position:
 
     values: ascending, distinct [ohm]; tolerance [1] and prices [per piece] alongside each value (price None if
     unknown). power: rating [W] and voltage: limit [V] alongside each value. absent: the position may stay empty.
-    described: the stock in words, e.g. "E24, 10 ohm to 1 Mohm".
+    described: the stock in words, e.g. "E24, 10 ohm to 1 Mohm". pieces: into how many equal resistors the position
+    may be split where one cannot take the watts or the volts.
     """
 
     values: tuple[float, ...]
@@ -144,6 +146,7 @@ class Position:
     price: tuple[float | None, ...]
     absent: bool
     described: str
+    pieces: int = 1
 
 
 @dataclass(frozen=True)

@@ -35,6 +35,7 @@ def _drop_leaves_voltage(values: Values) -> Iterator[Finding]:
     if not feed or not values.has("drive.drop"):
         return
     lowest = values.span(feed).low
+    # the worst drop at the lowest drive leaves nothing for the LED
     if values.span("drive.drop").high >= lowest:
         yield "drive.drop", _volts(values.span("drive.drop").high), f"less than the lowest drive, {_volts(lowest)}"
 
@@ -98,6 +99,7 @@ def _goals_differ(values: Values) -> Iterator[Finding]:
 
 def _given(values: Values, *paths: str) -> str:
     """Return the first of `paths` that the brief gives, the last if it gives none."""
+    # a value may stem from a named set or a default, which have no line of their own
     return next((path for path in paths if path in values.given), paths[-1])
 
 

@@ -57,6 +57,7 @@ def _ratings(section: str, values: Values) -> _Ratings | None:
     voltage = f"{section}.voltage"
     if not values.has(tolerance, f"{section}.power") or (voltage in values.given and not values.has(voltage)):
         return None
+    # from here on a missing voltage means: follow the power rating
     absent = bool(values.get(f"{section}.absent"))
     return _Ratings(values.number(tolerance), values.number(f"{section}.power"), values.optional(voltage), absent)
 
@@ -66,6 +67,7 @@ def _from_series(section: str, values: Values, ratings: _Ratings, mistakes: Mist
     if not values.has(f"{section}.series", *ends):
         return None
     series, low, high = values.text(f"{section}.series"), *(values.number(end) for end in ends)
+    # blame an end that the brief gives, not the default beside it
     path = tuple(next((end for end in ends if end in values.given), section).split("."))
     if low > high:
         mistakes.add(path, f"from {format_resistor(low)} to {format_resistor(high)}", "the lowest value first")

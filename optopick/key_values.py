@@ -35,7 +35,7 @@ def shown(value: object) -> str:
     """Return `value` as a brief would write it, shortened where long."""
     if isinstance(value, str):
         return json.dumps(value if len(value) <= 60 else value[:57] + "...", ensure_ascii=False)
-    if isinstance(value, bool):
+    if isinstance(value, bool):  # before int, of which Python's bool is a kind
         return str(value).lower()
     if isinstance(value, list | tuple):
         return "[" + ", ".join(shown(item) for item in value[:6]) + (", ...]" if len(value) > 6 else "]")
@@ -62,6 +62,7 @@ def read_value(key: Key, value: object, base: Path) -> object:
     try:
         return _READERS[key.kind](key, value, base)
     except QuantityError as error:
+        # of a list units shows every item its own way; here the whole list is shown as the brief has it
         found = shown(value) if error.found.startswith("[") else _PLAIN_NAMES.get(error.found, error.found)
         raise QuantityError(found, error.expected) from None
     except RecursionError:
@@ -80,6 +81,7 @@ def _quantity(key: Key, value: object, _base: Path) -> float:
 
 def _span(key: Key, value: object, _base: Path) -> Span:
     low, high = parse_span(value, key.unit)
+    # both ends: a range may be left at either
     for end in (low, high):
         _in_range(key, end, value)
     single = not isinstance(value, list | tuple)

@@ -87,6 +87,7 @@ class Cell:
     source: str
 
 
+# cached: every key read asks for the schema again
 @cache
 def brief_sections() -> tuple[Section, ...]:
     """Return every section of the brief, parents before their parts, in the order in which briefs are written."""
@@ -110,12 +111,13 @@ def _load(file: str) -> dict[str, Any]:
 
 def _section(entry: Mapping[str, Any], templates: Mapping[str, Any]) -> Section:
     name = entry["name"]
-    # a template's key may belong to some of its sections only
+    # a section of its own keys first, then those it shares; a shared key may belong to some of its sections only
     rows = [*entry.get("key", ()), *templates.get(entry.get("like", ""), ())]
     return Section(name, entry["meaning"], entry.get("required", False), tuple(_key(name, row) for row in rows))
 
 
 def _key(section: str, row: Mapping[str, Any]) -> Key:
+    # where there is no unit, bounds are plain numbers
     unit = row.get("unit", "1")
     names_in = row.get("names_in", "")
     return Key(

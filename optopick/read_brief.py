@@ -78,6 +78,7 @@ def _brief(document: Mapping[str, object], base: Path, path: Path | None, mistak
 
 
 def _signal(values: Values) -> Signal:
+    # one of the two is given; the rules have seen to that
     rate = values.optional("signal.rate")
     return Signal(
         shortest_pulse=values.number("signal.shortest_pulse") if rate is None else 1.0 / rate,
@@ -151,5 +152,6 @@ def _couplers(values: Values) -> CouplerChoice:
 
 def _goal(values: Values) -> Goal:
     minimize = GoalName(values.text("goal.minimize"))
+    # default of the second goal
     then = GoalName.EDGE_TIME if minimize is GoalName.POWER else GoalName.POWER
     return Goal(minimize, GoalName(values.text("goal.then", then)), values.number("goal.give"))

@@ -29,6 +29,7 @@ class Mistakes:
         line = self._lines.get(path)
         name = ".".join(_bare_or_quoted(part) for part in path)
         where = f"{self._file}: key {name}" if line is None else f"{self._file} line {line}, {name}"
+        # the same mistake may be met twice, as when two positions share a shelf
         self._noted.setdefault(Mistake(where, found, expected), math.inf if line is None else line)
 
     def take(self, mistakes: Iterable[Mistake]) -> None:
@@ -111,6 +112,7 @@ def _table(
 ) -> Mapping[str, object] | None:
     """Return the table of `section`, empty if it may be left out; None if it is wrong, or what it is part of is."""
     table: object = document
+    # no name: what stands above the first section
     *parents, name = _path(section.name) or ("",)
     for parent in parents:
         table = table.get(parent) if isinstance(table, Mapping) else None
@@ -149,6 +151,7 @@ def _report_unknown(table: Mapping[str, object], section: Section, mistakes: Mis
 
 def _home(name: str) -> str:
     """Say in which other sections a key of this very name stands; empty if in none."""
+    # `power` or `tolerance` stand in many places; naming them all would not help
     homes = [f"[{section.name}]" for section in brief_sections() if section.name and section.key(name)]
     return f' ("{name}" belongs to {" and ".join(homes)})' if 0 < len(homes) <= 2 else ""
 
@@ -157,6 +160,7 @@ def _read_section(
     table: Mapping[str, object], section: Section, values: Values, base: Path, mistakes: Mistakes
 ) -> None:
     for key in section.keys:
+        # the schema puts `circuit` and the choosers of named sets before the keys that depend on them
         circuit = values.text(f"{section.name}.circuit")
         if key.name not in table:
             _fill(table, key, circuit, values, base, mistakes)
@@ -196,6 +200,7 @@ def _fill(table: Mapping[str, object], key: Key, circuit: str, values: Values, b
 
 def _wanted(table: Mapping[str, object], key: Key, circuit: str) -> bool:
     """Whether the lack of `key` is a mistake of its own: not if it follows from another mistake."""
+    # a named set that is spelled wrong is one mistake, not one more for each key it would have filled
     follows = bool(key.default_from) and key.default_from in table
     return not follows and (not key.circuits or circuit in key.circuits)
 

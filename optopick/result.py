@@ -23,13 +23,18 @@ class Status(StrEnum):
 
 @dataclass(frozen=True)
 class Design:
-    """A coupler and resistor values [ohm]; None where a position stays empty."""
+    """A coupler and resistor values [ohm]; None where a position stays empty.
+
+    pieces: how many equal resistors of `r_led` stand in series. reverse_diode: a diode antiparallel to the LED.
+    """
 
     coupler: str
     r_led: float
     r_load: float
     r_be: float | None
     r_shunt: float | None
+    pieces: int = 1
+    reverse_diode: bool = False
 
 
 @dataclass(frozen=True)

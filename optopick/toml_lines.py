@@ -2,8 +2,8 @@
 
 from __future__ import annotations
 
-import json
 import re
+import tomllib
 from dataclasses import dataclass
 
 KeyPath = tuple[str, ...]
@@ -89,13 +89,15 @@ class _Scanner:
             level.prefix = self._note((), line)
             self._in_key = False
         elif token == "=":
+            # kept for a table that may follow, whose keys continue this path
             self._path = self._note(level.prefix, line)
             self._in_key = False
-        elif token == "}" and level.kind == "table":
+        elif token == "}":
             self._close()
 
     def _take_value(self, token: str, level: _Level) -> None:
         if token in ("[", "{"):
+            # a table inside a list has a place but no path of keys
             inside_list = level.kind == "list"
             kind = "list" if token == "[" else "table"
             self._levels.append(_Level(kind, None if inside_list or kind == "list" else self._path))
@@ -120,11 +122,9 @@ class _Scanner:
 
 
 def _unquoted(token: str) -> str:
-    if token.startswith("'"):
-        return token[1:-1]
-    if not token.startswith('"'):
+    if token[0] not in "\"'":
         return token
     try:
-        return str(json.loads(token))
-    except ValueError:  # an escape that TOML has and JSON has not
-        return token[1:-1]
+        return str(tomllib.loads(f"key = {token}")["key"])
+    except tomllib.TOMLDecodeError:
+        return token

@@ -125,7 +125,8 @@ def assert_sound(brief: Brief) -> None:
     assert 0 < brief.drive.supply.low <= brief.drive.supply.high < math.inf
     assert 0 <= brief.drive.drop.low <= brief.drive.drop.high < brief.drive.supply.low
     output = brief.output
-    assert output.noise_margin < output.v_il.low < output.v_ih.low < output.supply.low - output.noise_margin
+    assert output.noise_margin < output.v_il.low < output.v_ih.low
+    assert output.v_ih.low + output.noise_margin < output.supply.low
     for position in (brief.stock.r_led, brief.stock.r_load, brief.stock.r_be, brief.stock.r_shunt):
         if position is not None:
             columns = (position.values, position.tolerance, position.power, position.voltage, position.price)

@@ -279,6 +279,14 @@ class TestFile:
             Mistake("link.toml line 20", "bytes that are not UTF-8", "a brief in TOML in UTF-8"),
         )
 
+    def test_not_utf_8_from_the_first_byte(self):
+        Path("link.toml").write_bytes(b"\xb5")
+        assert self.refusal(Path("link.toml"))[0].where == "link.toml line 1"
+
+    def test_line_that_is_long_or_not_printable_is_shown_short_and_clean(self):
+        (mistake,) = mistakes_of("a\x01" + "b" * 100)
+        assert mistake.found == "a?" + "b" * 58
+
     def test_only_comments(self):
         Path("link.toml").write_text("# nothing yet\n", encoding="utf-8")
         assert len(self.refusal(Path("link.toml"))) == 7

@@ -45,7 +45,7 @@ ONE_ROW = [
     (PHOTOTRANSISTOR, {"v_f_tc": ""}, {"v_f_tc": "-1.5 mV/K"}),
     (PHOTOTRANSISTOR, {"led_n": ""}, {"led_n": "2"}),
     (PHOTOTRANSISTOR, {"led_r_s": ""}, {"led_r_s": "3 Ω"}),
-    (PHOTOTRANSISTOR, {"ctr_max": ""}, {"ctr_max": "400 %"}),
+    (PHOTOTRANSISTOR, {"ctr_max": ""}, {"ctr_max": "360 %"}),
     (PHOTOTRANSISTOR, {"ctr_curve": ""}, {"ctr_curve": "a usual shape"}),
     (DARLINGTON, {"ctr_curve": ""}, {"ctr_curve": "a usual shape"}),
     (PHOTOTRANSISTOR, {"ctr_temperature": ""}, {"ctr_temperature": "a usual shape"}),
@@ -207,7 +207,7 @@ def test_the_steepest_published_pair_stands_behind_the_doubling():
 def test_gain_and_spread_in_si(tmp_path):
     transistor = only_coupler(tmp_path, PHOTOTRANSISTOR, h_fe_typ="", ctr_cb="0.132").transistor
     assert transistor.h_fe == pytest.approx(1.5 / 0.00132)
-    assert transistor.light_spread == pytest.approx(math.sqrt(4 / 2.25))
+    assert transistor.light_spread == pytest.approx(math.sqrt(4 / (250 / 90)))
 
 
 @pytest.mark.parametrize(

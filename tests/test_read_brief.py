@@ -29,7 +29,7 @@ from optopick.key_values import read_value
 from optopick.keys import brief_sections, named_sets
 from optopick.read_brief import brief_from_mapping, brief_from_text, read_brief
 from optopick.stock import DEFAULT_HIGH, DEFAULT_LOW
-from optopick.toml_lines import key_lines
+from optopick.toml_lines import key_lines, unclosed_quote
 
 ALL_KEYS = [key for section in brief_sections() for key in section.keys]
 
@@ -372,6 +372,9 @@ class TestLines:
             ("a = [{ b = 1 },\n{ b = 2 }]\nc = 3", ("c",), 3),
             ("a = { b = [1,\n2], c = { d = 1 } }", ("a", "c", "d"), 2),
             ("a = {}\nb = 1", ("b",), 2),
+            ("a = { b.c = [\n1], d = 2 }", ("a", "d"), 2),
+            ("a = { b = {}, c = 2 }\nd = 1", ("a", "c"), 1),
+            ('\n"\\U000000b5\\t" = 1', ("µ\t",), 2),
             ("a = '''\nb = 1\n'''\nc = 1", ("c",), 4),
             ('a = "x\\"#="\nb = 1', ("b",), 2),
             ('a = """x"""""\nb = 1', ("b",), 2),
@@ -381,6 +384,24 @@ class TestLines:
     def test_places(self, text, path, line):
         tomllib.loads(text)  # the sample itself is valid
         assert key_lines(text)[path] == line
+
+    @pytest.mark.parametrize("text", ["a = 'b", "}}} = 1", '"\\x" = 1', "]\n[", "= = =", "[a\nb = {", "a = ]]"])
+    def test_text_that_is_no_toml_does_no_harm(self, text):
+        assert all(1 <= line <= text.count("\n") + 1 for line in key_lines(text).values())
+
+    @pytest.mark.parametrize(
+        ("text", "line"),
+        [
+            ("", None),
+            ("a = 'b'\n# it's\n", None),
+            ("a = 'b", 1),
+            ('\na = 1\nb = "c\nd = 1', 3),
+            ('\n\na = """\n"b"\n', 3),
+            ("a = 'b'\nc = 'd\n", 2),
+        ],
+    )
+    def test_quote_that_is_never_closed(self, text, line):
+        assert unclosed_quote(text) == line
 
     def test_keys_inside_lists_have_no_line(self):
         assert set(key_lines("a = [{ b = 1 }, [{ c = 2 }]]")) == {("a",)}

@@ -6,9 +6,9 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from optopick.model.kinds import LinkModel
 from optopick.model.ranges import everything, tighten
 from optopick.model.rows import Ask, Rows, stack
-from optopick.model.transistor import TransistorModel
 
 SMALL = 200
 """Shaving pays above so many combinations."""
@@ -27,7 +27,7 @@ Indices = tuple[np.ndarray, np.ndarray, np.ndarray]
 class Box:
     """The values in question: their model, their indices in the whole stock, the cuts, and the rows that can fail."""
 
-    model: TransistorModel
+    model: LinkModel
     indices: Indices
     cuts: Rows
     rows: Rows
@@ -54,11 +54,11 @@ class Box:
         return i, j, m
 
 
-def whole_box(model: TransistorModel, ask: Ask) -> Box | None:
-    """All values that hold the limits on one value alone; None where a position has none."""
+def whole_box(model: LinkModel, ask: Ask, cuts: Rows) -> Box | None:
+    """All values that hold the limits on one value alone, under `cuts`; None where a position has none."""
     start = model.start(ask.dropped)
     none = stack([], model.sizes)
-    box = Box(model, tuple(np.arange(n) for n in model.sizes), none, none)  # type: ignore[arg-type]
+    box = Box(model, tuple(np.arange(n) for n in model.sizes), cuts, none)  # type: ignore[arg-type]
     return None if start.empty else box.take(*start.indices)
 
 

@@ -6,8 +6,7 @@ certain, and kept side by side (axis of two) where it is not.
 
 from __future__ import annotations
 
-from dataclasses import dataclass, fields, replace
-from typing import TypeVar
+from dataclasses import dataclass, replace
 
 import numpy as np
 
@@ -16,6 +15,7 @@ from optopick.corners import resistor_span
 from optopick.coupler import Coupler, Transfer, Transistor
 from optopick.model.corner_list import CornerList, corner_list
 from optopick.model.led_candidates import DARK_FRACTION, LedCandidates, led_candidates
+from optopick.model.taking import taken
 from optopick.physics import switching
 from optopick.physics.heat import derated, output_dissipation, resistor_derated
 from optopick.physics.leakage import dark_current, dark_current_held
@@ -87,31 +87,17 @@ class Candidates:
         """Number of LED branches, load resistors, base resistors."""
         return len(self.led.r_led), len(self.load.r_load), len(self.base.r_be)
 
-
     def take(self, i: np.ndarray, j: np.ndarray, m: np.ndarray) -> Candidates:
         """The same with only the LED branches `i`, load resistors `j` and base resistors `m`, in that order."""
         return replace(
             self,
-            led=_taken(self.led, i),
-            load=_taken(self.load, j),
-            base=_taken(self.base, m),
+            led=taken(self.led, i),
+            load=taken(self.load, j, besides=("on", "off")),
+            base=taken(self.base, m),
             i_low=self.i_low[:, i],
             i_high=self.i_high[:, i],
             i_lit_off=self.i_lit_off[:, i],
         )
-
-
-Part = TypeVar("Part", LedCandidates, LoadCandidates, BaseCandidates)
-
-
-def _taken(part: Part, values: np.ndarray) -> Part:
-    """One position with only some of its values: the last axis of every array but the fractions of the swing."""
-    changed: dict[str, object] = {"keep": {name: mask[values] for name, mask in part.keep.items()}}
-    for field in fields(part):
-        array = getattr(part, field.name)
-        if isinstance(array, np.ndarray) and field.name not in ("on", "off"):
-            changed[field.name] = array[..., values]
-    return replace(part, **changed)  # type: ignore[arg-type]
 
 
 def candidates(brief: Brief, coupler: Coupler) -> Candidates:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -31,6 +32,15 @@ class Live:
     def indices(self) -> tuple[np.ndarray, np.ndarray, np.ndarray]:
         """The values still in question, (n,) each."""
         return np.flatnonzero(self.led), np.flatnonzero(self.load), np.flatnonzero(self.base)
+
+
+def holding(keeps: Sequence[Mapping[str, np.ndarray]], sizes: Sequence[int], dropped: frozenset[str]) -> Live:
+    """The values of each position that hold every limit on them alone, but for the limits dropped."""
+    masks = []
+    for keep, n in zip(keeps, sizes, strict=True):
+        held = [mask for name, mask in keep.items() if name not in dropped]
+        masks.append(np.all([np.ones(n, dtype=bool), *held], axis=0))
+    return Live(*masks)
 
 
 def everything(sizes: tuple[int, int, int]) -> Live:

@@ -58,6 +58,11 @@ class Ask:
         return float(getattr(self, FIELD[goal]))
 
     @property
+    def slowest(self) -> float:
+        """The limit on the longer delay where the other may be anything [s]."""
+        return min(self.delay, self.distortion)
+
+    @property
     def has_delays(self) -> bool:
         """Whether a limit on a sum of logarithms is asked, which rows only bound."""
         return bool(np.isfinite(self.delay) or np.isfinite(self.distortion))

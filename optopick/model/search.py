@@ -2,16 +2,17 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
 
 from optopick.brief import GoalName
 from optopick.model.box import Box, Choice, narrowed, tightened, whole_box
+from optopick.model.kinds import LinkModel
 from optopick.model.ranges import undominated
-from optopick.model.rows import Ask, Rows
+from optopick.model.rows import Ask, Rows, stack
 from optopick.model.solver import Answer, Clock, Outcome, Problem, solve
-from optopick.model.transistor import TransistorModel
 
 STEP = 1e-6
 """A design counts as better only if it is so by this share; the proof's resolution."""
@@ -33,41 +34,74 @@ class Found:
     bound: float
 
 
-def best(model: TransistorModel, goal: GoalName, ask: Ask, clock: Clock, below: float = np.inf) -> Found:
-    """The least `goal` of one coupler within `ask`, if it is better than `below`.
+def best(
+    model: LinkModel,
+    goal: GoalName,
+    ask: Ask,
+    clock: Clock,
+    below: float = np.inf,
+    without: Sequence[Choice] = (),
+) -> Found:
+    """The least `goal` of one coupler within `ask`, if it is better than `below`; combinations `without` left out.
 
     Each round asks for a design better than the best so far. A round ends the search when ranges or the solver show
     that there is none: that is the proof. Where time runs out, `bound` is the best that is shown so far.
     """
-    return _Search(model, goal, ask, clock).run(below)
+    return _Search(model, goal, ask, clock, without).run(below)
 
 
-def first_look(model: TransistorModel, goal: GoalName, ask: Ask) -> tuple[Choice, float] | None:
-    """A good design of one coupler, found without the solver and without proof; None where none shows."""
-    box = whole_box(model, ask)
-    box = tightened(box, ask) if box else None
-    found = _look(box, goal, ask) if box else None
-    return (box.whole(found[0]), found[1]) if box and found else None
+def first_look(
+    model: LinkModel, goal: GoalName, ask: Ask, below: float = np.inf, without: Sequence[Choice] = ()
+) -> Found:
+    """A good design of one coupler that beats `below`, found without the solver; no proof that it is the best.
+
+    Where ranges show that there is none, the bound says so as in `best`; else the bound is 0.
+    """
+    search = _Search(model, goal, ask, Clock(), without)
+    wanted = search.better_than(below)
+    box = tightened(search.box, wanted) if search.box else None
+    if box is None:
+        return _proved(None, below)
+    found = _look(box, goal, wanted)
+    return Found(box.whole(found[0]), found[1], 0.0) if found else Found(None, below, 0.0)
+
+
+def exists(model: LinkModel, ask: Ask, clock: Clock) -> bool | None:
+    """Whether the coupler has any design within `ask`; None where time ran out first."""
+    search = _Search(model, None, ask, clock)
+    box = narrowed(search.box, ask) if search.box else None
+    if box is None:
+        clock.by_ranges += 1
+        return False
+    if _look(box, GoalName.POWER, ask):
+        return True
+    outcome, found = search.solve(box, ask)
+    return True if found else (None if outcome.answer is Answer.OUT_OF_TIME else False)
 
 
 class _Search:
-    def __init__(self, model: TransistorModel, goal: GoalName, ask: Ask, clock: Clock) -> None:
-        self.goal, self.ask, self.clock = goal, ask, clock
-        self.box = whole_box(model, ask)
+    """`goal` None asks for any design."""
+
+    def __init__(
+        self, model: LinkModel, goal: GoalName | None, ask: Ask, clock: Clock, without: Sequence[Choice] = ()
+    ) -> None:
+        self.goal, self.ask, self.clock = goal or GoalName.POWER, ask, clock
+        self.any = goal is None
+        self.box = whole_box(model, ask, stack([_only(choice, model.sizes) for choice in without], model.sizes))
         self.scale = float(sum(np.median(part) for part in model.power))
 
     def run(self, below: float) -> Found:
         choice: Choice | None = None
         value, bound = below, 0.0
         while bound < value * (1 - STEP):
-            wanted = self._better_than(value)
+            wanted = self.better_than(value)
             self.box = narrowed(self.box, wanted) if self.box else None
             if self.box is None:
                 self.clock.by_ranges += 1
                 return _proved(choice, value)
             better = _look(self.box, self.goal, wanted)
             if better is None:
-                outcome, better = self._solve(self.box, wanted)
+                outcome, better = self.solve(self.box, wanted)
                 bound = max(bound, outcome.bound * self.scale) if self.goal is GoalName.POWER else bound
                 if outcome.answer is Answer.NONE:
                     return _proved(choice, value)
@@ -76,13 +110,13 @@ class _Search:
             choice, value = self.box.whole(better[0]), better[1]
         return Found(choice, value, bound)
 
-    def _better_than(self, value: float) -> Ask:
+    def better_than(self, value: float) -> Ask:
         """What a better design must do."""
         if not np.isfinite(value):
             return self.ask
         return self.ask.limited(self.goal, min(self.ask.limit(self.goal), value * (1 - STEP)))
 
-    def _solve(self, box: Box, wanted: Ask) -> tuple[Outcome, tuple[Choice, float] | None]:
+    def solve(self, box: Box, wanted: Ask) -> tuple[Outcome, tuple[Choice, float] | None]:
         """Solver calls, with cuts for what the exact times refuse, until one answer stands."""
         cut: Box | None = box
         while cut is not None and not self.clock.out:
@@ -99,7 +133,7 @@ class _Search:
         return (Outcome(Answer.OUT_OF_TIME, None, 0.0) if cut else Outcome(Answer.NONE, None, np.inf)), None
 
     def _linear_goal(self, box: Box) -> tuple[np.ndarray, np.ndarray] | None:
-        if self.goal is not GoalName.POWER:
+        if self.any or self.goal is not GoalName.POWER:
             return None
         p, q = box.model.power
         return p / self.scale, q / self.scale

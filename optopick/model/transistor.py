@@ -11,7 +11,7 @@ import numpy as np
 from optopick.brief import Brief
 from optopick.coupler import Coupler
 from optopick.model.candidates import Candidates, candidates
-from optopick.model.ranges import Live
+from optopick.model.ranges import Live, holding
 from optopick.model.rows import Ask, Rows, Scores, scaled, stack
 from optopick.physics import switching
 from optopick.physics.types import Array
@@ -91,12 +91,14 @@ class TransistorModel:
 
     def start(self, dropped: frozenset[str] = frozenset()) -> Live:
         """The values that hold the limits on one value alone."""
-        parts = (self.candidates.led.keep, self.candidates.load.keep, self.candidates.base.keep)
-        masks = []
-        for keep, n in zip(parts, self.sizes, strict=True):
-            held = [mask for name, mask in keep.items() if name not in dropped]
-            masks.append(np.all([np.ones(n, dtype=bool), *held], axis=0))
-        return Live(*masks)
+        x = self.candidates
+        return holding((x.led.keep, x.load.keep, x.base.keep), self.sizes, dropped)
+
+    def values(self, i: int, j: int, m: int) -> tuple[float, int, float, float, float]:
+        """Resistors of a combination: r_led, pieces, r_shunt, r_load, r_be [ohm], infinite where absent."""
+        x = self.candidates
+        led = (float(x.led.r_led[i]), int(x.led.pieces[i]), float(x.led.r_shunt[i]))
+        return *led, float(x.load.r_load[j]), float(x.base.r_be[m])
 
     def rows(self, ask: Ask) -> Rows:
         """Every linear row of what is asked; for delays a relaxation, the closer the fewer values are left."""
@@ -176,7 +178,9 @@ class TransistorModel:
         rho = switching.extraction_for_crossing_off(limit - held, x.load.tau, x.load.off, x.load.i_sat)
         yield scaled("delay_off", np.zeros(self.sizes[0]), -rho.max(axis=1), x.base.i_be_low)
         fall = switching.crossing_off(x.load.tau, x.load.off, weak.i_be_low, x.load.i_sat)
-        stretch = np.exp(np.clip((limit - fall) / x.tau_s, -50.0, 50.0))
+        with np.errstate(invalid="ignore"):
+            left = np.nan_to_num((limit - fall) / x.tau_s, nan=50.0)
+        stretch = np.exp(np.clip(left, -50.0, 50.0))
         room = (stretch * x.load.i_sat).min(axis=1)
         most = stretch.min(axis=1).max(axis=1)[:, None]
         yield scaled("storage", -x.i_high, room, most * x.base.i_be_low)

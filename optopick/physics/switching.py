@@ -15,6 +15,9 @@ from optopick.physics.types import Array, Real
 LN9 = float(np.log(9.0))
 """10 to 90 % of an exponential, in time constants: ln 9 = 2.197."""
 
+MOST_CONSTANTS = 50.0
+"""Time constants after which an exponential counts as over."""
+
 
 def time_constant(tau_0: Real, c_m: Real, gain: Real, r_load: Real, c_load: Real) -> Array:
     """Time constant of the collector current [s]: gain*(tau_0 + r_load*c_m) + r_load*c_load.
@@ -122,5 +125,7 @@ def extraction_for_crossing_off(time: Real, tau: Real, fraction: Real, i_sat: Re
 
 
 def _growth(time: Real, tau: Real) -> Array:
-    """exp(time/tau), kept off 1 and off overflow: an endless tau asks for a drive beyond any."""
-    return np.asarray(np.exp(np.clip(np.asarray(time) / np.asarray(tau), 1e-12, 50.0)))
+    """exp(time/tau), kept off 1 and off overflow: an endless tau asks for a drive beyond any, an endless time for none."""
+    endless = np.isinf(time)
+    ratio = np.where(endless, MOST_CONSTANTS, np.where(endless, 0.0, time) / np.asarray(tau))
+    return np.asarray(np.exp(np.clip(ratio, 1e-12, MOST_CONSTANTS)))

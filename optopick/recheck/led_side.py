@@ -18,6 +18,9 @@ from optopick.result import Check, Design
 DARK_FRACTION = 0.01
 """An LED counts as dark below this share of the current at which its coupler is specified (a rule of this program)."""
 
+DIODE_DROP = 1.0
+"""What a diode antiparallel to the LED leaves of a reverse voltage [V] (common practice, no source)."""
+
 
 @dataclass(frozen=True)
 class LedBranch:
@@ -74,13 +77,14 @@ def led_checks(brief: Brief, coupler: Coupler, design: Design, box: Vertices, br
     if drive.on_current_min > 0:
         checks.append(worst(box, "input_current", branch.i_branch, drive.on_current_min, ">=", "A"))
     if drive.reverse > 0:
-        checks.append(worst(box, "reverse_voltage", drive.reverse, led.v_r_max, "<=", "V"))
+        seen = DIODE_DROP if design.reverse_diode else drive.reverse
+        checks.append(worst(box, "reverse_voltage", seen, led.v_r_max, "<=", "V"))
     return checks + _resistor_checks(brief, design, box, branch)
 
 
 def _resistor_checks(brief: Brief, design: Design, box: Vertices, branch: LedBranch) -> list[Check]:
     _, power, voltage = rating_of(brief, "r_led", design.r_led)
-    drop = branch.i_branch * box.r_led
+    drop = branch.i_branch * box.r_led / design.pieces
     checks = [
         worst(box, "r_led_power", drop * branch.i_branch, resistor_derated(power, box.t), "<=", "W"),
         worst(box, "r_led_voltage", drop, voltage, "<=", "V"),

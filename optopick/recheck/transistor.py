@@ -23,8 +23,10 @@ from optopick.physics.transfer import (
 )
 from optopick.physics.types import Array
 from optopick.recheck.led_side import DARK_FRACTION, LedBranch
+from optopick.recheck.load_side import load_checks
+from optopick.recheck.stage import StageReview, Times
 from optopick.recheck.vertices import Vertices, rating_of, worst
-from optopick.result import Check, Design, Timing
+from optopick.result import Check, Design
 
 
 @dataclass(frozen=True)
@@ -44,22 +46,21 @@ class Stage:
     v_ih: Array
 
 
-@dataclass(frozen=True)
-class Times:
-    """Times at every vertex [s], without guard."""
-
-    edge_on: Array
-    edge_off: Array
-    storage: Array
-    delay_on: Array
-    delay_off: Array
-
-
 def parts_of(coupler: Coupler) -> tuple[Transfer, Transistor]:
     """Transfer and transistor of a coupler with a transistor output."""
     if coupler.transfer is None or coupler.transistor is None:
         raise ValueError(f"{coupler.part} has no transistor output")
     return coupler.transfer, coupler.transistor
+
+
+def review_stage(brief: Brief, coupler: Coupler, design: Design, box: Vertices, branch: LedBranch) -> StageReview:
+    """Every check, the times and the power of a transistor output."""
+    s = stage(brief, coupler, box, branch)
+    checks = [
+        *static_checks(brief, coupler, box, branch, s),
+        *rating_checks(brief, coupler, design, box, branch, s),
+    ]
+    return StageReview(tuple(checks), times(brief, coupler, box, s), brief.signal.lit * box.v_cc * s.j_s)
 
 
 def stage(brief: Brief, coupler: Coupler, box: Vertices, branch: LedBranch) -> Stage:
@@ -153,14 +154,12 @@ def rating_checks(
     """Voltages, currents and dissipations of the output and of its resistors."""
     _, transistor = parts_of(coupler)
     heat = output_dissipation(box.v_cc, box.r_load, s.i_input)
-    _, power, voltage = rating_of(brief, "r_load", design.r_load)
     checks = [
         worst(box, "collector_voltage", box.v_cc, transistor.v_ceo, "<=", "V"),
         worst(box, "collector_current", s.j_s, transistor.i_c_max, "<=", "A"),
         worst(box, "output_power", heat, derated(coupler.p_out, box.t), "<=", "W"),
         worst(box, "total_power", branch.i_f * branch.v_f + heat, derated(coupler.p_total, box.t), "<=", "W"),
-        worst(box, "r_load_power", box.v_cc**2 / box.r_load, resistor_derated(power, box.t), "<=", "W"),
-        worst(box, "r_load_voltage", box.v_cc, voltage, "<=", "V"),
+        *load_checks(brief, design, box),
     ]
     if design.r_be is not None:
         _, power, _ = rating_of(brief, "r_be", design.r_be)
@@ -179,12 +178,17 @@ def times(brief: Brief, coupler: Coupler, box: Vertices, s: Stage) -> Times:
     on, off = _fractions(brief, transistor, box, s)
     held = switching.storage(transistor.tau_s, s.i_eff, s.i_be, i_sat)
     charge = switching.base_charging(transistor.c_be, s.v_be, s.eta, s.i_eff, s.i_be)
+    delay_on = charge + switching.crossing_on(tau, on, s.i_eff, s.i_be, i_sat)
+    delay_off = held + switching.crossing_off(tau, off, s.i_be, i_sat)
+    with np.errstate(invalid="ignore"):
+        distortion = np.nan_to_num(np.abs(delay_off - delay_on), nan=np.inf, posinf=np.inf)
     return Times(
         edge_on=switching.edge_on(tau, s.i_eff, s.i_be, i_sat),
         edge_off=switching.edge_off(tau, s.i_be, i_sat),
         storage=held,
-        delay_on=charge + switching.crossing_on(tau, on, s.i_eff, s.i_be, i_sat),
-        delay_off=held + switching.crossing_off(tau, off, s.i_be, i_sat),
+        delay_on=delay_on,
+        delay_off=delay_off,
+        distortion=distortion,
     )
 
 
@@ -196,23 +200,3 @@ def _fractions(brief: Brief, transistor: Transistor, box: Vertices, s: Stage) ->
     else:
         on, off = s.v_ih / swing, 1.0 - s.v_il / swing
     return np.maximum(on, 0.0), np.clip(off, 0.0, 1.0 - 1e-9)
-
-
-def timing_checks(brief: Brief, box: Vertices, times_: Times) -> tuple[list[Check], Timing]:
-    """Limits on edges, delays, distortion and pulse, and each worst case, guard included."""
-    guard, limits = brief.limits.timing_guard, brief.limits
-    edge = guard * np.maximum(times_.edge_on, times_.edge_off)
-    delay = guard * np.maximum(times_.delay_on, times_.delay_off)
-    with np.errstate(invalid="ignore"):
-        distortion = np.nan_to_num(guard * np.abs(times_.delay_off - times_.delay_on), nan=np.inf, posinf=np.inf)
-    checks = [worst(box, "shortest_pulse", delay, brief.signal.shortest_pulse, "<=", "s")]
-    for name, value, limit in (
-        ("edge_time", edge, limits.edge_time),
-        ("delay", delay, limits.delay),
-        ("distortion", distortion, limits.distortion),
-    ):
-        if limit is not None:
-            checks.append(worst(box, name, value, limit, "<=", "s"))
-    names = ("edge_on", "edge_off", "storage", "delay_on", "delay_off")
-    each = {name: guard * float(np.max(getattr(times_, name))) for name in names}
-    return checks, Timing(**each, distortion=float(np.max(distortion)))

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Collection
 from dataclasses import dataclass
 
 import numpy as np
@@ -70,8 +71,11 @@ def _drive_as_one(parts: list[str]) -> list[str]:
     return parts
 
 
-def vertices(brief: Brief, coupler: Coupler, design: Design) -> Vertices:
-    """The box of a design; lots without a transistor have a single point on the CTR and light axes."""
+def vertices(brief: Brief, coupler: Coupler, design: Design, nominal: Collection[str] = ()) -> Vertices:
+    """The box of a design; lots without a transistor have a single point on the CTR and light axes.
+
+    nominal: axes of `ORDER` that stand at their nominal value alone (25 degC, new, typical, mid supply, no tolerance).
+    """
     one = Axis("", (1.0,), ("",))
     transfer, transistor = coupler.transfer, coupler.transistor
     axes = {
@@ -84,12 +88,41 @@ def vertices(brief: Brief, coupler: Coupler, design: Design) -> Vertices:
         "drop": drop_axis(brief),
         "supply": supply_axis(brief),
     }
+    axes |= {name: Axis(name, (_nominal(brief, coupler, name),), ("",)) for name in nominal if name in axes}
     placed = [_placed(k, axes[name].values) for k, name in enumerate(ORDER[:8])]
-    resistors = [_resistor(brief, name, getattr(design, name), placed[0]) for name in RESISTORS]
+    resistors = [
+        _placed(ORDER.index(name), (_ohms(design, name),))
+        if name in nominal
+        else _resistor(brief, design, name, placed[0])
+        for name in RESISTORS
+    ]
     ends = tuple((f"{word} min", f"{word} max") for word in ("R_LED", "R_load", "R_BE", "R_shunt"))
     words = tuple(axes[name].words for name in ORDER[:8]) + ends
     fields = ("t", "age", "ctr", "light", "v_f", "drive", "drop", "v_cc", *RESISTORS)
     return Vertices(**dict(zip(fields, [*placed, *resistors], strict=True)), words=words)
+
+
+def _nominal(brief: Brief, coupler: Coupler, name: str) -> float:
+    """The nominal value of an axis."""
+    transfer = coupler.transfer
+    return {
+        "temperature": 25.0,
+        "age": 0.0,
+        "ctr": float(np.sqrt(transfer.ctr_min * transfer.ctr_max)) if transfer else 1.0,
+        "light": 1.0,
+        "v_f": coupler.led.v_f_typ,
+        "drive": brief.drive.supply.middle,
+        "drop": brief.drive.drop.middle,
+        "supply": brief.output.supply.middle,
+    }[name]
+
+
+def _ohms(design: Design, name: str) -> float:
+    """The whole resistance at a position [ohm], infinite where it stays empty."""
+    value = getattr(design, name)
+    if value is None:
+        return float("inf")
+    return float(value * design.pieces if name == "r_led" else value)
 
 
 def stock_of(brief: Brief, name: str) -> Position | None:
@@ -114,11 +147,11 @@ def _placed(axis: int, values: tuple[float, ...]) -> Array:
     return np.asarray(values, dtype=float).reshape(shape)
 
 
-def _resistor(brief: Brief, name: str, value: float | None, t: Array) -> Array:
-    axis = ORDER.index(name)
+def _resistor(brief: Brief, design: Design, name: str, t: Array) -> Array:
+    axis, value = ORDER.index(name), getattr(design, name)
     if value is None:
         return _placed(axis, (np.inf,))
-    low, high = resistor_span(value, rating_of(brief, name, value)[0], brief.stock.drift, t)
+    low, high = resistor_span(_ohms(design, name), rating_of(brief, name, value)[0], brief.stock.drift, t)
     return np.concatenate([low, high], axis=axis)
 
 

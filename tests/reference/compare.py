@@ -1,7 +1,7 @@
-"""Predictions against the simulator: python -m tests.reference.compare [product | proposal ...].
+"""Predictions against the simulator: python -m tests.reference.compare [product | proposal | plain-row ...].
 
-The ratio predicted / simulated per quantity, over all circuits of a record and over parts of it: first the record of the
-six devices, on which constants were fitted, then that of the strangers, which no formula has seen.
+The ratio predicted / simulated per quantity, over all circuits of a record and over parts of it: first the record of
+the six devices, on which constants were fitted, then that of the strangers, which no formula has seen.
 """
 
 from __future__ import annotations

@@ -31,7 +31,7 @@ class Circuit:
 
 @dataclass(frozen=True)
 class Run:
-    """How a deck is run: LED lit from `start` for `lit` seconds, then dark until `end` [s]; `fineness` halves errors."""
+    """How a deck is run: LED lit from `start` for `lit` seconds, then dark until `end` [s]; finer with `fineness`."""
 
     start: float
     lit: float
@@ -42,8 +42,8 @@ class Run:
 def model_line(d: Device) -> str:
     """The .model statement of a device; the base-emitter junction graded as usual (0.75 V, 0.33)."""
     return (
-        f".model q npn(is={d.i_s:g} bf={d.b_f:g} ise={d.i_se:g} ne={d.n_e:g} ikf={d.i_kf:g} br={d.b_r:g} vaf={d.v_af:g} "
-        f"cje={d.c_je:g} vje=0.75 mje=0.33 cjc={d.c_jc:g} vjc={d.v_jc:g} mjc={d.m_jc:g} fc=0.5 "
+        f".model q npn(is={d.i_s:g} bf={d.b_f:g} ise={d.i_se:g} ne={d.n_e:g} ikf={d.i_kf:g} br={d.b_r:g} "
+        f"vaf={d.v_af:g} cje={d.c_je:g} vje=0.75 mje=0.33 cjc={d.c_jc:g} vjc={d.v_jc:g} mjc={d.m_jc:g} fc=0.5 "
         f"tf={d.t_f:g} tr={d.t_r:g} rb={d.r_b:g} rc={d.r_c:g})"
     )
 

@@ -6,7 +6,9 @@ at 100 ohm 1 to 5 us, storage constant 5 to 30 us, collector-base capacitance 4 
 
 from __future__ import annotations
 
+import csv
 from dataclasses import dataclass
+from pathlib import Path
 
 import numpy as np
 
@@ -17,8 +19,8 @@ class Device:
 
     eta: base photocurrent per LED current [1]. The rest are parameters of the Gummel-Poon model in SPICE's names and
     units: i_s, i_se [A], n_e [1]: base current that takes the gain at low current; b_f, b_r [1]; i_kf [A]: knee of the
-    gain at high current; v_af [V]; c_je, c_jc [F] at zero bias, m_jc [1], v_jc [V]: their grading; t_f, t_r [s]: transit
-    times; r_b, r_c [ohm]. i_cbo [A]: dark current from collector to base.
+    gain at high current; v_af [V]; c_je, c_jc [F] at zero bias, m_jc [1], v_jc [V]: grading of the latter; t_f, t_r
+    [s]: transit times; r_b, r_c [ohm]. i_cbo [A]: dark current from collector to base.
     """
 
     name: str
@@ -41,14 +43,14 @@ class Device:
     i_cbo: float
 
 
-DEVICES = (
-    Device("weak", 3.4e-3, 1.0e-14, 200, 9.0e-13, 1.7, 0.15, 4.0, 60, 8e-12, 6e-12, 0.35, 0.6, 6.5e-9, 1.3e-6, 150, 8, 5e-12),
-    Device("plain", 2.6e-3, 2.0e-14, 520, 6.0e-13, 1.7, 0.08, 5.0, 80, 12e-12, 10e-12, 0.40, 0.7, 4.5e-9, 1.6e-6, 200, 10, 10e-12),
-    Device("small", 4.5e-3, 0.6e-14, 280, 1.0e-13, 1.6, 0.05, 8.0, 50, 7e-12, 4.2e-12, 0.33, 0.7, 4.0e-9, 0.7e-6, 250, 15, 3e-12),
-    Device("large", 4.2e-3, 5.0e-14, 750, 3.5e-12, 1.8, 0.10, 3.0, 100, 20e-12, 15e-12, 0.45, 0.65, 8.5e-9, 3.6e-6, 100, 5, 20e-12),
-    Device("eager", 4.4e-3, 3.0e-14, 1370, 1.2e-12, 1.8, 0.06, 6.0, 70, 14e-12, 11e-12, 0.38, 0.75, 4.4e-9, 2.2e-6, 180, 10, 15e-12),
-    Device("sticky", 3.2e-3, 1.5e-14, 440, 1.6e-13, 1.5, 0.12, 9.0, 60, 10e-12, 8e-12, 0.50, 0.8, 8.0e-9, 3.4e-6, 120, 12, 10e-12),
-)
+def _read(path: Path) -> tuple[Device, ...]:
+    """Devices of a CSV file whose columns are the fields of Device."""
+    with path.open(newline="") as file:
+        rows = list(csv.reader(file))[1:]
+    return tuple(Device(name, *(float(cell) for cell in cells)) for name, *cells in rows)
+
+
+DEVICES = _read(Path(__file__).with_name("devices.csv"))
 
 
 def stranger(rng: np.random.Generator, name: str) -> Device:

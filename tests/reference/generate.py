@@ -86,7 +86,7 @@ def simulate_circuit(d: Device, drawn: Drawn) -> Times:
 
 
 def complete(times: Times) -> bool:
-    """Whether the output passes both thresholds: a circuit at the edge of saturation may not; leaving saturation may lack."""
+    """Whether the output passes both thresholds; it need not have been deep in saturation to count."""
     return all(math.isfinite(getattr(times, f.name)) for f in fields(times) if f.name != "unsaturated")
 
 

@@ -1,23 +1,23 @@
 """Charge control in steps: the switching formulas of optopick.physics.switching, with what moves the charge spelt out.
 
 As there, drive and load are LED currents: `i_eff` the light, `i_be` what the base resistor takes of it. The swing is
-cut at a few levels x, shares of the load current j_s from 0 (output at rest) to 1 (output at its end). At each level the
-sheet's CTR curve gives the LED current i(x) that carries x*j_s, and `base_charge` the charge q(x) that the base holds.
+cut at a few levels x, shares of the load current j_s from 0 (output at rest) to 1 (output at its end). At each level
+the sheet's CTR curve gives the LED current i(x) that carries x*j_s, and `base_charge` the charge q(x) in the base.
 Between two levels the charge is taken as linear in i, so a step from a to b lasts, turning on with n = i_eff - i_be,
 
     tau*ln[(n - i_a)/(n - i_b)],   tau = (q_b - q_a)/(eta*(i_b - i_a)) + r_load*c_load
 
-and turning off tau*ln[(i_a + i_be)/(i_b + i_be)]: one step and a constant tau give the formulas of `switching`. A sum of
-steps still depends on the light and the base resistor through n or i_be alone, so a limit on it still is one number per
-load value, found by bisection (`drive_for`, `extraction_for`).
+and turning off tau*ln[(i_b + i_be)/(i_a + i_be)]: one step and a constant tau give the formulas of `switching`. A sum
+of steps still depends on the light and the base resistor through n or i_be alone, so a limit on it still is one number
+per load value, found by Newton's method (`drive_for_edge_on`, `drive_for_crossing_on`, `extraction_for`).
 Source: charge control (Ebers and Moll 1954; Moll, Proc. IRE 42 (1954) 1773); junction charge as in Gummel and Poon,
 Bell System Technical Journal 49 (1970) 827.
 """
 
 from __future__ import annotations
 
-from collections.abc import Callable
-from dataclasses import dataclass, replace
+from dataclasses import dataclass, fields, replace
+from typing import TypeVar
 
 import numpy as np
 
@@ -36,7 +36,8 @@ J_V_BE = 2e-3
 STEPS = 3
 """Steps of an edge or of a delay: 12 differ from 3 by about 2 %, 1 by 8 %."""
 
-BISECTIONS = 60
+ITERATIONS, SAFE, LEAST_RISE = 20, 1.0 + 1e-12, 1e-13
+"""Of Newton's method; factor that keeps its result on the safe side; least drive beyond the highest level [1]."""
 
 FIRST = 0.05
 """Share of the load current at which charging the base ends and the first step begins."""
@@ -47,7 +48,8 @@ class Base:
     """What charges the base of a unit.
 
     transit: forward transit time [s], tau_0/h_fe; c_cb: collector-base capacitance at 0 V [F]; c_be: of the emitter
-    junction [F], taken as constant; v_be: base-emitter voltage at J_V_BE [V]; eta: base photocurrent per LED current [1].
+    junction [F], taken as constant; v_be: base-emitter voltage at J_V_BE [V]; eta: base photocurrent over LED
+    current [1].
     """
 
     transit: Real
@@ -70,12 +72,15 @@ class Load:
     t: Real
 
 
+Given = TypeVar("Given", Base, Load)
+
+
 @dataclass(frozen=True)
 class Steps:
-    """Steps from one level to the next, on the first axis: time constants [s], LED currents of the lower and the upper
+    """Steps from one level to the next, on the last axis: time constants [s], LED currents of the lower and the upper
     level [A], base-emitter voltage over v_be [1], and the least time of each [s], that of the output node alone.
 
-    lag: what the load capacitance adds to the base's charge, as LED current times time squared [A s2], see `crossing_on`.
+    lag: what the load capacitance adds to the base's charge, as LED current times time squared [A s2]: `crossing_on`.
     """
 
     tau: Array
@@ -129,30 +134,36 @@ def steps(base: Base, load: Load, transfer: Transfer, carried: Real, cut: Cut) -
     """Steps of a swing; carried: CTR at the test current times h [1].
 
     Where the CTR curve does not reach the highest level the time constants are infinite, and so is every time.
-    Broadcasts; the steps lie on a new first axis.
+    Broadcasts; the steps lie on a new last axis.
     """
-    x = _levels(cut, load.j_s, carried)
+    lag = base.transit * load.c_load * load.swing * (np.asarray(cut.last) - cut.first) / base.eta
+    base, load, carried = _stretched(base), _stretched(load), np.asarray(carried)[..., None]
+    x = _levels(cut)
     q = base_charge(base, load, x) / base.eta
     i = led_current_for(transfer, carried, 1.0, x * load.j_s)
-    reached = np.isfinite(i[-1])
+    reached = np.isfinite(i[..., -1:])
     i = np.where(reached, i, x * transfer.curve_i[-1])
     rc = np.asarray(load.r_load) * load.c_load
     v = base_voltage(base, x * load.j_s, load.t) / base.v_be
     return Steps(
-        tau=np.where(reached, np.diff(q, axis=0) / np.diff(i, axis=0) + rc, np.inf),
-        i_low=i[:-1],
-        i_high=i[1:],
-        hold=np.asarray((v[1:] + v[:-1]) / 2),
-        least=np.asarray(rc * np.diff(np.log(x), axis=0)),
-        lag=np.asarray(base.transit * load.c_load * load.swing * (x[-1] - x[0]) / base.eta),
+        tau=np.where(reached, np.diff(q) / np.diff(i) + rc, np.inf),
+        i_low=i[..., :-1],
+        i_high=i[..., 1:],
+        hold=np.asarray((v[..., 1:] + v[..., :-1]) / 2),
+        least=np.asarray(rc * np.diff(np.log(x))),
+        lag=np.asarray(lag),
     )
 
 
-def _levels(cut: Cut, *like: Real) -> Array:
-    """Shares of the swing on a new first axis, broadcast against `like`."""
-    first, last, *_ = np.broadcast_arrays(cut.first, cut.last, *like)
-    u = np.linspace(0.0, 1.0, cut.count + 1).reshape(-1, *([1] * first.ndim))
-    return np.asarray(first * (last / first) ** u)
+def _stretched(x: Given) -> Given:
+    """The same with a last axis of length one behind every array."""
+    return replace(x, **{f.name: np.asarray(getattr(x, f.name))[..., None] for f in fields(x)})
+
+
+def _levels(cut: Cut) -> Array:
+    """Shares of the swing on a new last axis."""
+    first, last = (np.asarray(end, dtype=float)[..., None] for end in (cut.first, cut.last))
+    return np.asarray(first * (last / first) ** np.linspace(0.0, 1.0, cut.count + 1))
 
 
 def time_on(s: Steps, n: Real) -> Array:
@@ -160,10 +171,11 @@ def time_on(s: Steps, n: Real) -> Array:
 
     n = i_eff - i_be [A]. Infinite where n does not pass the highest level. Broadcasts.
     """
-    n = np.asarray(n, dtype=float)
-    passes = n > s.i_high[-1]
-    safe = np.where(passes, n, 2.0 * s.i_high[-1])
-    return np.asarray(np.where(passes, np.sum(s.tau * np.log((safe - s.i_low) / (safe - s.i_high)), axis=0), np.inf))
+    n, last = np.asarray(n, dtype=float)[..., None], s.i_high[..., -1:]
+    passes = n > last
+    safe = np.where(passes, n, 2.0 * last)
+    time = np.sum(s.tau * np.log((safe - s.i_low) / (safe - s.i_high)), axis=-1)
+    return np.asarray(np.where(passes[..., 0], time, np.inf))
 
 
 def time_off(s: Steps, i_be: Real) -> Array:
@@ -172,8 +184,8 @@ def time_off(s: Steps, i_be: Real) -> Array:
     Sum of max(tau*ln[(i_high + b)/(i_low + b)], least), b = hold*i_be: however hard the base resistor pulls, the output
     node follows no faster than its own resistor and capacitance. Broadcasts.
     """
-    b = s.hold * np.asarray(i_be)
-    return np.asarray(np.sum(np.maximum(s.tau * np.log((s.i_high + b) / (s.i_low + b)), s.least), axis=0))
+    b = s.hold * np.asarray(i_be)[..., None]
+    return np.asarray(np.sum(np.maximum(s.tau * np.log((s.i_high + b) / (s.i_low + b)), s.least), axis=-1))
 
 
 def edge_on(s: Steps, n: Real, i_sat: Real) -> Array:
@@ -203,7 +215,7 @@ def crossing_on(s: Steps, n: Real) -> Array:
     term: the output already moves when it begins. Broadcasts.
     """
     t = time_on(s, n)
-    n = np.maximum(np.asarray(n, dtype=float), s.i_high[-1])
+    n = np.maximum(np.asarray(n, dtype=float), s.i_high[..., -1])
     return np.asarray(t / 2 + np.sqrt(t * t / 4 + s.lag / n))
 
 
@@ -213,54 +225,55 @@ def held(tau_s: Real, i_eff: Real, i_be: Real, i_sat: Real, hold: Real) -> Array
     hold: base-emitter voltage at the load's current over v_be [1]. The output has not moved yet when it ends: the time
     to 10 % of the swing is this and `time_off` from 1 to 0.9. Broadcasts.
     """
-    return np.asarray(tau_s * np.log(np.maximum(np.asarray(i_eff) / (np.asarray(i_sat) + hold * np.asarray(i_be)), 1.0)))
+    left = np.asarray(i_sat) + hold * np.asarray(i_be)
+    return np.asarray(tau_s * np.log(np.maximum(np.asarray(i_eff) / left, 1.0)))
 
 
 def drive_for_edge_on(s: Steps, time: Real, i_sat: Real) -> Array:
     """Least n [A] with edge_on <= time; 0 where the edge of saturation is fast enough. Broadcasts."""
-    return np.asarray(np.where(time_on(s, i_sat) <= time, 0.0, _least_drive(s, time, 0.0, time_on)))
+    return np.asarray(np.where(time_on(s, i_sat) <= time, 0.0, _least_drive(s, time, 0.0)))
 
 
 def drive_for_crossing_on(s: Steps, time: Real) -> Array:
     """Least n [A] with crossing_on <= time; infinite for time <= 0. Broadcasts."""
-    return _least_drive(s, time, s.lag, crossing_on)
+    return _least_drive(s, time, s.lag)
 
 
-def _least_drive(s: Steps, time: Real, lag: Real, takes: Callable[[Steps, Array], Array]) -> Array:
-    """Least n [A] with takes(s, n) <= time, never too small.
+def _least_drive(s: Steps, time: Real, lag: Real) -> Array:
+    """Least n [A] with time_on + lag/(n*time) <= time, by Newton's method, within a part in 1e12 and never below.
 
-    Each logarithm is at most (i_high - i_low)/(n - last), so n - last = (charge + lag/time)/time is enough, whence
-    bisection in the logarithm of n - last.
+    The left side is convex and falls with n, so from a point too small the iterates climb to the answer. What the
+    last step alone needs, i_high + (i_high - i_low)/(exp(time/tau) - 1), is such a point.
     """
-    t, last = np.asarray(time, dtype=float), s.i_high[-1]
-    charge = np.sum(s.tau * (s.i_high - s.i_low), axis=0)
-    possible = (t > 0) & np.isfinite(charge)
-    safe = np.where(possible, t, 1.0)
-    most = (np.where(np.isfinite(charge), charge, 1.0) + lag / safe) / safe
-    low, high = np.broadcast_arrays(np.log(last * 1e-15), np.log(most))
-    for _ in range(BISECTIONS):
-        middle = (low + high) / 2
-        late = takes(s, last + np.exp(middle)) > t
-        low, high = np.where(late, middle, low), np.where(late, high, middle)
-    return np.asarray(np.where(possible, last + np.exp(high), np.inf))
+    t, last = np.asarray(time, dtype=float), s.i_high[..., -1]
+    possible = (t > 0) & np.all(np.isfinite(s.tau), axis=-1)
+    t, tau = np.where(possible, t, 1.0), np.where(possible[..., None], s.tau, 1.0)
+    width = s.i_high - s.i_low
+    n = last + np.maximum(width[..., -1] / np.expm1(np.minimum(t / tau[..., -1], 500.0)), last * LEAST_RISE)
+    for _ in range(ITERATIONS):
+        above = n[..., None] - s.i_high
+        late = np.sum(tau * np.log1p(width / above), axis=-1) + lag / (n * t) - t
+        slope = np.sum(tau * width / (above * (above + width)), axis=-1) + lag / (n * n * t)
+        n = n + np.maximum(late, 0.0) / slope
+    return np.asarray(np.where(possible, n * SAFE, np.inf))
 
 
 def extraction_for(s: Steps, time: Real) -> Array:
-    """Least i_be [A] with time_off <= time, never too small: 0 where none is needed, infinite where none is enough.
+    """Least i_be [A] with time_off <= time: 0 where none is needed, infinite where none is enough. Broadcasts.
 
-    Each step takes at most tau*(i_high - i_low)/(hold*i_be) + least, whence the upper end of the bisection. Broadcasts.
+    By Newton's method from 0, within a part in 1e12 and never below: time_off is convex and falls with i_be.
     """
     t = np.asarray(time, dtype=float)
-    charge = np.sum(s.tau * (s.i_high - s.i_low) / s.hold, axis=0)
-    room = t - np.sum(s.least, axis=0)
-    possible = (room > 0) & np.isfinite(charge)
-    most = np.where(possible, charge, 1.0) / np.where(possible, room, 1.0)
-    low, high = np.zeros_like(most), most
-    for _ in range(BISECTIONS):
-        middle = (low + high) / 2
-        late = time_off(s, middle) > t
-        low, high = np.where(late, middle, low), np.where(late, high, middle)
-    return np.asarray(np.where(time_off(s, 0.0) <= t, 0.0, np.where(possible, high, np.inf)))
+    possible = (t > np.sum(s.least, axis=-1)) & np.all(np.isfinite(s.tau), axis=-1)
+    tau = np.where(possible[..., None], s.tau, 1.0)
+    i_be = np.zeros(possible.shape)
+    for _ in range(ITERATIONS):
+        low, high = (i + s.hold * i_be[..., None] for i in (s.i_low, s.i_high))
+        step = tau * np.log(high / low)
+        late = np.sum(np.maximum(step, s.least), axis=-1) - t
+        slope = np.sum(np.where(step > s.least, tau * s.hold * (high - low) / (low * high), 0.0), axis=-1)
+        i_be = i_be + np.maximum(late, 0.0) / np.where(slope > 0, slope, np.inf)
+    return np.asarray(np.where(time_off(s, 0.0) <= t, 0.0, np.where(possible, i_be * SAFE, np.inf)))
 
 
 EDGE, FIRST_TENTH = Cut(0.1, 0.9, STEPS), Cut(0.9, 1.0, 1)
@@ -295,8 +308,8 @@ def constants(known: Base, plain: PlainRow, saturated: SaturatedRow, transfer: T
     none, transit, c_cb = (replace(known, transit=x, c_cb=y) for x, y in ((0.0, 0.0), (1.0, 0.0), (0.0, 1.0)))
 
     def both(base: Base) -> Array:
-        times = _plain_edge(base, plain, transfer, carried), time_off(_cut(base, saturated, EDGE, transfer, carried), 0.0)
-        return np.array([float(time) for time in times])
+        off = time_off(_cut(base, saturated, EDGE, transfer, carried), 0.0)
+        return np.array([_plain_edge(base, plain, transfer, carried), float(off)])
 
     rest = both(none)
     per = np.array([both(transit) - rest, both(c_cb) - rest]).T

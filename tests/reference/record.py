@@ -71,7 +71,8 @@ def _cell(value: float | None) -> str:
 
 
 def _entry(cells: list[str]) -> Entry:
-    overdrive, *rest = (float(c) if c else None for c in cells[1:])
-    circuit, times = rest[: len(_CIRCUIT)], rest[len(_CIRCUIT) :]
-    named = {**dict(zip(_CIRCUIT, circuit, strict=True)), "pulled_up": bool(circuit[0])}
-    return Entry(cells[0], float(overdrive or 0.0), Circuit(**named), Times(**dict(zip(_TIMES, times, strict=True))))
+    device, overdrive, pulled_up, v_cc, r_load, r_be, c_load, i_f, *times = cells
+    circuit = Circuit(
+        bool(float(pulled_up)), float(v_cc), float(r_load), float(r_be) if r_be else None, float(c_load), float(i_f)
+    )
+    return Entry(device, float(overdrive), circuit, Times(*(float(cell) for cell in times)))

@@ -92,7 +92,8 @@ def run_deck(deck: str, folder: Path) -> str:
     """Run a deck in `folder`, return what ngspice printed; raises SimulationError where it fails."""
     path = folder / "link.cir"
     path.write_text(deck)
-    done = subprocess.run([_program(), "-b", path.name], cwd=folder, capture_output=True, text=True, check=False, timeout=300)
+    command = [_program(), "-b", path.name]
+    done = subprocess.run(command, cwd=folder, capture_output=True, text=True, check=False, timeout=300)
     if "no such" in done.stderr.lower() or "aborted" in done.stderr.lower():
         raise SimulationError(done.stderr[-500:])
     return done.stdout
@@ -167,10 +168,13 @@ def measure(wave: Wave, circuit: Circuit, run: Run) -> Times:
 
 
 def settled(wave: Wave, circuit: Circuit, run: Run) -> bool:
-    """Whether the output rested at the end of the lit time, and is back within 2 % of the swing at the end."""
-    dark = run.start + run.lit
-    v_rest, v_half, v_lit = (float(np.interp(at, wave.t, wave.out)) for at in (run.start, run.start + run.lit / 2, dark))
-    b_half, b_lit = (float(np.interp(at, wave.t, wave.v_be)) for at in (run.start + run.lit / 2, dark))
+    """Whether output and base rested over the second half of the lit time, and the output is back at the end.
+
+    Back: within 5 % of the swing, past every level that is read.
+    """
+    at = (run.start, run.start + run.lit / 2, run.start + run.lit)
+    v_rest, v_half, v_lit = (float(v) for v in np.interp(at, wave.t, wave.out))
+    _, b_half, b_lit = (float(v) for v in np.interp(at, wave.t, wave.v_be))
     swing = abs(v_lit - v_rest)
     return (
         swing > 0.01

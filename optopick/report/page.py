@@ -1,0 +1,205 @@
+"""The design-review document: one HTML page that needs nothing else, not even a network."""
+
+from __future__ import annotations
+
+import json
+from base64 import b64encode
+from collections.abc import Iterator
+from dataclasses import asdict, dataclass
+from functools import cache
+from hashlib import sha256
+from importlib import resources
+from typing import Any
+
+from jinja2 import Environment, PackageLoader, StrictUndefined
+from markupsafe import Markup
+
+from optopick.coupler import Coupler
+from optopick.report.brief_words import requirement_parts
+from optopick.report.document import Document, InputFile
+from optopick.report.explorer import explorer_data, walk_view
+from optopick.report.formulas import formulas_for
+from optopick.report.labels import TIMES, check_label
+from optopick.report.pictures import budget_bar, front_plot, margin_bar, state_of, waveform_plot
+from optopick.report.placed import placed_resistors, resistors_words
+from optopick.report.schematic import schematic_svg
+from optopick.report.svg import element
+from optopick.report.timing_picture import swing_of, timing_pictures
+from optopick.report.words import (
+    amount,
+    limit_words,
+    ohms_words,
+    proof_words,
+    room_words,
+    set_aside,
+    standing,
+    verdict,
+)
+from optopick.result import Check, Review
+
+QUOTED_MOST = 1_000_000
+"""Characters of an input file up to which it is quoted in full; of a longer table the heading and the line used."""
+
+
+@dataclass(frozen=True)
+class Section:
+    """A section of the page: its anchor, also the name of its template, and its heading."""
+
+    identity: str
+    name: str
+
+
+def page(document: Document) -> str:
+    """The page of a design review; the same document gives the same text."""
+    context = _always(document)
+    if document.review and document.coupler:
+        context |= _of_design(document, document.review, document.coupler)
+    context |= _optional(document)
+    return _environment().get_template("page.html.jinja").render(context)
+
+
+@cache
+def _environment() -> Environment:
+    environment = Environment(
+        loader=PackageLoader("optopick.report", "templates"),
+        autoescape=True,
+        undefined=StrictUndefined,
+        trim_blocks=True,
+        lstrip_blocks=True,
+    )
+    environment.globals |= {
+        "amount": amount,
+        "number": _number,
+        "state": _state,
+        "check_label": check_label,
+        "limit_words": limit_words,
+        "budget_bar": budget_bar,
+        "margin_bar": margin_bar,
+        "ohms_words": ohms_words,
+        "resistors_words": resistors_words,
+        "time_label": TIMES.__getitem__,
+    }
+    return environment
+
+
+def _template(name: str) -> str:
+    return resources.files("optopick.report").joinpath("templates", name).read_text(encoding="utf-8")
+
+
+def _number(value: float, unit: str) -> Markup:
+    """A value for people that carries its exact figure in SI for programs."""
+    return element("data", amount(value, unit), value=repr(float(value)))
+
+
+def _state(check: Check) -> Markup:
+    return element("span", room_words(check), class_=f"state {state_of(check)}")
+
+
+def styles() -> str:
+    """The style sheet of the page and of the pictures in it."""
+    return "\n".join(_template(name) for name in ("palette.css", "page.css", "pictures.css"))
+
+
+def _always(document: Document) -> dict[str, Any]:
+    """What every page shows."""
+    told, not_chosen = set_aside(document.rejected)
+    return {
+        "document": document,
+        "styles": Markup(styles()),  # noqa: S704 - the package's own files
+        "sections": tuple(_sections(document)),
+        "verdict": verdict(document.status, document.objectives, document.review),
+        "requirement": requirement_parts(document.brief),
+        "rejected": told,
+        "not_chosen": not_chosen,
+        "files": _files(document),
+        "script": None,
+    }
+
+
+def _sections(document: Document) -> Iterator[Section]:
+    """The sections that there is something for, in order."""
+    designed = document.review is not None
+    wanted: tuple[tuple[str, str, object], ...] = (
+        ("requirement", "Requirement", True),
+        ("design", "Design", designed),
+        ("checks", "Checks", designed),
+        ("timing", "Timing and power", designed),
+        ("budget", "Margin budget", document.budgets),
+        ("waveforms", "Waveforms", document.waveforms),
+        ("explorer", "Neighbouring values", document.walks),
+        ("tradeoff", "Trade-off", document.front),
+        ("couplers", "Couplers", document.ranking or document.rejected),
+        ("assumptions", "Assumed", designed),
+        ("formulas", "Formulas", designed),
+        ("proof", "Proof", document.proof),
+        ("inputs", "Inputs", True),
+    )
+    return (Section(identity, name) for identity, name, there in wanted if there)
+
+
+def _of_design(document: Document, review: Review, coupler: Coupler) -> dict[str, Any]:
+    """What a page shows of a design."""
+    said = standing(review)
+    return {
+        "placed": placed_resistors(document.brief, review.design),
+        "schematic": Markup(schematic_svg(document.brief, coupler, review.design)),  # noqa: S704 - escaped where made
+        "standing": said[:1].upper() + said[1:],
+        "timing_pictures": timing_pictures(review.timing, swing_of(document.brief, coupler)),
+        "times": tuple(asdict(review.timing).items()),
+        "formulas": formulas_for(coupler, review.design),
+    }
+
+
+def _optional(document: Document) -> dict[str, Any]:
+    """What a page shows where it is given."""
+    parts: dict[str, Any] = {"waveforms": tuple((wave, waveform_plot(wave)) for wave in document.waveforms)}
+    if document.proof and document.status:
+        parts["proof"] = proof_words(document.status, document.proof, timed=False)
+        parts["goal_words"] = _goal_words(document)
+    if document.front:
+        parts["front_plot"] = front_plot(document.front)
+    if document.walks:
+        parts |= _explorer(document)
+    return parts
+
+
+def _goal_words(document: Document) -> str:
+    goal = document.brief.goal
+    return (
+        f"First the least {goal.minimize.value}; then, giving up to {amount(goal.give, '%')} of it, the least "
+        f"{goal.then.value}. A bound lower than the design by less than that is what the second goal was bought with."
+    )
+
+
+def _explorer(document: Document) -> dict[str, Any]:
+    script = _template("explorer.js").strip()
+    data = json.dumps(explorer_data(document.walks), ensure_ascii=False, separators=(",", ":"), allow_nan=False)
+    # inside a script element only these could end it or begin a comment
+    data = data.replace("<", "\\u003c").replace(">", "\\u003e").replace("&", "\\u0026")
+    return {
+        "walks": tuple(walk_view(walk) for walk in document.walks),
+        "explorer_json": Markup(data),  # noqa: S704 - escaped above
+        "script": Markup(script),  # noqa: S704 - the package's own file
+        "script_checksum": f"sha256-{b64encode(sha256(script.encode()).digest()).decode()}",
+    }
+
+
+def _files(document: Document) -> tuple[tuple[InputFile, str, bool, str], ...]:
+    """Each input file: what is quoted of it, whether on paper too, and what it is."""
+    row = document.coupler.row if document.coupler else None
+    return (
+        (document.brief_file, _quoted(document.brief_file, None), True, "Brief"),
+        (document.table_file, _quoted(document.table_file, row), False, "Coupler table"),
+    )
+
+
+def _quoted(file: InputFile, row: int | None) -> str:
+    """A file's text; of one too long to carry along the first lines, and the line that was used."""
+    text = file.text
+    if len(text) <= QUOTED_MOST:
+        return text
+    lines = text.splitlines()
+    heading = next((k for k, line in enumerate(lines) if line.strip() and not line.startswith("#")), 0)
+    used = [lines[row - 1]] if row else []
+    left_out = f"[{len(lines)} lines, too long to quote; the heading and the line used:]"
+    return "\n".join((left_out, lines[heading], *used))[:QUOTED_MOST]

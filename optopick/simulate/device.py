@@ -1,0 +1,144 @@
+"""The output transistor of one unit at one corner, large-signal: what the simulation and the circuit file both use.
+
+Voltages: `v_be` base to emitter; `v_bc` base to the inner collector, which lies `v_off` below the outer one. Currents
+and charges of Ebers and Moll (Proc. IRE 42 (1954) 1761) in the transport form of Gummel and Poon (Bell System
+Technical Journal 49 (1970) 827):
+
+- forward i_f = i_s*exp(v_be/v_t), reverse i_r = i_s*exp(v_bc/v_t); from collector to emitter flows
+  (i_f - i_r)*(1 - v_bc/v_af);
+- from base to emitter the base current of the gain law at i_f, from base to collector (i_r - i_s)/beta_r;
+- stored between base and emitter tau_f*i_f*(1 - v_bc/v_af) and the charge of the emitter junction, between base and
+  collector tau_r*i_r and the charge of the collector junction;
+- the light drives its photocurrent from collector to base, and so does the dark current.
+
+No series resistances, and no Early effect where the device comes from a coupler table: tables do not have them.
+"""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+
+import numpy as np
+
+from optopick.coupler import Coupler, Kind, Transfer, Transistor
+from optopick.physics.leakage import dark_current
+from optopick.physics.led import thermal_voltage
+from optopick.physics.saturation import saturation_shape
+from optopick.physics.transfer import collector_current, light_factor, temperature_factor
+from optopick.simulate.charges import M_J, V_J, charges
+from optopick.simulate.corner import Corner
+from optopick.simulate.errors import NotSimulatedError
+from optopick.simulate.gain import GainLaw, gain_law
+from optopick.simulate.junction import Junction
+
+I_V_BE = 2e-3
+"""Collector current at which the table's v_be is taken to hold [A]: right for a small transistor (from memory)."""
+
+LEAST_GAIN = 1.5
+"""Where the gain falls to this on the CTR curve, photocurrent and collector current are no longer apart [1]."""
+
+LEAST_OVERDRIVE = 1.05
+"""Overdrive that the table's v_ce_sat row is at least taken to have [1]."""
+
+
+@dataclass(frozen=True)
+class Device:
+    """One unit at one corner; see the module.
+
+    eta: base photocurrent per LED current, at this temperature and age [1]. v_t: thermal voltage times the number of
+    junctions between base and emitter [V]. i_s [A]; gain: base current over i_f; beta_r [1]. tau_f, tau_r: transit
+    times [s]. emitter, collector: the junctions. v_off: what the table's v_ce_sat has above that of the junctions
+    [V]. i_cbo: dark current from collector to base [A]. v_af: Early voltage [V], infinite where it is not known.
+    """
+
+    eta: float
+    v_t: float
+    i_s: float
+    gain: GainLaw
+    beta_r: float
+    tau_f: float
+    tau_r: float
+    emitter: Junction
+    collector: Junction
+    v_off: float
+    i_cbo: float
+    v_af: float = math.inf
+
+
+def transistor_parts(coupler: Coupler) -> tuple[Transfer, Transistor]:
+    """Transfer and transistor; raises NotSimulatedError for a logic output."""
+    if coupler.transfer is None or coupler.transistor is None:
+        raise NotSimulatedError(
+            f"{coupler.part} has a logic output: its table row gives delays, not what its circuit does in between"
+        )
+    return coupler.transfer, coupler.transistor
+
+
+def device_at(coupler: Coupler, corner: Corner) -> Device:
+    """The unit of a coupler that a corner describes.
+
+    eta = ctr_mid/h_fe times the light's temperature factor, its spread and what ageing has left, ctr_mid the middle
+    of the bin. i_s puts the table's v_be at I_V_BE. The gain law goes through every point of the CTR curve, moved by
+    this unit's CTR, its light and the temperature. Transit times and the collector junction come from the table's
+    switching constants by `charges` and `reverse_transit`. Raises NotSimulatedError where the table's figures leave no
+    such transistor.
+    """
+    transfer, transistor = transistor_parts(coupler)
+    junctions = 2.0 if coupler.kind is Kind.DARLINGTON else 1.0
+    v_t = junctions * float(thermal_voltage(corner.t))
+    ctr_mid = math.sqrt(transfer.ctr_min * transfer.ctr_max)
+    eta = ctr_mid / transistor.h_fe * float(light_factor(transfer, corner.t)) * corner.light
+    carried = corner.ctr * float(temperature_factor(transfer, corner.t))
+    gain = gain_of_curve(coupler.part, transfer, carried, eta)
+    v_be = transistor.v_be + transistor.v_be_tc * (corner.t - 25.0)
+    stored = charges(transfer, transistor, junctions * float(thermal_voltage(25.0)))
+    i_ceo = float(dark_current(transistor.i_ceo_1, transistor.t_1, transistor.i_ceo_2, transistor.t_2, corner.t))
+    return Device(
+        eta=eta * corner.left,
+        v_t=v_t,
+        i_s=I_V_BE * math.exp(-v_be / v_t),
+        gain=gain,
+        beta_r=transistor.beta_r,
+        tau_f=stored.tau_f,
+        tau_r=reverse_transit(stored.tau_s, stored.tau_f, carried / eta, transistor.beta_r),
+        emitter=Junction(transistor.c_be, V_J, 0.0),
+        collector=Junction(stored.c_0, V_J, M_J),
+        v_off=_v_off(transfer, transistor, v_t, carried / eta),
+        # the dark current of the sheet is the collector's, with the base open: this is what the base then gets
+        i_cbo=corner.dark * math.exp(gain.at(math.log(i_ceo))[0]) if i_ceo > 0 else 0.0,
+    )
+
+
+def gain_of_curve(part: str, transfer: Transfer, carried: float, eta: float) -> GainLaw:
+    """The gain law through every point of the CTR curve: collector current carried*g*i less the photocurrent eta*i.
+
+    carried: CTR at the test current times its temperature factor [1]; eta of a new LED [1]. Raises NotSimulatedError
+    where the curve leaves no gain or does not rise.
+    """
+    i = np.asarray(transfer.curve_i)
+    drawn, light = carried * np.asarray(transfer.curve_g) * i, eta * i
+    if np.any(drawn <= LEAST_GAIN * light):
+        raise NotSimulatedError(f"{part}: on its CTR curve the current gain falls to {np.min(drawn / light):.2g}")
+    try:
+        return gain_law(drawn - light, light)
+    except ValueError:
+        raise NotSimulatedError(f"{part}: along its CTR curve the collector current does not rise") from None
+
+
+def reverse_transit(tau_s: float, tau_f: float, h_fe: float, beta_r: float) -> float:
+    """Reverse transit time [s] that makes the storage constant deep in saturation tau_s [s]; 0 where tau_f does alone.
+
+    There the load holds the collector current, so di_f = (1 + 1/beta_r)*di_r; stored charge over base current is
+    tau_s = [tau_f*(1 + 1/beta_r) + tau_r]/[(1 + 1/beta_r)/h_fe + 1/beta_r]. Source: Moll, Proc. IRE 42 (1954) 1773.
+    """
+    both = 1.0 + 1.0 / beta_r
+    return max(tau_s * (both / h_fe + 1.0 / beta_r) - tau_f * both, 0.0)
+
+
+def _v_off(transfer: Transfer, transistor: Transistor, v_t: float, h_fe: float) -> float:
+    """What the table's v_ce_sat has above the saturation voltage of the junctions in its own row [V]."""
+    sheet = float(collector_current(transfer, transfer.ctr_min, 1.0, transistor.sat_i_f)) / transistor.sat_i_c
+    overdrive = max(sheet, LEAST_OVERDRIVE) if math.isfinite(sheet) else LEAST_OVERDRIVE
+    junctions = v_t * math.log(float(saturation_shape(overdrive, h_fe, transistor.beta_r)))
+    return max(transistor.v_ce_sat - junctions, 0.0)

@@ -1,0 +1,115 @@
+"""The exact front between two goals over the whole table: each point proved, none left out between them."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass, replace
+
+import numpy as np
+
+from optopick.brief import Brief, Goal, GoalName
+from optopick.coupler import Coupler
+from optopick.model.rows import Ask
+from optopick.model.search import STEP
+from optopick.model.solver import Clock
+from optopick.result import Review
+from optopick.uses.engine import Best, Entry, Progress, ask_of, entries_of, goal_of, over_all, quiet, rechecked
+
+
+@dataclass(frozen=True)
+class Point:
+    """One design that nothing in stock beats in both goals; the goals' values, guard included."""
+
+    first: float
+    second: float
+    review: Review
+
+
+@dataclass(frozen=True)
+class Front:
+    """Points in the order of the first goal. complete: every point of the front; else evenly asked ones.
+
+    knee: index of the point farthest below the line between the ends, both goals scaled to one; None for fewer than
+    three points.
+    """
+
+    goals: tuple[GoalName, GoalName]
+    points: tuple[Point, ...]
+    complete: bool
+    knee: int | None
+
+
+def tradeoff(
+    brief: Brief,
+    goals: tuple[GoalName, GoalName] = (GoalName.EDGE_TIME, GoalName.POWER),
+    *,
+    points: int | None = None,
+    couplers: Sequence[Coupler] | None = None,
+    progress: Progress = quiet,
+    time_limit: float = np.inf,
+) -> Front:
+    """The front between two goals. points: that many at the most, evenly by the first goal; None: every one.
+
+    Each point is the least second goal at its first goal, and the least first goal at that second: proved both ways.
+    Past `time_limit` [s] the points so far are given, complete False.
+    """
+    brief = replace(brief, goal=Goal(goals[0], goals[1], 0.0))
+    walk = _Walk(brief, entries_of(brief, couplers)[0], Clock(time_limit))
+    found = walk.all(progress) if points is None else walk.some(points, progress)
+    return Front(goals, tuple(found), points is None and not walk.clock.out, _knee(found))
+
+
+class _Walk:
+    """Along the front: the first goal least, the second then least, then the second better than that, and again."""
+
+    def __init__(self, brief: Brief, entries: list[Entry], clock: Clock) -> None:
+        self.brief, self.entries, self.clock = brief, entries, clock
+        self.first, self.second = brief.goal.minimize, brief.goal.then
+        self.floors: dict[str, float] = {}
+
+    def point(self, ask: Ask) -> tuple[Best, float, float] | None:
+        """The point with the least first goal within `ask`; goals as the model has them."""
+        first = over_all(self.entries, self.first, ask, self.clock, floors=self.floors)
+        if first.choice is None:
+            return None
+        held = ask.limited(self.first, first.value * (1 + STEP))
+        second = over_all(self.entries, self.second, held, self.clock, start=first)
+        return None if self.clock.out else (second, first.value, second.value)
+
+    def all(self, progress: Progress) -> list[Point]:
+        """Every point."""
+        found, ask = [], ask_of(self.brief)
+        while (at := self.point(ask)) is not None:
+            found.append(self._told(at[0]))
+            progress("points of the front", len(found), len(found) + 1)
+            ask = ask.limited(self.second, at[2] * (1 - STEP))
+        return found
+
+    def some(self, count: int, progress: Progress) -> list[Point]:
+        """Both ends, and the points at first goals evenly between them by ratio."""
+        start = self.point(ask_of(self.brief))
+        if start is None:
+            return []
+        least = over_all(self.entries, self.second, ask_of(self.brief), self.clock)
+        found = [start]
+        for done, limit in enumerate(np.geomspace(start[2], least.value * (1 + STEP), count)[1:]):
+            progress("points of the front", done + 1, count)
+            at = self.point(ask_of(self.brief).limited(self.second, float(limit)))
+            if at is not None and at[2] < found[-1][2] * (1 - STEP):
+                found.append(at)
+        return [self._told(at[0]) for at in found]
+
+    def _told(self, at: Best) -> Point:
+        assert at.entry is not None
+        assert at.choice is not None
+        reviewed = rechecked(self.brief, at.entry, at.choice)
+        return Point(goal_of(reviewed, self.first), goal_of(reviewed, self.second), reviewed)
+
+
+def _knee(points: Sequence[Point]) -> int | None:
+    """The point farthest below the line between the ends, each goal by its logarithm scaled to one."""
+    if len(points) < 3:
+        return None
+    x, y = (np.log([getattr(point, name) for point in points]) for name in ("first", "second"))
+    x, y = (x - x[0]) / (x[-1] - x[0]), (y - y[-1]) / (y[0] - y[-1])
+    return int(np.argmin(x + y))
