@@ -7,7 +7,6 @@ from enum import StrEnum
 
 from optopick.coupler import Assumed
 
-
 NOT_CHOSEN = "not among the brief's couplers"
 """Reason of a coupler that the brief leaves out by name."""
 

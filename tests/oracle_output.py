@@ -152,7 +152,7 @@ def saturated(coupler: Coupler, x: Lot, j_s, overdrive) -> np.ndarray:
     return np.where(held, floor + np.maximum(rise, 0.0), np.inf)
 
 
-def v_ce_bisected(brief: Brief, coupler: Coupler, x: Lot, j, r_load, steps: int = 36) -> np.ndarray:
+def v_ce_bisected(brief: Brief, coupler: Coupler, x: Lot, j, r_load, steps: int = 44) -> np.ndarray:
     """V_CE where the saturation curve crosses the load line."""
     j_s, i_in = load_of(brief, coupler, x, r_load), input_on(brief)
     low = np.zeros(np.broadcast_shapes(np.shape(j), np.shape(j_s), np.shape(x.h_fe)))

@@ -4,10 +4,11 @@ from __future__ import annotations
 
 import json
 import math
+from collections.abc import Sequence
 from dataclasses import asdict
 from typing import Any
 
-from optopick.uses.check import Checked
+from optopick.answers import Checked, Front, Nearest, Ranked, Ranking, Share, Why
 from optopick.result import Check, Design, Objective, Result, Review
 
 
@@ -78,12 +79,62 @@ def objective_object(objective: Objective | None) -> dict[str, object] | None:
     return None if objective is None else asdict(objective) | {"gap": objective.gap}
 
 
-def checked_object(checked: Checked) -> dict[str, object]:
+def checked_object(checked: Checked, near: Nearest | None, shares: Sequence[Share]) -> dict[str, object]:
     """The object that `check --json` prints."""
     return {
         "status": "passes" if checked.review.passed else "fails",
         **review_object(checked.review),
+        "nearest": None if near is None else {"changed": list(near.changed), **review_object(near.result.review)},
+        "budget": [asdict(share) for share in shares],
         "notes": list(checked.notes),
         "assumed": [asdict(assumed) for assumed in checked.assumed],
         "cautions": list(checked.cautions),
+    }
+
+
+def results_object(results: Sequence[Result]) -> dict[str, object]:
+    """The object that `pick --next --json` prints: the best design's object with those after it under "next"."""
+    return result_object(results[0]) | {"next": [result_object(result) for result in results[1:]]}
+
+
+def ranking_object(ranking: Ranking) -> dict[str, object]:
+    """The object that `rank --json` prints."""
+    return {
+        "complete": ranking.complete,
+        "ranked": [_ranked_object(one) for one in ranking.ranked],
+        "rejected": [asdict(rejected) for rejected in ranking.rejected],
+    }
+
+
+def _ranked_object(one: Ranked) -> dict[str, object]:
+    return {
+        "status": one.status.value,
+        "objective": objective_object(one.objective),
+        "second": objective_object(one.second),
+        "tightest": check_object(one.tightest),
+        "price": one.coupler.price,
+        "barrier": asdict(one.coupler.barrier),
+        **review_object(one.review),
+    }
+
+
+def front_object(front: Front) -> dict[str, object]:
+    """The object that `tradeoff --json` prints."""
+    return {
+        "goals": [goal.value for goal in front.goals],
+        "complete": front.complete,
+        "knee": front.knee,
+        "points": [{"first": p.first, "second": p.second, **review_object(p.review)} for p in front.points],
+    }
+
+
+def why_object(why: Why) -> dict[str, object]:
+    """The object that `why --json` prints."""
+    return {
+        "status": why.status.value,
+        "conflicts": [list(conflict) for conflict in why.conflicts],
+        "changes": [asdict(change) for change in why.changes],
+        "complete": why.complete,
+        "objective": objective_object(why.result.objective) if why.result else None,
+        "worth": [asdict(worth) for worth in why.worth],
     }

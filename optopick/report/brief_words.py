@@ -43,7 +43,10 @@ def requirement_parts(brief: Brief) -> tuple[Part, ...]:
     return (
         Part(
             "Signal",
-            (("Shortest pulse", amount(signal.shortest_pulse, "s")), ("LED lit", f"{amount(signal.lit, '%')} of the time")),
+            (
+                ("Shortest pulse", amount(signal.shortest_pulse, "s")),
+                ("LED lit", f"{amount(signal.lit, '%')} of the time"),
+            ),
         ),
         Part("Drive", tuple(_drive(brief.drive))),
         Part("Output", tuple(_output(brief.output))),

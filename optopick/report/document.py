@@ -151,7 +151,7 @@ class Document:
             raise ValueError(f"the design has {self.review.design.coupler}, the coupler given is {self.coupler.part}")
 
 
-def document_of(  # noqa: PLR0913 - what a reader must be able to trace, each from elsewhere
+def document_of(
     brief: Brief,
     result: Result,
     coupler: Coupler | None,

@@ -172,7 +172,13 @@ def _point(walk: Walk, review: Review, index: _Index) -> dict[str, Any]:
 
 def _check(check: Check, index: _Index) -> list[object]:
     begin, length = bar_span(check.margin)
-    words = (check_label(check.name), amount(check.value, check.unit), limit_words(check), room_words(check), check.corner)
+    words = (
+        check_label(check.name),
+        amount(check.value, check.unit),
+        limit_words(check),
+        room_words(check),
+        check.corner,
+    )
     return [*(index.of(word) for word in words), state_of(check), round(100 * begin, 1), round(100 * length, 1)]
 
 

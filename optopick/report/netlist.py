@@ -111,7 +111,8 @@ RULES = (
     "temperature and ageing.",
     "Base current (Bbase): goes through every point of the CTR curve at this unit's CTR; ln of the current is a sum of "
     "straight stretches over v(b,e) with rounded bends.",
-    "Qcore carries the collector current and stores the charge; its BF is as good as infinite: Bbase is its base current.",
+    "Qcore carries the collector current and stores the charge; its BF is as good as infinite, as Bbase is its base "
+    "current.",
     "TF and CJC give the edges of the table's two switching rows, TR the storage time of the saturated one.",
     "Voff: what the table's largest V_CE(sat) has above the saturation voltage of the junctions.",
     f"Taken from memory, not from the table: V_BE holds at {I_V_BE * 1e3:g} mA; built-in voltage and grading of the "

@@ -43,9 +43,7 @@ def margin_bar(check: Check) -> Markup:
     begin, length = bar_span(check.margin)
     zero = percent(-BAR_LOW / (BAR_HIGH - BAR_LOW))
     track = element("rect", x=zero, y="4", width=percent(BAR_HIGH / (BAR_HIGH - BAR_LOW)), height="8", class_="track")
-    bar = element(
-        "rect", x=percent(begin), y="4", width=percent(length), height="8", class_=f"bar {state_of(check)}"
-    )
+    bar = element("rect", x=percent(begin), y="4", width=percent(length), height="8", class_=f"bar {state_of(check)}")
     limit = element("line", x1=zero, x2=zero, y1="0", y2="16", class_="limit")
     return element("svg", track, bar, limit, width="100%", height="16", class_="margin", aria_hidden="true")
 
@@ -111,9 +109,7 @@ def sweep_plot(  # noqa: PLR0913 - a plot's data, each with its name and unit
     drawn = [frame.level(level.name, level.value) for level in levels]
     if chosen is not None:
         drawn.append(_cursor(frame, x.values[chosen]))
-    drawn += [
-        frame.line(zip(x.values, curve.values, strict=True), series_class(k)) for k, curve in enumerate(series)
-    ]
+    drawn += [frame.line(zip(x.values, curve.values, strict=True), series_class(k)) for k, curve in enumerate(series)]
     told = f"{y_name} of {', '.join(curve.name for curve in series)}, over {x.name}."
     return frame.drawn(name, told, *drawn, key=[curve.name for curve in series], class_="sweep")
 
@@ -135,9 +131,7 @@ def waveform_plot(wave: Waveform) -> Markup:
     values = [value for trace in wave.traces for value in trace.values] + [level.value for level in wave.levels]
     frame = Frame(across, "time →", scale_over(values, "V", room=0.12), "↑ voltage")
     drawn = [frame.level(level.name, level.value) for level in wave.levels]
-    drawn += [
-        frame.line(thinned(wave.time, trace.values), series_class(k)) for k, trace in enumerate(wave.traces)
-    ]
+    drawn += [frame.line(thinned(wave.time, trace.values), series_class(k)) for k, trace in enumerate(wave.traces)]
     drawn += _bits(frame, wave)
     told = f"{', '.join(trace.name for trace in wave.traces)} over {amount(wave.time[-1] - wave.time[0], 's')}."
     return frame.drawn(wave.title, told, *drawn, key=[trace.name for trace in wave.traces])

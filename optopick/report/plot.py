@@ -60,9 +60,7 @@ class Frame:
 
     def drawn(self, name: str, described: str, *inside: Markup, key: Sequence[str] = (), class_: str = "") -> Markup:
         """The whole picture: ticks, names, what is inside, the key below."""
-        area = element(
-            "svg", *self._grid(), *inside, y=ABOVE, width="100%", height=self.height, overflow="visible"
-        )
+        area = element("svg", *self._grid(), *inside, y=ABOVE, width="100%", height=self.height, overflow="visible")
         names = text((-GUTTER, 14), self.y_name, "axis-name")
         names += text(("100%", ABOVE + self.height + 38), self.x_name, "axis-name", "end")
         total = ABOVE + self.height + BELOW + ROW * len(key)

@@ -26,7 +26,7 @@ from optopick.result import Design
 UNIT = 36.0
 """Pixels to one unit of schemdraw: half an inch at 72 to the inch."""
 
-WIDTH, HEIGHT = 544.0, 452.0
+WIDTH, HEIGHT = 560.0, 452.0
 SHUNT_ROOM = 24.0
 """Room at the left that the words of a resistor across the LED need."""
 
@@ -106,7 +106,7 @@ def _units(point: Point) -> tuple[float, float]:
 
 @cache
 def _schemdraw() -> tuple[Any, Any]:
-    """schemdraw's symbols and its Drawing."""
+    """Schemdraw's symbols and its Drawing."""
     with _without("matplotlib"):
         package = import_module("schemdraw")
         return import_module("schemdraw.elements"), package.Drawing
@@ -126,7 +126,7 @@ def _without(name: str) -> Iterator[None]:
 
 
 def _shapes(data: bytes) -> Iterator[Markup]:
-    """schemdraw's shapes without their styles: outlines and filled ones told apart by class."""
+    """Schemdraw's shapes without their styles: outlines and filled ones told apart by class."""
     for node in ElementTree.fromstring(data).iter():
         name = node.tag.rpartition("}")[2]
         if name in _SHAPES:
@@ -143,7 +143,10 @@ def _name(symbol: str) -> Markup:
 
 def _value_lines(one: Placed) -> tuple[Markup, str, str]:
     """Name, value, and what the stock says of it."""
-    rated = [amount(one.tolerance, "%") if one.tolerance is not None else "", amount(one.power, "W") if one.power else ""]
+    rated = [
+        amount(one.tolerance, "%") if one.tolerance is not None else "",
+        amount(one.power, "W") if one.power else "",
+    ]
     return _name(one.symbol), ohms_words(one.ohms), ", ".join(part for part in rated if part)
 
 
@@ -155,8 +158,12 @@ def _resistor_words(sheet: _Sheet, at: Point, one: Placed, anchor: str = "start"
 
 
 def _span_words(span: Span, unit: str) -> str:
+    """Both ends of a span, the unit said once where it is the same."""
     low, high = amount(span.low, unit), amount(span.high, unit)
-    return low if span.low == span.high else f"{low} to {high}"
+    if span.low == span.high:
+        return low
+    same = low.partition(" ")[2] == high.partition(" ")[2]
+    return f"{low.partition(' ')[0] if same else low} to {high}"
 
 
 # ---- the drive --------------------------------------------------------------------------------------------------
@@ -279,8 +286,8 @@ def _receiver(sheet: _Sheet, brief: Brief, at: Point) -> None:
     sheet.wire((x, y - 17), (x, y + 17), (x + 30, y), (x, y - 17))
     sheet.wire((x + 30, y), (x + 44, y))
     for k, (name, span) in enumerate((("V_IH", brief.output.v_ih), ("V_IL", brief.output.v_il))):
-        sheet.say((OUT_X + 26, y + 36 + 20 * k), _name(name), class_="small")
-        sheet.say((OUT_X + 56, y + 36 + 20 * k), _threshold_words(span), class_="small")
+        sheet.say((OUT_X + 24, y + 36 + 20 * k), _name(name), class_="small")
+        sheet.say((OUT_X + 52, y + 36 + 20 * k), _threshold_words(span), class_="small")
 
 
 def _threshold_words(span: Span) -> str:

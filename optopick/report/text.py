@@ -10,7 +10,7 @@ from rich.padding import Padding
 from rich.table import Table
 from rich.text import Text
 
-from optopick.uses.check import Checked
+from optopick.answers import Checked, Nearest
 from optopick.coupler import Assumed
 from optopick.report.labels import POSITIONS, TIMES, check_label
 from optopick.result import NOT_CHOSEN, Check, Design, Objective, Proof, Result, Review, Status
@@ -47,23 +47,32 @@ def _verdict(result: Result) -> str:
         return "Out of time: no design found, and none ruled out."
     first, second = result.objective, result.second
     assert first is not None and second is not None
-    said = f"Least {first.name}: {_amount(first.value, first.unit)}; then least {second.name}: "
-    said += _amount(second.value, second.unit)
+    said = f"Least {first.name}: {amount(first.value, first.unit)}; then least {second.name}: "
+    said += amount(second.value, second.unit)
     if result.status is Status.FEASIBLE:
         return f"{said} (best found in the time given; {_bounds(first, second)})"
     return f"{said} (proved)"
 
 
 def _bounds(*objectives: Objective) -> str:
-    parts = [f"no design has {o.name} below {_amount(o.bound, o.unit)}" for o in objectives]
+    parts = [f"no design has {o.name} below {amount(o.bound, o.unit)}" for o in objectives]
     return " and ".join(parts)
 
 
-def _amount(value: float, unit: str) -> str:
+def amount(value: float, unit: str) -> str:
+    """A quantity as results show it, four digits."""
     return format_quantity(value, unit, 4)
 
 
-def checked_text(checked: Checked, title: str) -> RenderableType:
+def next_text(result: Result, place: int) -> RenderableType:
+    """A next best design, in short."""
+    if result.review is None:
+        return Group(Text(), Text(f"Next best, place {place}: none", style="bold"), Text(_verdict(result)))
+    title = Text(f"Next best, place {place}", style="bold")
+    return Group(Text(), title, Text(_verdict(result)), _design(result.review.design))
+
+
+def checked_text(checked: Checked, title: str, near: Nearest | None = None) -> RenderableType:
     """The whole answer to `check`."""
     review = checked.review
     failing = len(review.failing)
@@ -71,7 +80,20 @@ def checked_text(checked: Checked, title: str) -> RenderableType:
     parts = [Text(title, style="bold"), Text(verdict, style="red" if failing else "green"), Text()]
     notes = [Text("Note: " + note) for note in checked.notes]
     warned = [Padding(Text("Caution: " + caution, style="yellow"), (1, 0, 0, 0)) for caution in checked.cautions]
-    return Group(*parts, *review_parts(review), *notes, *_assumed(checked.assumed), *warned)
+    return Group(*parts, *review_parts(review), *_near(review, near), *notes, *_assumed(checked.assumed), *warned)
+
+
+def _near(review: Review, near: Nearest | None) -> Iterator[RenderableType]:
+    """The nearest passing design of a failing one."""
+    if review.passed:
+        return
+    yield Text()
+    if near is None or near.result.design is None:
+        yield Text("No design in this stock passes: see `optopick why`.")
+        return
+    changed = ", ".join(POSITIONS.get(place, place) for place in near.changed)
+    yield Text(f"Nearest design that passes: change {changed}", style="bold")
+    yield _design(near.result.design)
 
 
 def review_parts(review: Review) -> Iterator[RenderableType]:
@@ -93,9 +115,12 @@ def _design(design: Design) -> RenderableType:
     for name, label in POSITIONS.items():
         ohms = getattr(design, name)
         if ohms is not None:
-            table.add_row(label, Text(format_resistor(ohms), style="bold"))
+            count = f"{design.pieces} × " if name == "r_led" and design.pieces > 1 else ""
+            table.add_row(label, Text(count + format_resistor(ohms), style="bold"))
         elif name == "r_be":
             table.add_row(label, "none")
+    if design.reverse_diode:
+        table.add_row("Reverse diode", "antiparallel to the LED")
     return table
 
 
@@ -106,9 +131,9 @@ def _checks(checks: tuple[Check, ...]) -> RenderableType:
         table.add_column(heading, justify="right", no_wrap=True)
     table.add_column("At", ratio=4)
     for check in checks:
-        limit = Text(f"{'≤' if check.sense == '<=' else '≥'} {_amount(check.limit, check.unit)}")
+        limit = Text(f"{'≤' if check.sense == '<=' else '≥'} {amount(check.limit, check.unit)}")
         room = Text(_margin(check), style=_style(check))
-        table.add_row(check_label(check.name), _amount(check.value, check.unit), limit, room, check.corner)
+        table.add_row(check_label(check.name), amount(check.value, check.unit), limit, room, check.corner)
     return table
 
 
@@ -130,9 +155,9 @@ def _timing(review: Review) -> RenderableType:
     table.add_column("Worst case over all corners")
     table.add_column("", justify="right", no_wrap=True)
     for name, value in asdict(review.timing).items():
-        table.add_row(TIMES[name], _amount(value, "s"))
-    table.add_row("Average power, worst case", _amount(review.power.worst, "W"))
-    table.add_row("Average power, typical parts", _amount(review.power.nominal, "W"))
+        table.add_row(TIMES[name], amount(value, "s"))
+    table.add_row("Average power, worst case", amount(review.power.worst, "W"))
+    table.add_row("Average power, typical parts", amount(review.power.nominal, "W"))
     return table
 
 

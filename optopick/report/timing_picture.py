@@ -14,7 +14,7 @@ from optopick.coupler import Coupler
 from optopick.report.axes import Scale
 from optopick.report.labels import TIMES
 from optopick.report.plot import SQUARE, plot_picture, stretched
-from optopick.report.svg import Point, element, percent, picture, polyline, text
+from optopick.report.svg import Point, element, percent, polyline, text
 from optopick.report.words import amount
 from optopick.result import Timing
 
@@ -154,7 +154,9 @@ def _levels(turn: _Turn, falling: bool) -> Markup:
     y = _height(turn.threshold, falling)
     rule = element("line", x1="0", x2="100%", y1=y, y2=y, class_="level")
     name = element("g", text(("100%", y), turn.threshold_name, "halo", "end"), transform="translate(-4 -5)")
-    marks = (text((-8, _height(share, False) + 4), words, "tick", "end") for share, words in ((0.1, "10 %"), (0.9, "90 %")))
+    marks = (
+        text((-8, _height(share, False) + 4), words, "tick", "end") for share, words in ((0.1, "10 %"), (0.9, "90 %"))
+    )
     return Markup("").join((*ends, rule, name, *marks))
 
 
@@ -172,7 +174,9 @@ def _dimension(one: tuple[str, float, float], scale: Scale, y: float) -> Markup:
     name, begin, end = one
     left, right = scale.share(begin), scale.share(end)
     words = f"{name}: {amount(end - begin, 's')}"
-    label = text((percent(max(left, 0.0)), y), words, "halo") if left < 0.35 else text(("100%", y), words, "halo", "end")
+    label = (
+        text((percent(max(left, 0.0)), y), words, "halo") if left < 0.35 else text(("100%", y), words, "halo", "end")
+    )
     span = element("line", x1=percent(left), x2=percent(right), y1=y + 10, y2=y + 10, class_="dimension")
     stops = (
         element("line", x1=percent(at), x2=percent(at), y1=y + 5, y2=y + 15, class_="dimension") for at in (left, right)

@@ -2,37 +2,11 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
-
+from optopick.answers import CAUSES, Share
 from optopick.brief import Brief
 from optopick.coupler import Coupler
 from optopick.recheck import review
 from optopick.result import Design
-
-CAUSES: dict[str, tuple[str, ...]] = {
-    "CTR bin": ("ctr",),
-    "LED light spread": ("light",),
-    "LED forward voltage": ("v_f",),
-    "ageing": ("age",),
-    "temperature": ("temperature",),
-    "drive supply and drop": ("drive", "drop"),
-    "output supply": ("supply",),
-    "resistors": ("r_led", "r_load", "r_be", "r_shunt"),
-}
-"""What each cause is called, and the axes of the uncertainty box that it stands for."""
-
-
-@dataclass(frozen=True)
-class Share:
-    """One check: its margin at the worst corner, with everything nominal, and what each cause costs [1].
-
-    cost: cause to the margin that the check would gain if that cause alone stood at its nominal value.
-    """
-
-    check: str
-    worst: float
-    nominal: float
-    cost: dict[str, float]
 
 
 def budget(brief: Brief, coupler: Coupler, design: Design) -> tuple[Share, ...]:

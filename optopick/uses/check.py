@@ -3,35 +3,28 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass
 from difflib import get_close_matches
 
+from optopick.answers import Checked
 from optopick.brief import Brief
 from optopick.cautions import cautions
-from optopick.coupler import Assumed, Coupler
+from optopick.coupler import Coupler
 from optopick.errors import InputError, Mistake
 from optopick.read_couplers import read_couplers
 from optopick.recheck import review
-from optopick.result import Design, Review
+from optopick.result import Design
 from optopick.units import QuantityError, parse_quantity
-
-
-@dataclass(frozen=True)
-class Checked:
-    """A design's review, what was assumed of its coupler, and the cautions."""
-
-    review: Review
-    assumed: tuple[Assumed, ...]
-    notes: tuple[str, ...]
-    cautions: tuple[str, ...]
 
 
 def design_from_text(coupler: str, texts: Mapping[str, str | None]) -> Design:
     """A design from resistor values as typed; raises InputError with every value that cannot be read."""
     ohms: dict[str, float | None] = {}
-    mistakes = []
+    pieces, mistakes = 1, []
     for name, text in texts.items():
         try:
+            counted = text.partition("x") if name == "r_led" and text else None
+            if counted and counted[1] and counted[0].strip() in ("1", "2", "3"):
+                pieces, text = int(counted[0]), counted[2]  # noqa: PLW2901
             ohms[name] = None if text is None else _positive(text)
         except QuantityError as error:
             mistakes.append(Mistake(f"--{name.replace('_', '-')}", error.found, error.expected))
@@ -40,7 +33,7 @@ def design_from_text(coupler: str, texts: Mapping[str, str | None]) -> Design:
     r_led, r_load = ohms["r_led"], ohms["r_load"]
     assert r_led is not None
     assert r_load is not None
-    return Design(coupler, r_led, r_load, ohms.get("r_be"), ohms.get("r_shunt"))
+    return Design(coupler, r_led, r_load, ohms.get("r_be"), ohms.get("r_shunt"), pieces)
 
 
 def _positive(text: str) -> float:
@@ -52,14 +45,15 @@ def _positive(text: str) -> float:
 
 def check_design(brief: Brief, design: Design) -> Checked:
     """Every check of a design; raises InputError where the table has no such coupler or it has no base pin."""
-    coupler = _coupler(brief, design.coupler)
+    coupler = coupler_named(brief, design.coupler)
     if design.r_be is not None and not coupler.base_pin:
         found = f"a base-emitter resistor with {coupler.part}, whose base is not brought out"
         raise InputError([Mistake("--r-be", found, "no --r-be, or a coupler with a base pin")])
     return Checked(review(brief, coupler, design), coupler.assumed, _notes(brief, coupler, design), cautions(brief))
 
 
-def _coupler(brief: Brief, part: str) -> Coupler:
+def coupler_named(brief: Brief, part: str) -> Coupler:
+    """The row of the brief's table with this part; raises InputError where it has none, or set it aside."""
     table = read_couplers(brief.couplers.table)
     for coupler in table.couplers:
         if coupler.part == part:

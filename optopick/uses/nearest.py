@@ -3,24 +3,17 @@
 from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
-from dataclasses import dataclass, replace
+from dataclasses import replace
 from itertools import combinations
 
+from optopick.answers import Nearest
 from optopick.brief import Brief, Position, Stock
 from optopick.coupler import Coupler
 from optopick.recheck.vertices import rating_of
-from optopick.result import Design, Result
+from optopick.result import Design
 from optopick.uses.pick import pick
 
 PLACES = ("r_led", "r_load", "r_be", "r_shunt", "coupler")
-
-
-@dataclass(frozen=True)
-class Nearest:
-    """The nearest passing design and the places where it differs."""
-
-    changed: tuple[str, ...]
-    result: Result
 
 
 def nearest(brief: Brief, design: Design, couplers: Sequence[Coupler]) -> Nearest | None:

@@ -7,6 +7,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from optopick.answers import Ranked, Ranking
 from optopick.brief import Brief
 from optopick.coupler import Coupler
 from optopick.model.kinds import LinkModel, model_of
@@ -14,7 +15,7 @@ from optopick.model.search import exists, first_look
 from optopick.model.solver import Clock
 from optopick.recheck import review
 from optopick.report.labels import check_label
-from optopick.result import NOT_CHOSEN, Check, Objective, Rejected, Review, Status
+from optopick.result import NOT_CHOSEN, Check, Rejected, Status
 from optopick.uses.engine import (
     Entry,
     Progress,
@@ -28,31 +29,6 @@ from optopick.uses.engine import (
 )
 from optopick.uses.why import limits_of
 from optopick.uses.workers import Processes, Workers
-
-
-@dataclass(frozen=True)
-class Ranked:
-    """One coupler's best design: goals, review, price and isolation."""
-
-    coupler: Coupler
-    status: Status
-    objective: Objective
-    second: Objective
-    review: Review
-
-    @property
-    def tightest(self) -> Check:
-        """The check with the least room."""
-        return min(self.review.checks, key=lambda check: check.margin)
-
-
-@dataclass(frozen=True)
-class Ranking:
-    """Couplers in the order of the goal, then of the second goal; those rejected; whether every coupler was tried."""
-
-    ranked: tuple[Ranked, ...]
-    rejected: tuple[Rejected, ...]
-    complete: bool
 
 
 def rank(

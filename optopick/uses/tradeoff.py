@@ -3,40 +3,17 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass, replace
+from dataclasses import replace
 
 import numpy as np
 
+from optopick.answers import Front, Point
 from optopick.brief import Brief, Goal, GoalName
 from optopick.coupler import Coupler
 from optopick.model.rows import Ask
 from optopick.model.search import STEP
 from optopick.model.solver import Clock
-from optopick.result import Review
 from optopick.uses.engine import Best, Entry, Progress, ask_of, entries_of, goal_of, over_all, quiet, rechecked
-
-
-@dataclass(frozen=True)
-class Point:
-    """One design that nothing in stock beats in both goals; the goals' values, guard included."""
-
-    first: float
-    second: float
-    review: Review
-
-
-@dataclass(frozen=True)
-class Front:
-    """Points in the order of the first goal. complete: every point of the front; else evenly asked ones.
-
-    knee: index of the point farthest below the line between the ends, both goals scaled to one; None for fewer than
-    three points.
-    """
-
-    goals: tuple[GoalName, GoalName]
-    points: tuple[Point, ...]
-    complete: bool
-    knee: int | None
 
 
 def tradeoff(
@@ -56,7 +33,7 @@ def tradeoff(
     brief = replace(brief, goal=Goal(goals[0], goals[1], 0.0))
     walk = _Walk(brief, entries_of(brief, couplers)[0], Clock(time_limit))
     found = walk.all(progress) if points is None else walk.some(points, progress)
-    return Front(goals, tuple(found), points is None and not walk.clock.out, _knee(found))
+    return Front(goals, tuple(found), points is None and not walk.clock.out, _knee(found), walk.clock.out)
 
 
 class _Walk:

@@ -6,10 +6,10 @@ For a brief that has a design: what binds, and what a step of each limit would b
 from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
-from dataclasses import dataclass
 
 import numpy as np
 
+from optopick.answers import Change, Why, Worth
 from optopick.brief import Brief, GoalName
 from optopick.coupler import Coupler
 from optopick.model.search import exists
@@ -54,39 +54,6 @@ BY_KIND = (
     "supply_low",
     "supply_high",
 )
-
-
-@dataclass(frozen=True)
-class Change:
-    """The least change of one limit that makes a design exist: from, to [unit], or a finer stock in words."""
-
-    key: str
-    unit: str
-    now: float | str
-    needed: float | str
-
-
-@dataclass(frozen=True)
-class Worth:
-    """What a step of one limit does to the first goal: limit from, to; goal from, to (None: no design at all)."""
-
-    key: str
-    unit: str
-    now: float
-    stepped: float
-    goal: float | None
-
-
-@dataclass(frozen=True)
-class Why:
-    """The reasons: contradicting sets of checks, the least changes, or what binds and what each limit is worth."""
-
-    status: Status
-    conflicts: tuple[tuple[str, ...], ...]
-    changes: tuple[Change, ...]
-    complete: bool
-    result: Result | None
-    worth: tuple[Worth, ...]
 
 
 def why(

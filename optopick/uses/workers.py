@@ -20,7 +20,7 @@ class Workers(Protocol):
 
 
 class Here:
-    """This process alone."""
+    """One item after the other, in this process."""
 
     def map(self, function: Callable[[Item], Answer], items: Sequence[Item]) -> Iterator[Answer]:
         """The answers, one by one."""

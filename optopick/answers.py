@@ -1,0 +1,134 @@
+"""What the uses besides `pick` answer: rankings, fronts, reasons, budgets. Frozen; SI throughout."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from optopick.brief import GoalName
+from optopick.coupler import Assumed, Coupler
+from optopick.result import Check, Objective, Rejected, Result, Review, Status
+
+CAUSES: dict[str, tuple[str, ...]] = {
+    "CTR": ("ctr",),
+    "light": ("light",),
+    "V_F": ("v_f",),
+    "age": ("age",),
+    "temp": ("temperature",),
+    "drive": ("drive", "drop"),
+    "V_CC": ("supply",),
+    "R": ("r_led", "r_load", "r_be", "r_shunt"),
+}
+"""What each cause is called, and the axes of the uncertainty box that it stands for."""
+
+
+@dataclass(frozen=True)
+class Checked:
+    """A design's review, what was assumed of its coupler, and the cautions."""
+
+    review: Review
+    assumed: tuple[Assumed, ...]
+    notes: tuple[str, ...]
+    cautions: tuple[str, ...]
+
+
+@dataclass(frozen=True)
+class Nearest:
+    """The nearest passing design and the places where it differs."""
+
+    changed: tuple[str, ...]
+    result: Result
+
+
+@dataclass(frozen=True)
+class Share:
+    """One check: its margin at the worst corner, with everything nominal, and what each cause costs [1].
+
+    cost: cause to the margin that the check would gain if that cause alone stood at its nominal value.
+    """
+
+    check: str
+    worst: float
+    nominal: float
+    cost: dict[str, float]
+
+
+@dataclass(frozen=True)
+class Ranked:
+    """One coupler's best design: goals, review, price and isolation."""
+
+    coupler: Coupler
+    status: Status
+    objective: Objective
+    second: Objective
+    review: Review
+
+    @property
+    def tightest(self) -> Check:
+        """The check with the least room."""
+        return min(self.review.checks, key=lambda check: check.margin)
+
+
+@dataclass(frozen=True)
+class Ranking:
+    """Couplers in the order of the goal, then of the second goal; those rejected; whether every coupler was tried."""
+
+    ranked: tuple[Ranked, ...]
+    rejected: tuple[Rejected, ...]
+    complete: bool
+
+
+@dataclass(frozen=True)
+class Point:
+    """One design that nothing in stock beats in both goals; the goals' values, guard included."""
+
+    first: float
+    second: float
+    review: Review
+
+
+@dataclass(frozen=True)
+class Front:
+    """Points in the order of the first goal. complete: every point of the front; else evenly asked ones.
+
+    knee: index of the point farthest below the line between the ends, both goals scaled to one; None for fewer than
+    three points.
+    """
+
+    goals: tuple[GoalName, GoalName]
+    points: tuple[Point, ...]
+    complete: bool
+    knee: int | None
+    out_of_time: bool = False
+
+
+@dataclass(frozen=True)
+class Change:
+    """The least change of one limit that makes a design exist: from, to [unit], or a finer stock in words."""
+
+    key: str
+    unit: str
+    now: float | str
+    needed: float | str
+
+
+@dataclass(frozen=True)
+class Worth:
+    """What a step of one limit does to the first goal: limit from, to; goal from, to (None: no design at all)."""
+
+    key: str
+    unit: str
+    now: float
+    stepped: float
+    goal: float | None
+
+
+@dataclass(frozen=True)
+class Why:
+    """The reasons: contradicting sets of checks, the least changes, or what binds and what each limit is worth."""
+
+    status: Status
+    conflicts: tuple[tuple[str, ...], ...]
+    changes: tuple[Change, ...]
+    complete: bool
+    result: Result | None
+    worth: tuple[Worth, ...]

@@ -1,0 +1,97 @@
+"""The command group, its exit codes, and what all commands share: options, printing, progress."""
+
+from __future__ import annotations
+
+import sys
+import time
+from collections.abc import Callable
+from pathlib import Path
+from typing import TYPE_CHECKING, Any
+
+import click
+
+from optopick.errors import DisagreementError, InputError
+
+if TYPE_CHECKING:
+    from rich.console import RenderableType
+
+    from optopick.result import Status
+
+OK, FAILS, WRONG_INPUT, NO_DESIGN, OUT_OF_TIME = range(5)
+DISAGREES = 70
+PIPED_WIDTH = 100
+
+
+class Messages(click.Group):
+    """A group whose commands turn the program's errors into messages and exit codes."""
+
+    def invoke(self, ctx: click.Context) -> Any:  # noqa: ANN401 - click's own signature
+        """Run a command; wrong input exits with 2."""
+        try:
+            return super().invoke(ctx)
+        except InputError as error:
+            for mistake in error.mistakes:
+                click.echo(f"optopick: {mistake}", err=True)
+            sys.exit(WRONG_INPUT)
+        except DisagreementError as error:
+            click.echo(f"optopick: internal disagreement, no result given: {error}", err=True)
+            sys.exit(DISAGREES)
+
+
+@click.group(cls=Messages, context_settings={"help_option_names": ["-h", "--help"], "max_content_width": 100})
+@click.version_option(package_name="optopick")
+@click.option("-q", "--quiet", is_flag=True, help="No progress on standard error. Example: optopick -q rank BRIEF")
+@click.pass_context
+def main(ctx: click.Context, quiet: bool) -> None:
+    """Choose an optocoupler and the stock resistors around it, and prove the choice.
+
+    A brief (TOML) says what one link must do; a coupler table (CSV) says what may be used. Exit codes: 0 a valid
+    design, or all checks pass; 1 a checked design fails; 2 wrong input; 3 no design exists; 4 out of time with none.
+    """
+    ctx.obj = quiet
+
+
+brief_argument = click.argument("brief", type=click.Path(path_type=Path))
+json_option = click.option("--json", "as_json", is_flag=True, help="Print one JSON object and nothing else.")
+time_option = click.option(
+    "--time-limit",
+    type=click.FloatRange(min=0.0),
+    default=float("inf"),
+    metavar="SECONDS",
+    help="Stop searching after this; the best so far is given with its bound. Example: --time-limit 30",
+)
+
+
+def show(text: RenderableType) -> None:
+    """Print for people: colours on a terminal only, plain and 100 wide when piped."""
+    from rich.console import Console  # noqa: PLC0415 - not for --help
+
+    width = None if sys.stdout.isatty() else PIPED_WIDTH
+    Console(highlight=False, width=width).print(text)
+
+
+def show_json(value: object) -> None:
+    """Print one JSON object."""
+    from optopick.report.as_json import dumps  # noqa: PLC0415
+
+    click.echo(dumps(value))
+
+
+def exit_code(status: Status) -> int:
+    """The exit code of an answer."""
+    return {"optimal": OK, "feasible": OK, "infeasible": NO_DESIGN, "unknown": OUT_OF_TIME}[status.value]
+
+
+def progress() -> Callable[[str, int, int], None]:
+    """A progress line on standard error once the work has taken two seconds; none with --quiet."""
+    started, shown = time.monotonic(), [0.0]
+    quiet = bool(click.get_current_context().obj)
+
+    def report(stage: str, done: int, total: int) -> None:
+        now = time.monotonic()
+        if quiet or now - started < 2 or now - shown[0] < 0.5:
+            return
+        shown[0] = now
+        click.echo(f"optopick: {stage}: {done} of {total}, {now - started:.0f} s", err=True)
+
+    return report

@@ -1,0 +1,116 @@
+"""`rank` and `tradeoff`: one link, the whole coupler table."""
+
+from __future__ import annotations
+
+import sys
+from pathlib import Path
+
+import click
+
+from optopick.cli.app import (
+    NO_DESIGN,
+    OK,
+    OUT_OF_TIME,
+    brief_argument,
+    json_option,
+    main,
+    progress,
+    show,
+    show_json,
+    time_option,
+)
+
+# Imports stand inside the commands: --help and input errors must not wait for the numerical libraries.
+# ruff: noqa: PLC0415
+
+
+@main.command()
+@brief_argument
+@click.option("--top", type=click.IntRange(min=1), default=None, metavar="N", help="Show the best N only.")
+@click.option("--csv", "as_csv", is_flag=True, help="Print the ranking as CSV and nothing else.")
+@json_option
+@click.option("--workers", type=click.IntRange(min=1), default=None, metavar="N", help="Processes; default: all cores.")
+@time_option
+def rank(brief: Path, top: int | None, as_csv: bool, as_json: bool, workers: int | None, time_limit: float) -> None:
+    """Rank every coupler of BRIEF's table by its best proved design; the others with the reason.
+
+    Ctrl-C ends it early with what is finished. The time limit holds for each coupler.
+
+    Example: optopick rank examples/fastest.toml --top 5
+    """
+    from optopick.read_brief import read_brief
+
+    read = read_brief(brief)
+
+    from optopick.uses.rank import rank as run
+    from optopick.uses.workers import Processes
+
+    ranking = run(read, workers=Processes(workers), progress=progress(), time_limit=time_limit)
+    if as_json:
+        from optopick.report.as_json import ranking_object
+
+        show_json(ranking_object(ranking))
+    elif as_csv:
+        from optopick.report.frames import ranking_frame
+
+        click.echo(ranking_frame(ranking).head(top or len(ranking.ranked)).to_csv(index=False), nl=False)
+    else:
+        from optopick.report.text_uses import ranking_text
+
+        show(ranking_text(ranking, read.title, top))
+    sys.exit(OK if ranking.ranked else NO_DESIGN)
+
+
+@main.command()
+@brief_argument
+@click.option("--first", default="edge time", metavar="GOAL", help='Goal along the front; default "edge time".')
+@click.option("--second", default="power", metavar="GOAL", help='Goal traded against it; default "power".')
+@click.option("--points", type=click.IntRange(min=2), default=None, metavar="N", help="At most N points; default: all.")
+@click.option("--csv", "as_csv", is_flag=True, help="Print the points as CSV and nothing else.")
+@click.option(
+    "--plot", type=click.Path(path_type=Path), default=None, help="Also draw the front to a .svg or .png file."
+)
+@json_option
+@time_option
+def tradeoff(
+    brief: Path,
+    first: str,
+    second: str,
+    points: int | None,
+    as_csv: bool,
+    plot: Path | None,
+    as_json: bool,
+    time_limit: float,
+) -> None:
+    """The exact front between two goals over the whole table, each point proved.
+
+    Goals: edge time, delay, distortion, power.
+
+    Example: optopick tradeoff examples/shortlist.toml --first delay --points 8
+    """
+    from optopick.read_brief import read_brief
+    from optopick.uses.goals import goal_pair
+
+    goals, read = goal_pair(first, second), read_brief(brief)
+
+    from optopick.uses.tradeoff import tradeoff as run
+
+    front = run(read, goals, points=points, progress=progress(), time_limit=time_limit)
+    if plot is not None:
+        from optopick.cli.files import write_picture
+        from optopick.report.plots import front_figure
+
+        write_picture(plot, front_figure(front, read.title))
+    if as_json:
+        from optopick.report.as_json import front_object
+
+        show_json(front_object(front))
+    elif as_csv:
+        from optopick.report.frames import front_frame
+
+        click.echo(front_frame(front).to_csv(index=False), nl=False)
+    else:
+        from optopick.report.text_uses import front_text
+
+        show(front_text(front, read.title))
+    sys.exit(OK if front.points else OUT_OF_TIME if front.out_of_time else NO_DESIGN)
