@@ -132,3 +132,40 @@ class Why:
     complete: bool
     result: Result | None
     worth: tuple[Worth, ...]
+
+
+@dataclass(frozen=True)
+class Passing:
+    """One check over all samples: how many pass, the least margin, and counts of the margin in equal bins from -1 to 3."""
+
+    check: str
+    passed: int
+    histogram: tuple[int, ...]
+    least: float
+
+
+@dataclass(frozen=True)
+class Yield:
+    """How many of `count` samples pass every check, and each."""
+
+    count: int
+    good: int
+    checks: tuple[Passing, ...]
+
+
+@dataclass(frozen=True)
+class Step:
+    """One stock value of the position swept: the review at the worst corners, and with everything typical."""
+
+    ohms: float | None
+    worst: Review
+    typical: Review
+
+
+@dataclass(frozen=True)
+class Sweep:
+    """A design with one position stepped through its stock; `chosen`: the value of the design itself."""
+
+    position: str
+    chosen: float | None
+    steps: tuple[Step, ...]

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from pathlib import Path
 from typing import cast
 
@@ -31,7 +31,8 @@ def read_positions(values: Values, mistakes: Mistakes) -> dict[str, Position]:
     for name in POSITIONS:
         position = _position(f"stock.{name}", values, mistakes)
         if position is not None:
-            positions[name] = position
+            pieces = values.get(f"stock.{name}.pieces") if name == "r_led" else 1
+            positions[name] = replace(position, pieces=int(cast(int, pieces or 1)))
     return positions
 
 

@@ -12,6 +12,7 @@ from optopick.coupler import Ageing, Assumed, Barrier, Coupler, Kind, Led, Logic
 from optopick.coupler_cells import Row
 from optopick.coupler_columns import UNITS, schema
 from optopick.coupler_curves import Curve
+from optopick.coupler_sheets import SWITCHING, Bin
 from optopick.gaps import Filled, Unit, UnusableError
 from optopick.gaps_switching import (
     PlainRow,
@@ -79,8 +80,11 @@ def _needed(kind: Kind) -> tuple[str, ...]:
     return tuple(column.name for column in columns if column.gap == "row" and kind in column.kinds)
 
 
-def resolve(row: Row) -> Coupler:
-    """Return the coupler of one row, every gap filled and listed; raises UnusableError where a gap cannot be filled."""
+def resolve(row: Row, bin_: Bin | None) -> Coupler:
+    """Return the coupler of one row, every gap filled and listed; raises UnusableError where a gap cannot be filled.
+
+    bin_: the row's place among the bins of its part, of a row that states CTR.
+    """
     r = _Reader(row)
     led = _led(r)
     stated_led, stated_total = row.number("p_led"), row.number("p_total")
@@ -89,7 +93,7 @@ def resolve(row: Row) -> Coupler:
     is_logic = r.unit.kind is Kind.LOGIC
     transfer = None if is_logic else _transfer(r)
     logic = _logic(r) if is_logic else None
-    transistor = _transistor(r, transfer) if transfer else None
+    transistor = _transistor(r, transfer, bin_) if transfer and bin_ else None
     specified = transfer.i_ref if transfer else r.need("i_f_on")
     return Coupler(
         part=row.name,
@@ -170,12 +174,11 @@ def _ctr_temperature(r: _Reader) -> Curve:
     return stated.divided_by(stated.linear_at(25.0))
 
 
-def _transistor(r: _Reader, transfer: Transfer) -> Transistor:
-    ctr_mid = math.sqrt(transfer.ctr_min * transfer.ctr_max)
+def _transistor(r: _Reader, transfer: Transfer, bin_: Bin) -> Transistor:
     curve = Curve(transfer.curve_i, transfer.curve_g)
-    h_min, h_max, ctr_cb = (r.row.number(name) for name in ("h_fe_min", "h_fe_max", "ctr_cb"))
-    h_fe = r.get("h_fe_typ", lambda: gaps.h_fe_typ(r.unit, ctr_mid, h_min, h_max, ctr_cb))
-    times = _switching(r, TypicalUnit(ctr_mid, curve, h_fe))
+    h_min, h_max = r.row.number("h_fe_min"), r.row.number("h_fe_max")
+    h_fe = _gain(r, bin_)
+    times = _switching(r, bin_, curve, h_fe)
     sat_i_f, sat_i_c = _saturation_point(r, transfer, curve)
     (i_ceo_1, t_1), (i_ceo_2, t_2) = _dark_currents(r)
     return Transistor(
@@ -198,6 +201,25 @@ def _transistor(r: _Reader, transfer: Transfer) -> Transistor:
         c_m=times.c_m,
         tau_s=times.tau_s,
     )
+
+
+def _gain(r: _Reader, bin_: Bin) -> float:
+    """Return the gain of the bin's typical unit [1]."""
+    stated, ctr_cb = r.row.number("h_fe_typ"), r.row.number("ctr_cb")
+    h_min, h_max = r.row.number("h_fe_min"), r.row.number("h_fe_max")
+    if stated is not None:
+        return stated * _moved(r, bin_, "h_fe_typ")
+    filled = gaps.h_fe_typ(r.unit, bin_.ctr, h_min, h_max, ctr_cb)
+    # what comes of light follows the bin's own CTR already
+    from_light = ctr_cb is not None or h_min is None or h_max is None
+    return r.note(filled if from_light else gaps.times(filled, "h_fe_typ", _moved(r, bin_, "h_fe_min", "h_fe_max")))
+
+
+def _moved(r: _Reader, bin_: Bin, *columns: str) -> float:
+    """Return the gain of the bin's typical unit over that of the unit which `columns` speak of [1], and note it."""
+    gain = bin_.gain_over(*columns)
+    known = any(item.parameter == "bin_gain" for item in r.assumed)
+    return gain if known or math.isclose(gain, 1.0) else r.note(gaps.bin_gain(r.unit, gain))
 
 
 def _saturation_point(r: _Reader, transfer: Transfer, curve: Curve) -> tuple[float, float]:
@@ -230,12 +252,15 @@ def _dark_currents(r: _Reader) -> tuple[tuple[float, float], tuple[float, float]
     return (r.get("i_ceo", lambda: gaps.i_ceo(r.unit, hot, t_hot, t_cold)), t_cold), (hot, t_hot)
 
 
-def _switching(r: _Reader, typical: TypicalUnit) -> SwitchingConstants:
+def _switching(r: _Reader, bin_: Bin, curve: Curve, h_fe: float) -> SwitchingConstants:
+    """Return the switching constants of the bin's typical unit, whose gain is `h_fe`."""
+    gain = _moved(r, bin_, *SWITCHING)
+    typical = TypicalUnit(bin_.ctr / gain, curve, h_fe / gain)
     plain, saturated = _plain_row(r), _saturated_row(r)
     stated = r.row.number("c_cb")
     # noted only if used: with both switching rows c_cb goes unasked
     c_cb = gaps.usual(r.unit, "c_cb") if stated is None else Filled(stated, None)
-    found = switching_constants(r.unit, typical, plain, saturated, c_cb)
+    found = switching_constants(r.unit, typical, plain, saturated, c_cb).with_gain_times(gain)
     r.assumed.extend(found.assumed)
     return found
 

@@ -8,7 +8,7 @@ insulation can take is never assumed.
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Generic, TypeVar
 
 from optopick.coupler import Assumed, Kind
@@ -42,6 +42,12 @@ def filled(unit: Unit, parameter: str, value: float, rule: str, note: str = "") 
     """Return a value [SI] that `rule` gave to `parameter`; `note` adds why the rule was needed."""
     words = schema().rules[rule].words(unit.kind)
     return Filled(value, Assumed(unit.part, parameter, schema().show(parameter, value), note + words))
+
+
+def times(found: Filled[float], parameter: str, factor: float) -> Filled[float]:
+    """Return a filled value [SI] of `parameter` multiplied by `factor` [1], what was assumed for it told anew."""
+    value, assumed = found.value * factor, found.assumed
+    return Filled(value, assumed and replace(assumed, value=schema().show(parameter, value)))
 
 
 def usual(unit: Unit, column: str) -> Filled[float]:
@@ -196,6 +202,11 @@ def h_fe_typ(
         return filled(unit, "h_fe_typ", math.sqrt(h_fe_min * h_fe_max), "h_fe_between")
     usual_light = _si(unit, "ctr_cb", "h_fe_from_light", "ctr_cb")
     return filled(unit, "h_fe_typ", ctr_mid / usual_light, "h_fe_from_light")
+
+
+def bin_gain(unit: Unit, gain: float) -> Filled[float]:
+    """Return `gain`, that of the bin's typical unit over that of the part's [1], as taken by rule."""
+    return filled(unit, "bin_gain", gain, "bins_of_a_part")
 
 
 def light_spread(unit: Unit, ctr_ratio: float, h_fe_min: float | None, h_fe_max: float | None) -> Filled[float]:

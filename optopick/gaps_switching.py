@@ -1,6 +1,6 @@
 """Switching constants from the switching rows of a data sheet, and what stands in for a row that is missing.
 
-The typical unit of the bin, with a load resistor r_l and carrying i_c, follows with the time constant
+The typical unit of the sheet, with a load resistor r_l and carrying i_c, follows with the time constant
 g(i)*(tau_0 + r_l*c_m), where i is the LED current that carries i_c and g the CTR curve there: its gain falls as its CTR
 does. An edge from 10 to 90 % lasts ln 9 time constants. Storage lasts tau_s*ln(i_f/i). SI throughout.
 Source: charge control (Ebers and Moll 1954; Moll, Proc. IRE 42 (1954) 1773).
@@ -9,7 +9,7 @@ Source: charge control (Ebers and Moll 1954; Moll, Proc. IRE 42 (1954) 1773).
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from optopick.coupler import Assumed
 from optopick.coupler_columns import schema
@@ -24,7 +24,7 @@ _LEAST_OVERDRIVE = 1.1
 
 @dataclass(frozen=True)
 class TypicalUnit:
-    """The unit in the middle of the bin: CTR [1], its curve over LED current ([A], 1 at the test current), gain [1]."""
+    """The unit that the sheet's times are of: CTR [1], its curve over LED current ([A], 1 at the test current), gain [1]."""
 
     ctr: float
     curve: Curve
@@ -67,6 +67,18 @@ class SwitchingConstants:
     c_m: float
     tau_s: float
     assumed: tuple[Assumed, ...]
+
+    def with_gain_times(self, gain: float) -> SwitchingConstants:
+        """Return the constants of a unit with `gain` times the gain and the same light.
+
+        tau_0 = h_fe*tau_f and c_m = h_fe*c_cb grow with gain; tau_s, the lifetime of stored charge, does not.
+        """
+        moved = {"tau_0": self.tau_0 * gain, "c_m": self.c_m * gain}
+        told = (
+            replace(a, value=schema().show(a.parameter, moved[a.parameter])) if a.parameter in moved else a
+            for a in self.assumed
+        )
+        return SwitchingConstants(moved["tau_0"], moved["c_m"], self.tau_s, tuple(told))
 
 
 def saturated_current(unit: Unit, v_cc: float, r_l: float) -> float:

@@ -99,6 +99,7 @@ def _drive(values: Values) -> Drive:
         off_current=values.number("drive.off_current"),
         on_current_min=values.number("drive.on_current_min"),
         reverse=values.number("drive.reverse"),
+        reverse_diode=bool(values.get("drive.reverse_diode")),
     )
 
 

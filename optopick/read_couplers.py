@@ -12,6 +12,7 @@ from optopick.coupler import Coupler
 from optopick.coupler_cells import Row, read_rows
 from optopick.coupler_columns import blank_template, columns_markdown
 from optopick.coupler_rows import resolve
+from optopick.coupler_sheets import Bin, bins_of
 from optopick.gaps import UnusableError
 
 __all__ = ["CouplerTable", "SetAside", "blank_template", "columns_markdown", "read_couplers"]
@@ -41,7 +42,8 @@ def read_couplers(path: Path) -> CouplerTable:
     Raises InputError with every mistake of the file: unreadable, an unknown or repeated column, a cell that is not
     what its column asks for or lies outside its range, figures of one row in the wrong order, a part and bin twice.
     """
-    outcomes = [_outcome(row) for row in read_rows(path)]
+    rows = read_rows(path)
+    outcomes = [_outcome(row, bin_) for row, bin_ in zip(rows, bins_of(rows), strict=True)]
     return CouplerTable(
         couplers=tuple(outcome for outcome in outcomes if isinstance(outcome, Coupler)),
         set_aside=tuple(outcome for outcome in outcomes if isinstance(outcome, SetAside)),
@@ -49,8 +51,8 @@ def read_couplers(path: Path) -> CouplerTable:
     )
 
 
-def _outcome(row: Row) -> Coupler | SetAside:
+def _outcome(row: Row, bin_: Bin | None) -> Coupler | SetAside:
     try:
-        return resolve(row)
+        return resolve(row, bin_)
     except UnusableError as error:
         return SetAside(row.name, row.line, str(error))

@@ -5,6 +5,6 @@ are tried, so that a wrong reason shows as a disagreement. Arrays carry one axis
 just the axes it depends on, which is also how its worst corner gets its words.
 """
 
-from optopick.recheck.review import review, review_parts
+from optopick.recheck.review import evaluate, review
 
-__all__ = ["review", "review_parts"]
+__all__ = ["evaluate", "review"]

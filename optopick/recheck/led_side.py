@@ -12,8 +12,9 @@ from optopick.physics.ageing import light_left
 from optopick.physics.heat import derated, resistor_derated
 from optopick.physics.led import branch_current, forward_voltage, led_current, led_current_of_leak
 from optopick.physics.types import Array
-from optopick.recheck.vertices import Vertices, rating_of, worst
-from optopick.result import Check, Design
+from optopick.recheck.measured import Measured
+from optopick.recheck.vertices import Vertices, rating_of
+from optopick.result import Design
 
 DARK_FRACTION = 0.01
 """An LED counts as dark below this share of the current at which its coupler is specified (a rule of this program)."""
@@ -65,32 +66,32 @@ def _off_current(brief: Brief, coupler: Coupler, box: Vertices) -> Array:
     return np.asarray(np.maximum(leak, np.maximum(by_voltage, by_current)))
 
 
-def led_checks(brief: Brief, coupler: Coupler, design: Design, box: Vertices, branch: LedBranch) -> list[Check]:
+def led_checks(brief: Brief, coupler: Coupler, design: Design, box: Vertices, branch: LedBranch) -> list[Measured]:
     """Every check of the LED side."""
     led, drive = coupler.led, brief.drive
     checks = [
-        worst(box, "led_current", branch.i_f, derated(led.i_max, box.t), "<=", "A"),
-        worst(box, "led_power", branch.i_f * branch.v_f, derated(led.p_max, box.t), "<=", "W"),
+        Measured("led_current", branch.i_f, derated(led.i_max, box.t), "<=", "A"),
+        Measured("led_power", branch.i_f * branch.v_f, derated(led.p_max, box.t), "<=", "W"),
     ]
     if drive.max_current is not None:
-        checks.append(worst(box, "driver_current", branch.i_branch, drive.max_current, "<=", "A"))
+        checks.append(Measured("driver_current", branch.i_branch, drive.max_current, "<=", "A"))
     if drive.on_current_min > 0:
-        checks.append(worst(box, "input_current", branch.i_branch, drive.on_current_min, ">=", "A"))
+        checks.append(Measured("input_current", branch.i_branch, drive.on_current_min, ">=", "A"))
     if drive.reverse > 0:
         seen = DIODE_DROP if design.reverse_diode else drive.reverse
-        checks.append(worst(box, "reverse_voltage", seen, led.v_r_max, "<=", "V"))
+        checks.append(Measured("reverse_voltage", seen, led.v_r_max, "<=", "V"))
     return checks + _resistor_checks(brief, design, box, branch)
 
 
-def _resistor_checks(brief: Brief, design: Design, box: Vertices, branch: LedBranch) -> list[Check]:
+def _resistor_checks(brief: Brief, design: Design, box: Vertices, branch: LedBranch) -> list[Measured]:
     _, power, voltage = rating_of(brief, "r_led", design.r_led)
     drop = branch.i_branch * box.r_led / design.pieces
     checks = [
-        worst(box, "r_led_power", drop * branch.i_branch, resistor_derated(power, box.t), "<=", "W"),
-        worst(box, "r_led_voltage", drop, voltage, "<=", "V"),
+        Measured("r_led_power", drop * branch.i_branch, resistor_derated(power, box.t), "<=", "W"),
+        Measured("r_led_voltage", drop, voltage, "<=", "V"),
     ]
     if design.r_shunt is not None:
         _, power, _ = rating_of(brief, "r_shunt", design.r_shunt)
         heat = branch.v_f**2 / box.r_shunt
-        checks.append(worst(box, "r_shunt_power", heat, resistor_derated(power, box.t), "<=", "W"))
+        checks.append(Measured("r_shunt_power", heat, resistor_derated(power, box.t), "<=", "W"))
     return checks

@@ -13,9 +13,10 @@ from optopick.physics.saturation import load_current
 from optopick.physics.types import Array
 from optopick.recheck.led_side import LedBranch
 from optopick.recheck.load_side import load_checks
+from optopick.recheck.measured import Measured
 from optopick.recheck.stage import StageReview, Times
-from optopick.recheck.vertices import Vertices, worst
-from optopick.result import Check, Design
+from optopick.recheck.vertices import Vertices
+from optopick.result import Design
 
 
 def review_stage(brief: Brief, coupler: Coupler, design: Design, box: Vertices, branch: LedBranch) -> StageReview:
@@ -25,10 +26,10 @@ def review_stage(brief: Brief, coupler: Coupler, design: Design, box: Vertices, 
     heat = box.v_cc * logic.i_cc + logic.v_ol * i_sink
     checks = [
         *_level_checks(brief, logic, box, branch, i_sink),
-        worst(box, "supply_low", box.v_cc, logic.v_cc_min, ">=", "V"),
-        worst(box, "supply_high", box.v_cc, logic.v_cc_max, "<=", "V"),
-        worst(box, "output_power", heat, derated(coupler.p_out, box.t), "<=", "W"),
-        worst(box, "total_power", branch.i_f * branch.v_f + heat, derated(coupler.p_total, box.t), "<=", "W"),
+        Measured("supply_low", box.v_cc, logic.v_cc_min, ">=", "V"),
+        Measured("supply_high", box.v_cc, logic.v_cc_max, "<=", "V"),
+        Measured("output_power", heat, derated(coupler.p_out, box.t), "<=", "W"),
+        Measured("total_power", branch.i_f * branch.v_f + heat, derated(coupler.p_total, box.t), "<=", "W"),
         *load_checks(brief, design, box),
     ]
     power = box.v_cc * logic.i_cc + brief.signal.lit * box.v_cc * i_sink
@@ -46,17 +47,17 @@ def _input_on(brief: Brief) -> float:
     return max(brief.output.input_leakage, brief.output.input_current_low)
 
 
-def _level_checks(brief: Brief, logic: Logic, box: Vertices, branch: LedBranch, i_sink: Array) -> list[Check]:
+def _level_checks(brief: Brief, logic: Logic, box: Vertices, branch: LedBranch, i_sink: Array) -> list[Measured]:
     output = brief.output
     v_il = thresholds(output.v_il, output.supply, box.v_cc)
     v_ih = thresholds(output.v_ih, output.supply, box.v_cc)
     high = box.v_cc - (logic.i_oh + output.input_leakage) * box.r_load
     return [
-        worst(box, "switching_current", branch.i_f * branch.light, logic.i_f_on, ">=", "A"),
-        worst(box, "led_dark", branch.i_off, logic.i_f_off, "<=", "A"),
-        worst(box, "sink_current", i_sink, logic.i_ol, "<=", "A"),
-        worst(box, "output_low", logic.v_ol, v_il - output.noise_margin, "<=", "V"),
-        worst(box, "output_high", high, v_ih + output.noise_margin, ">=", "V"),
+        Measured("switching_current", branch.i_f * branch.light, logic.i_f_on, ">=", "A"),
+        Measured("led_dark", branch.i_off, logic.i_f_off, "<=", "A"),
+        Measured("sink_current", i_sink, logic.i_ol, "<=", "A"),
+        Measured("output_low", logic.v_ol, v_il - output.noise_margin, "<=", "V"),
+        Measured("output_high", high, v_ih + output.noise_margin, ">=", "V"),
     ]
 
 

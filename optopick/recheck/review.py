@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Collection
+from dataclasses import dataclass
 
 import numpy as np
 
@@ -10,11 +11,13 @@ from optopick.brief import Brief, Isolation
 from optopick.coupler import Barrier, Coupler, Kind
 from optopick.physics.led import branch_current, forward_voltage, led_current
 from optopick.physics.saturation import load_current
+from optopick.physics.types import Array
 from optopick.recheck import logic, transistor
-from optopick.recheck.led_side import LedBranch, led_branch, led_checks
-from optopick.recheck.stage import timing_checks
+from optopick.recheck.led_side import led_branch, led_checks
+from optopick.recheck.measured import Measured
+from optopick.recheck.stage import Times, timing_checks, worst_times
 from optopick.recheck.vertices import Vertices, vertices, worst
-from optopick.result import Check, Design, Power, Review
+from optopick.result import Design, Power, Review
 
 STAGES = {
     Kind.PHOTOTRANSISTOR: transistor.review_stage,
@@ -24,38 +27,42 @@ STAGES = {
 """How each kind of output is checked: the place to add a kind."""
 
 
-def review(brief: Brief, coupler: Coupler, design: Design, nominal: Collection[str] = ()) -> Review:
-    """Every check of `design` at its worst corner, its timing and its power; `nominal` as in `vertices`."""
-    box = vertices(brief, coupler, design, nominal)
+@dataclass(frozen=True)
+class Evaluation:
+    """A design wherever its box was filled: checks but for power, times [s], average power of both paths [W]."""
+
+    checks: tuple[Measured, ...]
+    times: Times
+    led_power: Array
+    output_power: Array
+
+
+def evaluate(brief: Brief, coupler: Coupler, design: Design, box: Vertices) -> Evaluation:
+    """Every check of a design at every point of a box: the vertices, or samples."""
     branch = led_branch(brief, coupler, box)
     stage = STAGES[coupler.kind](brief, coupler, design, box, branch)
-    timed, timing = timing_checks(brief, box, stage.times)
-    checks = [
+    checks = (
         *stage.checks,
-        *timed,
+        *timing_checks(brief, stage.times),
         *led_checks(brief, coupler, design, box, branch),
-        *_barrier_checks(box, coupler.barrier, brief.limits.isolation),
-    ]
-    worst_power = _power(brief, box, branch, stage.power)
-    power = Power(_nominal_power(brief, coupler, design), float(np.max(worst_power)))
-    if brief.limits.power is not None:
-        checks.append(worst(box, "power", worst_power, brief.limits.power, "<=", "W"))
-    return Review(design, tuple(checks), timing, power)
+        *_barrier_checks(coupler.barrier, brief.limits.isolation),
+    )
+    return Evaluation(checks, stage.times, brief.signal.lit * (box.drive * branch.i_branch), stage.power)
 
 
-def review_parts(brief: Brief, coupler: Coupler, design: Design) -> tuple[Vertices, LedBranch]:
-    """The box and the LED branch of a design, for those who look closer."""
-    box = vertices(brief, coupler, design)
-    return box, led_branch(brief, coupler, box)
+def review(brief: Brief, coupler: Coupler, design: Design, nominal: Collection[str] = ()) -> Review:
+    """Every check of `design` at its worst corner, its timing and its power; `nominal` as in `vertices`.
 
-
-def _power(brief: Brief, box: Vertices, branch: LedBranch, output_path: np.ndarray) -> np.ndarray:
-    """Average power [W]: the LED path while lit, and the output path.
-
-    Each path at its own worst temperature: within a resistor's drift of the common one, and a sum of two parts.
+    Average power is the sum of both paths, each at its own worst temperature: within a resistor's drift of the common
+    one, and a sum of two parts.
     """
-    led_path = brief.signal.lit * (box.drive * branch.i_branch)
-    return np.asarray(led_path.max(axis=0, keepdims=True) + output_path.max(axis=0, keepdims=True))
+    box = vertices(brief, coupler, design, nominal)
+    found = evaluate(brief, coupler, design, box)
+    power = found.led_power.max(axis=0, keepdims=True) + found.output_power.max(axis=0, keepdims=True)
+    limited = [] if brief.limits.power is None else [Measured("power", power, brief.limits.power, "<=", "W")]
+    checks = tuple(worst(box, measured) for measured in (*found.checks, *limited))
+    told = Power(_nominal_power(brief, coupler, design), float(np.max(power)))
+    return Review(design, checks, worst_times(brief, found.times), told)
 
 
 def _nominal_power(brief: Brief, coupler: Coupler, design: Design) -> float:
@@ -72,14 +79,14 @@ def _nominal_power(brief: Brief, coupler: Coupler, design: Design) -> float:
     return float(brief.signal.lit * (v * i_branch + v_cc * i_load) + v_cc * i_cc)
 
 
-def _barrier_checks(box: Vertices, barrier: Barrier, needed: Isolation) -> list[Check]:
+def _barrier_checks(barrier: Barrier, needed: Isolation) -> list[Measured]:
     pairs = (
         ("withstand", barrier.withstand, needed.withstand, "V"),
         ("working_voltage", barrier.working, needed.working, "V"),
         ("creepage", barrier.creepage, needed.creepage, "m"),
     )
     return [
-        worst(box, name, np.nan if has is None else has, limit, ">=", unit)
+        Measured(name, np.nan if has is None else has, limit, ">=", unit)
         for name, has, limit, unit in pairs
         if limit is not None
     ]

@@ -8,8 +8,8 @@ import numpy as np
 
 from optopick.brief import Brief
 from optopick.physics.types import Array
-from optopick.recheck.vertices import Vertices, worst
-from optopick.result import Check, Timing
+from optopick.recheck.measured import Measured
+from optopick.result import Timing
 
 
 @dataclass(frozen=True)
@@ -28,24 +28,28 @@ class Times:
 class StageReview:
     """Checks of the output stage, its times, and the average power of the output path at every vertex [W]."""
 
-    checks: tuple[Check, ...]
+    checks: tuple[Measured, ...]
     times: Times
     power: Array
 
 
-def timing_checks(brief: Brief, box: Vertices, times: Times) -> tuple[list[Check], Timing]:
-    """Limits on edges, delays, distortion and pulse, and each worst case, guard included."""
+def timing_checks(brief: Brief, times: Times) -> list[Measured]:
+    """Limits on edges, delays, distortion and pulse, guard included."""
     guard, limits = brief.limits.timing_guard, brief.limits
     edge = guard * np.maximum(times.edge_on, times.edge_off)
     delay = guard * np.maximum(times.delay_on, times.delay_off)
-    distortion = guard * times.distortion
-    checks = [worst(box, "shortest_pulse", delay, brief.signal.shortest_pulse, "<=", "s")]
+    checks = [Measured("shortest_pulse", delay, brief.signal.shortest_pulse, "<=", "s")]
     for name, value, limit in (
         ("edge_time", edge, limits.edge_time),
         ("delay", delay, limits.delay),
-        ("distortion", distortion, limits.distortion),
+        ("distortion", guard * times.distortion, limits.distortion),
     ):
         if limit is not None:
-            checks.append(worst(box, name, value, limit, "<=", "s"))
+            checks.append(Measured(name, value, limit, "<=", "s"))
+    return checks
+
+
+def worst_times(brief: Brief, times: Times) -> Timing:
+    """Each time's worst case, guard included."""
     names = ("edge_on", "edge_off", "storage", "delay_on", "delay_off", "distortion")
-    return checks, Timing(**{name: guard * float(np.max(getattr(times, name))) for name in names})
+    return Timing(**{name: brief.limits.timing_guard * float(np.max(getattr(times, name))) for name in names})

@@ -22,6 +22,7 @@ from optopick.corners import (
 )
 from optopick.coupler import Coupler
 from optopick.physics.types import Array
+from optopick.recheck.measured import Measured
 from optopick.result import Check, Design
 
 RESISTORS = ("r_led", "r_load", "r_be", "r_shunt")
@@ -155,12 +156,12 @@ def _resistor(brief: Brief, design: Design, name: str, t: Array) -> Array:
     return np.concatenate([low, high], axis=axis)
 
 
-def worst(box: Vertices, name: str, value: Array | float, limit: Array | float, sense: str, unit: str) -> Check:
-    """The check at the vertex with the least room; nan counts as failing."""
-    v, lim = np.broadcast_arrays(np.asarray(value, dtype=float), np.asarray(limit, dtype=float))
-    room = lim - v if sense == "<=" else v - lim
-    with np.errstate(invalid="ignore", divide="ignore"):
-        margin = np.where(lim != 0, room / np.abs(lim), room)
-    flat = int(np.argmin(np.nan_to_num(margin, nan=-np.inf)))
-    corner = box.corner(margin, flat) if v.ndim else ""
-    return Check(name, float(v.flat[flat]), float(lim.flat[flat]), sense, unit, corner)
+def worst(box: Vertices, measured: Measured) -> Check:
+    """The check at the vertex with the least room."""
+    margin = measured.margin
+    value, limit = (
+        np.broadcast_to(np.asarray(part, dtype=float), margin.shape) for part in (measured.value, measured.limit)
+    )
+    flat = int(np.argmin(margin))
+    corner = box.corner(margin, flat) if margin.ndim else ""
+    return Check(measured.name, float(value.flat[flat]), float(limit.flat[flat]), measured.sense, measured.unit, corner)

@@ -23,6 +23,8 @@ def bill_csv(brief: Brief, coupler: Coupler, design: Design) -> str:
     writer.writerow(COLUMNS)
     writer.writerow((1, coupler.part, "", "", "coupler", _price(coupler.price)))
     writer.writerows(_rows(_alike(placed_resistors(brief, design))))
+    if design.reverse_diode:
+        writer.writerow((1, "diode", "", "", "reverse_diode", ""))
     return out.getvalue()
 
 
@@ -39,7 +41,7 @@ def _rows(reels: Iterable[list[Placed]]) -> Iterator[tuple[object, ...]]:
     for reel in reels:
         one = reel[0]
         positions = " ".join(part.position for part in reel)
-        yield len(reel), ohms_words(one.ohms), _tolerance(one), _rating(one), positions, _price(one.price)
+        yield sum(part.pieces for part in reel), ohms_words(one.ohms), _tolerance(one), _rating(one), positions, _price(one.price)
 
 
 def _tolerance(one: Placed) -> str:

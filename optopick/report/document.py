@@ -1,13 +1,18 @@
-"""What the design-review document is made from: the answer, what it was asked, and the parts that may be there or not."""
+"""What the design-review document is made from: the answer, what was asked, and the parts that may be there or not."""
 
 from __future__ import annotations
 
-from dataclasses import dataclass, field
+from dataclasses import dataclass
 from hashlib import sha256
+from typing import TYPE_CHECKING
 
+from optopick.answers import Checked, Front, Ranking, Share, Why
 from optopick.brief import Brief
 from optopick.coupler import Assumed, Coupler
-from optopick.result import Check, Design, Objective, Proof, Rejected, Result, Review, Status
+from optopick.result import Objective, Proof, Rejected, Result, Review, Status
+
+if TYPE_CHECKING:
+    from optopick.simulate import Pattern, Simulation
 
 
 @dataclass(frozen=True)
@@ -46,74 +51,31 @@ class Level:
 
 @dataclass(frozen=True)
 class Waveform:
-    """Voltages over time [s, V], ascending in time; `bits` with `bit_time` [s] where a pattern was sent from t = 0."""
+    """Voltages over time [s, V], ascending in time.
+
+    lit: from when to when the LED is on [s]. bits, bit_time [s]: a pattern that was sent from t = 0.
+    """
 
     title: str
-    explained: str
     time: tuple[float, ...]
     traces: tuple[Trace, ...]
     levels: tuple[Level, ...] = ()
+    lit: tuple[tuple[float, float], ...] = ()
     bits: str = ""
     bit_time: float = 0.0
-
-
-@dataclass(frozen=True)
-class BudgetStep:
-    """One cause moved to the end that hurts, and the check's value from then on."""
-
-    cause: str
-    value: float
-
-
-@dataclass(frozen=True)
-class Budget:
-    """How a check comes from its typical value to its worst one, cause by cause."""
-
-    check: Check
-    typical: float
-    steps: tuple[BudgetStep, ...]
-
-
-@dataclass(frozen=True)
-class FrontPoint:
-    """A design that is best in one goal for what it gives in the other."""
-
-    x: float
-    y: float
-    design: Design
-
-
-@dataclass(frozen=True)
-class Front:
-    """A trade-off front, ascending in x; units as in Objective. `chosen`: index of the document's design, if on it."""
-
-    x_name: str
-    x_unit: str
-    y_name: str
-    y_unit: str
-    points: tuple[FrontPoint, ...]
-    chosen: int | None = None
-
-
-@dataclass(frozen=True)
-class Ranked:
-    """The best design of one coupler: its goals, in the order of the brief."""
-
-    design: Design
-    objectives: tuple[Objective, ...]
 
 
 @dataclass(frozen=True)
 class Walk:
     """Designs the reader can move along, each reviewed beforehand.
 
-    position: the resistor that changes ("r_load"), or "front" for the designs of a trade-off front. `chosen`: index of
-    the document's design.
+    position: the resistor that changes ("r_load"), or "front" for the designs of a trade-off front. chosen: index of
+    the document's design, None where it is not among them.
     """
 
     position: str
     points: tuple[Review, ...]
-    chosen: int
+    chosen: int | None
 
 
 @dataclass(frozen=True)
@@ -121,7 +83,8 @@ class Document:
     """One design review. Optional parts are shown only where they are given.
 
     coupler: the table row of the design, None where there is no design. status: None for a design that was given and
-    not sought. date: as it is to be printed, so that the same input gives the same page.
+    not sought. date: as it is to be printed, so that the same input gives the same page. budget: a margin budget.
+    why: which limits contradict each other, where there is no design.
     """
 
     brief: Brief
@@ -138,11 +101,13 @@ class Document:
     rejected: tuple[Rejected, ...] = ()
     notes: tuple[str, ...] = ()
     cautions: tuple[str, ...] = ()
-    ranking: tuple[Ranked, ...] = ()
+    ranking: Ranking | None = None
     front: Front | None = None
+    why: Why | None = None
     walks: tuple[Walk, ...] = ()
-    waveforms: tuple[Waveform, ...] = ()
-    budgets: tuple[Budget, ...] = field(default=())
+    budget: tuple[Share, ...] = ()
+    simulation: Simulation | None = None
+    pattern: Pattern | None = None
 
     def __post_init__(self) -> None:
         if (self.review is None) != (self.coupler is None):
@@ -152,20 +117,13 @@ class Document:
 
 
 def document_of(
-    brief: Brief,
-    result: Result,
-    coupler: Coupler | None,
-    *,
-    brief_file: InputFile,
-    table_file: InputFile,
-    version: str,
-    date: str,
+    brief: Brief, result: Result, coupler: Coupler | None, files: tuple[InputFile, InputFile], version: str, date: str
 ) -> Document:
-    """The document of an answer to `pick`; add the optional parts with dataclasses.replace."""
+    """The document of an answer to `pick`; add the optional parts with dataclasses.replace. files: brief and table."""
     return Document(
         brief=brief,
-        brief_file=brief_file,
-        table_file=table_file,
+        brief_file=files[0],
+        table_file=files[1],
         version=version,
         date=date,
         review=result.review,
@@ -176,4 +134,22 @@ def document_of(
         assumed=result.assumed,
         rejected=result.rejected,
         cautions=result.cautions,
+    )
+
+
+def document_of_checked(
+    brief: Brief, checked: Checked, coupler: Coupler, files: tuple[InputFile, InputFile], version: str, date: str
+) -> Document:
+    """The document of a design that was given to `check`. files: brief and table."""
+    return Document(
+        brief=brief,
+        brief_file=files[0],
+        table_file=files[1],
+        version=version,
+        date=date,
+        review=checked.review,
+        coupler=coupler,
+        assumed=checked.assumed,
+        notes=checked.notes,
+        cautions=checked.cautions,
     )

@@ -5,6 +5,7 @@ The script of the page shows these texts and numbers and works nothing out.
 
 from __future__ import annotations
 
+import math
 from collections.abc import Iterator, Sequence
 from dataclasses import asdict, dataclass
 from typing import Any
@@ -14,8 +15,8 @@ from markupsafe import Markup
 from optopick.report.document import Level, Trace, Walk
 from optopick.report.labels import POSITIONS, TIMES, check_label
 from optopick.report.pictures import bar_span, cursor_share, state_of, sweep_plot
-from optopick.report.placed import SYMBOLS, resistors_words
-from optopick.report.words import amount, limit_words, ohms_words, room_words, standing
+from optopick.report.placed import SYMBOLS, pieces_of, resistors_words, value_words
+from optopick.report.words import amount, limit_words, room_words, standing
 from optopick.result import Check, Review
 
 CURVES = 5
@@ -37,7 +38,7 @@ class WalkView:
     plot: Markup | None
     table_head: tuple[str, ...]
     table_rows: tuple[tuple[str, ...], ...]
-    chosen: int
+    chosen: int | None
 
 
 def walk_view(walk: Walk) -> WalkView:
@@ -65,7 +66,7 @@ def _point_name(walk: Walk) -> str:
 def point_words(walk: Walk, review: Review) -> str:
     """What tells one point of a walk from the others."""
     if walk.position in POSITIONS:
-        return ohms_words(getattr(review.design, walk.position))
+        return value_words(getattr(review.design, walk.position), pieces_of(review.design, walk.position))
     return design_words(review)
 
 
@@ -83,7 +84,7 @@ def _row(walk: Walk, review: Review) -> tuple[str, ...]:
 
 
 def _plot(walk: Walk) -> Markup | None:
-    """The room of the tightest checks over the resistor's values; a position that may be empty has no place for that."""
+    """The room of the tightest checks over the resistor's values; an empty position has no place on it."""
     if walk.position not in POSITIONS:
         return None
     points = _with_value(walk)
@@ -91,7 +92,7 @@ def _plot(walk: Walk) -> Markup | None:
     if len(values) < 2:
         return None
     symbol, name = SYMBOLS[walk.position], f"Room of the tightest checks over {SYMBOLS[walk.position]}"
-    at = getattr(walk.points[walk.chosen].design, walk.position)
+    at = None if walk.chosen is None else getattr(walk.points[walk.chosen].design, walk.position)
     series = [Trace(check_label(check), room) for check, room in _moving([review for _, review in points])]
     return sweep_plot(
         name,
@@ -120,8 +121,8 @@ def _moving(reviews: Sequence[Review]) -> list[tuple[str, tuple[float, ...]]]:
 
 
 def _room(review: Review, name: str) -> float:
-    found = next((check.margin for check in review.checks if check.name == name), float("nan"))
-    return found if found == found else float("-inf")
+    found = next((check.margin for check in review.checks if check.name == name), math.nan)
+    return -math.inf if math.isnan(found) else found
 
 
 # ---- the data for the script ------------------------------------------------------------------------------------
@@ -149,12 +150,10 @@ def explorer_data(walks: Sequence[Walk]) -> dict[str, Any]:
             "id": walk.position.replace("_", "-"),
             "chosen": walk.chosen,
             "points": [_point(walk, review, index) for review in walk.points],
+            "cursors": list(_cursors(walk)),
         }
         for walk in walks
     ]
-    cursors = [list(_cursors(walk)) for walk in walks]
-    for one, places in zip(shown, cursors, strict=True):
-        one["cursors"] = places
     return {"times": [*TIMES.values(), "Average power, worst case"], "walks": shown, "texts": list(index.texts)}
 
 

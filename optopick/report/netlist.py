@@ -220,7 +220,7 @@ def _analysis(s: Scene) -> Iterator[str]:
     step = max(min(shortest, total) / FINENESS, total / MOST_STEPS)
     yield ""
     yield f".options TEMP={_num(s.corner.t)} TNOM={_num(s.corner.t)}"
-    yield ".options RELTOL=1e-4 ABSTOL=1e-14 VNTOL=1e-7 CHGTOL=1e-17 GMIN=1e-15"
+    yield ".options RELTOL=1e-4 ABSTOL=1e-14 VNTOL=1e-7 CHGTOL=1e-17 GMIN=1e-18"
     yield f".tran {_num(step)} {_num(total)} 0 {_num(step)}"
     yield ".save V(out) V(drive)"
 

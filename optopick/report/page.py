@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+import math
 from base64 import b64encode
 from collections.abc import Iterator
 from dataclasses import asdict, dataclass
@@ -14,17 +15,19 @@ from typing import Any
 from jinja2 import Environment, PackageLoader, StrictUndefined
 from markupsafe import Markup
 
+from optopick.answers import Front, Share
 from optopick.coupler import Coupler
 from optopick.report.brief_words import requirement_parts
 from optopick.report.document import Document, InputFile
 from optopick.report.explorer import explorer_data, walk_view
 from optopick.report.formulas import formulas_for
 from optopick.report.labels import TIMES, check_label
-from optopick.report.pictures import budget_bar, front_plot, margin_bar, state_of, waveform_plot
+from optopick.report.pictures import front_plot, goal_unit, margin_bar, room_bar, state_of, waveform_plot
 from optopick.report.placed import placed_resistors, resistors_words
 from optopick.report.schematic import schematic_svg
 from optopick.report.svg import element
 from optopick.report.timing_picture import swing_of, timing_pictures
+from optopick.report.waveforms import pattern_wave, pulse_views
 from optopick.report.words import (
     amount,
     limit_words,
@@ -36,6 +39,9 @@ from optopick.report.words import (
     verdict,
 )
 from optopick.result import Check, Review
+
+LEAST_EATEN = 5e-4
+"""Room [1] below which a cause goes unsaid."""
 
 QUOTED_MOST = 1_000_000
 """Characters of an input file up to which it is quoted in full; of a longer table the heading and the line used."""
@@ -73,7 +79,10 @@ def _environment() -> Environment:
         "state": _state,
         "check_label": check_label,
         "limit_words": limit_words,
-        "budget_bar": budget_bar,
+        "room_bar": room_bar,
+        "eaten_words": _eaten_words,
+        "room_share": _share_words,
+        "waveform_plot": waveform_plot,
         "margin_bar": margin_bar,
         "ohms_words": ohms_words,
         "resistors_words": resistors_words,
@@ -95,6 +104,19 @@ def _state(check: Check) -> Markup:
     return element("span", room_words(check), class_=f"state {state_of(check)}")
 
 
+def _share_words(share: float) -> str:
+    """A room [1] as a percentage; a dash where it is no number."""
+    if math.isnan(share):
+        return "–"
+    return "0 %" if abs(share) < LEAST_EATEN else amount(round(share, 3), "%")
+
+
+def _eaten_words(share: Share) -> str:
+    """What eats a check's room, the hungriest first."""
+    costs = sorted(share.cost.items(), key=lambda item: -item[1] if math.isfinite(item[1]) else 0.0)
+    return ", ".join(f"{cause} {_share_words(cost)}" for cause, cost in costs if cost > LEAST_EATEN)
+
+
 def styles() -> str:
     """The style sheet of the page and of the pictures in it."""
     return "\n".join(_template(name) for name in ("palette.css", "page.css", "pictures.css"))
@@ -102,7 +124,7 @@ def styles() -> str:
 
 def _always(document: Document) -> dict[str, Any]:
     """What every page shows."""
-    told, not_chosen = set_aside(document.rejected)
+    told, not_chosen = set_aside(document.ranking.rejected if document.ranking else document.rejected)
     return {
         "document": document,
         "styles": Markup(styles()),
@@ -124,10 +146,11 @@ def _sections(document: Document) -> Iterator[Section]:
         ("design", "Design", designed),
         ("checks", "Checks", designed),
         ("timing", "Timing and power", designed),
-        ("budget", "Margin budget", document.budgets),
-        ("waveforms", "Waveforms", document.waveforms),
+        ("why", "What contradicts", document.why),
+        ("budget", "Margin budget", document.budget),
+        ("waveforms", "Simulated", document.simulation or document.pattern),
         ("explorer", "Neighbouring values", document.walks),
-        ("tradeoff", "Trade-off", document.front),
+        ("tradeoff", "Trade-off", document.front and document.front.points),
         ("couplers", "Couplers", document.ranking or document.rejected),
         ("assumptions", "Assumed", designed),
         ("formulas", "Formulas", designed),
@@ -152,15 +175,31 @@ def _of_design(document: Document, review: Review, coupler: Coupler) -> dict[str
 
 def _optional(document: Document) -> dict[str, Any]:
     """What a page shows where it is given."""
-    parts: dict[str, Any] = {"waveforms": tuple((wave, waveform_plot(wave)) for wave in document.waveforms)}
+    parts: dict[str, Any] = {}
     if document.proof and document.status:
         parts["proof"] = proof_words(document.status, document.proof, timed=False)
         parts["goal_words"] = _goal_words(document)
-    if document.front:
-        parts["front_plot"] = front_plot(document.front)
+    if document.simulation or document.pattern:
+        parts |= _waveforms(document)
+    if document.front and document.front.points:
+        parts |= _front(document, document.front)
     if document.walks:
         parts |= _explorer(document)
     return parts
+
+
+def _waveforms(document: Document) -> dict[str, Any]:
+    pulses = pulse_views(document.brief, document.simulation) if document.simulation else ()
+    pattern = pattern_wave(document.brief, document.pattern) if document.pattern else None
+    return {"pulses": pulses, "pattern_plot": waveform_plot(pattern) if pattern else None}
+
+
+def _front(document: Document, front: Front) -> dict[str, Any]:
+    designs = [point.review.design for point in front.points]
+    design = document.review.design if document.review else None
+    chosen = designs.index(design) if design in designs else None
+    units = [goal_unit(goal) for goal in front.goals]
+    return {"front_plot": front_plot(front, chosen), "front_chosen": chosen, "front_units": units}
 
 
 def _goal_words(document: Document) -> str:

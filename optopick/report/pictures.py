@@ -4,11 +4,14 @@ from __future__ import annotations
 
 import math
 from collections.abc import Sequence
+from itertools import pairwise
 
 from markupsafe import Markup
 
+from optopick.answers import Front, Share
+from optopick.brief import GoalName
 from optopick.report.axes import Scale, scale_over
-from optopick.report.document import Budget, Front, Level, Trace, Waveform
+from optopick.report.document import Level, Trace, Waveform
 from optopick.report.plot import Frame, series_class
 from optopick.report.svg import Point, element, percent, text
 from optopick.report.words import TIGHT, amount
@@ -22,7 +25,7 @@ BAR_LOW, BAR_HIGH = -0.25, 1.0
 
 
 def state_of(check: Check) -> str:
-    """ "holds", "tight" where little room is left, or "fails"."""
+    """Whether a check "holds", is "tight" because little room is left, or "fails"."""
     if not check.passed:
         return "fails"
     return "tight" if check.margin < TIGHT else "holds"
@@ -48,36 +51,47 @@ def margin_bar(check: Check) -> Markup:
     return element("svg", track, bar, limit, width="100%", height="16", class_="margin", aria_hidden="true")
 
 
-def budget_bar(value: float, budget: Budget) -> Markup:
-    """One value of a margin budget as a bar from zero, the check's limit across it; hidden like `margin_bar`."""
-    highest = max((budget.typical, budget.check.limit, *(step.value for step in budget.steps)), key=abs)
-    share = min(abs(value / highest), 1.0) if highest and math.isfinite(value) else 1.0
-    at = percent(abs(budget.check.limit / highest)) if highest else "0"
-    bar = element("rect", x="0", y="4", width=percent(share), height="8", class_="part-bar")
-    limit = element("line", x1=at, x2=at, y1="0", y2="16", class_="limit")
-    return element("svg", bar, limit, width="100%", height="16", class_="margin", aria_hidden="true")
+def room_bar(share: Share) -> Markup:
+    """The room of a check in a margin budget: filled as far as it holds at the worst corner, framed as far as it would
+    with everything nominal; hidden like `margin_bar`.
+    """
+    begin, length = bar_span(share.worst)
+    nominal = sum(bar_span(share.nominal))
+    zero = -BAR_LOW / (BAR_HIGH - BAR_LOW)
+    frame = element("rect", x=percent(zero), y="4", width=percent(max(nominal - zero, 0)), height="8", class_="track")
+    kind = "fails" if share.worst < 0 or math.isnan(share.worst) else "part-bar"
+    bar = element("rect", x=percent(begin), y="4", width=percent(length), height="8", class_=kind)
+    limit = element("line", x1=percent(zero), x2=percent(zero), y1="0", y2="16", class_="limit")
+    return element("svg", bar, frame, limit, width="100%", height="16", class_="margin", aria_hidden="true")
 
 
-def front_plot(front: Front) -> Markup:
-    """A trade-off front: each design a mark, steps between them, the document's own design ringed."""
-    points = [(point.x, point.y) for point in front.points]
-    x = scale_over((at for at, _ in points), front.x_unit, room=0.08)
-    y = scale_over((at for _, at in points), front.y_unit, room=0.08)
-    frame = Frame(x, f"{front.x_name} →", y, f"↑ {front.y_name}")
-    marks = [frame.mark(*point, "dot") for point in points]
-    if front.chosen is not None:
-        at = points[front.chosen]
-        marks += [frame.mark(*at, "ring", 9.0), _beside(frame, at, "this design")]
-    told = f"{len(points)} designs from {amount(points[0][0], front.x_unit)} to {amount(points[-1][0], front.x_unit)}."
-    return frame.drawn(
-        f"{front.y_name} against {front.x_name}", told, frame.line(_steps(points), series_class(0)), *marks
-    )
+def goal_unit(goal: GoalName) -> str:
+    """The unit of a goal."""
+    return "W" if goal is GoalName.POWER else "s"
+
+
+def front_plot(front: Front, chosen: int | None) -> Markup:
+    """A trade-off front: each design a mark, the document's own (index `chosen`) ringed; every goal falls to the left.
+
+    Stairs join the designs where the front is complete: between two of them nothing better is in stock than the first.
+    """
+    units = [goal_unit(goal) for goal in front.goals]
+    points = [(point.first, point.second) for point in front.points]
+    x, y = (scale_over((at[k] for at in points), units[k], room=0.08) for k in (0, 1))
+    names = [f"{goal.value}, worst case" for goal in front.goals]
+    frame = Frame(x, f"{names[0]} →", y, f"↑ {names[1]}")
+    drawn = [frame.line(_steps(points), series_class(0))] if front.complete else []
+    drawn += [frame.mark(*point, "dot") for point in points]
+    if chosen is not None:
+        drawn += [frame.mark(*points[chosen], "ring", 9.0), _beside(frame, points[chosen], "this design")]
+    told = f"{len(points)} designs from {amount(points[0][0], units[0])} to {amount(points[-1][0], units[0])}."
+    return frame.drawn(f"{names[1]} against {names[0]}", told, *drawn)
 
 
 def _steps(points: Sequence[Point]) -> list[Point]:
-    """The front as stairs: between two designs nothing better is known than the first."""
+    """The front as stairs."""
     stairs = list(points[:1])
-    for before, after in zip(points, points[1:], strict=False):
+    for before, after in pairwise(points):
         stairs += [(after[0], before[1]), after]
     return stairs
 
@@ -126,15 +140,27 @@ def cursor_share(values: Sequence[float], x: float) -> float:
 
 
 def waveform_plot(wave: Waveform) -> Markup:
-    """Voltages over time, the bits that were sent above them."""
+    """Voltages over time, when the LED is lit, and the bits that were sent."""
     across = Scale(wave.time[0], wave.time[-1], "s")
     values = [value for trace in wave.traces for value in trace.values] + [level.value for level in wave.levels]
     frame = Frame(across, "time →", scale_over(values, "V", room=0.12), "↑ voltage")
     drawn = [frame.level(level.name, level.value) for level in wave.levels]
     drawn += [frame.line(thinned(wave.time, trace.values), series_class(k)) for k, trace in enumerate(wave.traces)]
-    drawn += _bits(frame, wave)
+    drawn += _lit(frame, wave) + _bits(frame, wave)
     told = f"{', '.join(trace.name for trace in wave.traces)} over {amount(wave.time[-1] - wave.time[0], 's')}."
-    return frame.drawn(wave.title, told, *drawn, key=[trace.name for trace in wave.traces])
+    key = [trace.name for trace in wave.traces] if len(wave.traces) > 1 else ()
+    return frame.drawn(wave.title, told, *drawn, key=key)
+
+
+def _lit(frame: Frame, wave: Waveform) -> list[Markup]:
+    """A band along the bottom wherever the LED is lit."""
+    spans = [(frame.x.share(begin), frame.x.share(end)) for begin, end in wave.lit]
+    bands = [
+        element("rect", x=percent(begin), width=percent(end - begin), y=frame.height - 7, height="7", class_="lit")
+        for begin, end in spans
+    ]
+    name = text((percent(spans[0][0]), frame.height - 13), "LED lit", "halo") if spans else Markup("")
+    return [*bands, name]
 
 
 def _bits(frame: Frame, wave: Waveform) -> list[Markup]:

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from optopick.brief import Brief, Position
 from optopick.report.labels import POSITIONS
@@ -22,7 +22,8 @@ _PACKAGES = ((0.75, "2010"), (0.5, "1210"), (0.25, "1206"), (0.125, "0805"), (0.
 class Placed:
     """One resistor in its position; tolerance [1], power [W], voltage [V] and price None where no stock states them.
 
-    symbol: as in formulas, "R_LED". stocked: whether the brief's stock holds this value.
+    symbol: as in formulas, "R_LED". stocked: whether the brief's stock holds this value. pieces: how many of them stand
+    in series; value and ratings are those of one.
     """
 
     position: str
@@ -35,6 +36,12 @@ class Placed:
     price: float | None
     described: str
     stocked: bool
+    pieces: int = 1
+
+    @property
+    def words(self) -> str:
+        """The value, and how many of it where there are several."""
+        return value_words(self.ohms, self.pieces)
 
     @property
     def package(self) -> str:
@@ -47,9 +54,20 @@ SYMBOLS = {"r_led": "R_LED", "r_load": "R_load", "r_be": "R_BE", "r_shunt": "R_s
 
 def resistors_words(design: Design) -> str:
     """The resistors of a design in one line, which breaks between them and not within."""
-    values = ((SYMBOLS[name], getattr(design, name)) for name in POSITIONS)
-    placed = (f"{symbol} {ohms_words(ohms)}" for symbol, ohms in values if ohms is not None)
+    given = ((name, getattr(design, name)) for name in POSITIONS)
+    placed = [f"{SYMBOLS[name]} {value_words(ohms, pieces_of(design, name))}" for name, ohms in given if ohms is not None]
+    placed += ["reverse diode"] if design.reverse_diode else []
     return ", ".join(words.replace(" ", "\u00a0") for words in placed)
+
+
+def pieces_of(design: Design, position: str) -> int:
+    """How many equal resistors stand in series in a position."""
+    return design.pieces if position == "r_led" else 1
+
+
+def value_words(ohms: float | None, pieces: int) -> str:
+    """A resistor value, and how many of it where there are several in series."""
+    return f"{pieces} × {ohms_words(ohms)}" if pieces > 1 else ohms_words(ohms)
 
 
 def package_hint(power: float | None) -> str:
@@ -69,7 +87,8 @@ def _placed(brief: Brief, design: Design) -> Iterator[Placed]:
     for position, label in POSITIONS.items():
         ohms, stock = getattr(design, position), getattr(brief.stock, position)
         if ohms is not None:
-            yield _of_stock(position, label, ohms, stock)
+            one = _of_stock(position, label, ohms, stock)
+            yield replace(one, pieces=pieces_of(design, position))
 
 
 def _of_stock(position: str, label: str, ohms: float, stock: Position | None) -> Placed:

@@ -11,6 +11,7 @@ from collections.abc import Callable, Iterator, Sequence
 from contextlib import contextmanager
 from functools import cache
 from importlib import import_module
+from itertools import pairwise
 from typing import Any
 from xml.etree import ElementTree
 
@@ -20,15 +21,18 @@ from optopick.brief import Brief, DriveCircuit, OutputCircuit, Span
 from optopick.coupler import Coupler, Kind
 from optopick.report.placed import Placed, placed_resistors
 from optopick.report.svg import Point, element, picture, text
-from optopick.report.words import amount, ohms_words
+from optopick.report.words import amount
 from optopick.result import Design
 
 UNIT = 36.0
 """Pixels to one unit of schemdraw: half an inch at 72 to the inch."""
 
 WIDTH, HEIGHT = 560.0, 452.0
-SHUNT_ROOM = 24.0
-"""Room at the left that the words of a resistor across the LED need."""
+EXTRA_ROOM = 24.0
+"""Room at the left that the words of a part across the LED need; two such parts need twice as much and more."""
+
+MOST_DRAWN = 3
+"""Resistors in series that are drawn one by one; the words always say how many there are."""
 
 LED_X, BARRIER_X, BASE_X, OUT_X = 172.0, 252.0, 292.0, 388.0
 INNER_TOP, INNER_BOTTOM, MIDDLE = 186.0, 286.0, 236.0
@@ -57,7 +61,7 @@ class _Sheet:
 
     def wire(self, *points: Point) -> None:
         """A line through points."""
-        for begin, end in zip(points, points[1:], strict=False):
+        for begin, end in pairwise(points):
             self.part(self.symbols.Line(), begin, end)
 
     def joint(self, *points: Point) -> None:
@@ -80,14 +84,14 @@ def schematic_svg(brief: Brief, coupler: Coupler, design: Design) -> str:
     sheet = _Sheet()
     placed = {one.position: one for one in placed_resistors(brief, design)}
     _DRIVES[brief.drive.circuit](sheet, brief)
-    _led_side(sheet, placed)
+    _led_side(sheet, placed, design)
     if coupler.kind is Kind.LOGIC:
         _logic_side(sheet, brief, placed)
     else:
         _transistor(sheet, coupler)
         side = _pulled_up if brief.output.circuit is OutputCircuit.PULL_UP else _emitter_load
         side(sheet, brief, placed)
-    left = SHUNT_ROOM if "r_shunt" in placed else 0.0
+    left = EXTRA_ROOM * (("r_shunt" in placed) + 1.4 * design.reverse_diode)
     shapes = Markup("").join(_shapes(sheet.drawing.get_imagedata("svg")))
     return picture(
         "Schematic",
@@ -117,7 +121,7 @@ def _without(name: str) -> Iterator[None]:
     """Keep a package from being imported meanwhile: schemdraw would take two seconds to load matplotlib for nothing."""
     loaded = name in sys.modules
     if not loaded:
-        sys.modules[name] = None  # type: ignore[assignment] - the documented way to make an import fail
+        sys.modules[name] = None  # type: ignore[assignment]  # the documented way to make an import fail
     try:
         yield
     finally:
@@ -147,7 +151,7 @@ def _value_lines(one: Placed) -> tuple[Markup, str, str]:
         amount(one.tolerance, "%") if one.tolerance is not None else "",
         amount(one.power, "W") if one.power else "",
     ]
-    return _name(one.symbol), ohms_words(one.ohms), ", ".join(part for part in rated if part)
+    return _name(one.symbol), one.words, ", ".join(part for part in rated if part)
 
 
 def _resistor_words(sheet: _Sheet, at: Point, one: Placed, anchor: str = "start") -> None:
@@ -209,19 +213,32 @@ _DRIVES: dict[DriveCircuit, Callable[[_Sheet, Brief], None]] = {
 }
 
 
-def _led_side(sheet: _Sheet, placed: dict[str, Placed]) -> None:
-    sheet.wire((66.0, RAIL), (LED_X, RAIL))
+def _led_side(sheet: _Sheet, placed: dict[str, Placed], design: Design) -> None:
+    """The LED and its resistors: further ones in series lie in the wire from the drive."""
+    further = min(design.pieces, MOST_DRAWN) - 1
+    joints = [66.0 + k * (LED_X - 66.0) / max(further, 1) for k in range(max(further, 1) + 1)]
+    for begin, end in pairwise(joints):
+        (sheet.resistor if further else sheet.wire)((begin, RAIL), (end, RAIL))
     sheet.resistor((LED_X, RAIL), (LED_X, 152.0))
     _resistor_words(sheet, (LED_X + 18, 98.0), placed["r_led"])
     sheet.wire((LED_X, 152.0), (LED_X, INNER_TOP))
     sheet.part(sheet.symbols.LED().scale(1.35), (LED_X, INNER_TOP), (LED_X, INNER_BOTTOM))
     if "r_shunt" in placed:
-        top, bottom, x = INNER_TOP - 24, INNER_BOTTOM + 24, 108.0
-        sheet.wire((LED_X, top), (x, top))
-        sheet.resistor((x, top), (x, bottom))
-        sheet.wire((x, bottom), (LED_X, bottom))
-        sheet.joint((LED_X, top), (LED_X, bottom))
+        _across(sheet, 108.0, sheet.symbols.ResistorIEC().scale(1.2))
         _resistor_words(sheet, (92.0, MIDDLE - 16), placed["r_shunt"], "end")
+    if design.reverse_diode:
+        x = -12.0 if "r_shunt" in placed else 108.0
+        _across(sheet, x, sheet.symbols.Diode().scale(1.2), upward=True)
+        sheet.say((x - 16, MIDDLE - 6), *(("diode",) if "r_shunt" in placed else ("reverse", "diode")), class_="small", anchor="end")
+
+
+def _across(sheet: _Sheet, x: float, symbol: Any, *, upward: bool = False) -> None:  # noqa: ANN401 - schemdraw's own element
+    """A part from one end of the LED to the other."""
+    top, bottom = INNER_TOP - 24, INNER_BOTTOM + 24
+    sheet.wire((LED_X, top), (x, top))
+    sheet.part(symbol, *(((x, bottom), (x, top)) if upward else ((x, top), (x, bottom))))
+    sheet.wire((x, bottom), (LED_X, bottom))
+    sheet.joint((LED_X, top), (LED_X, bottom))
 
 
 # ---- the barrier ------------------------------------------------------------------------------------------------
@@ -348,7 +365,7 @@ def _logic_side(sheet: _Sheet, brief: Brief, placed: dict[str, Placed]) -> None:
 
 def _described(brief: Brief, coupler: Coupler, placed: dict[str, Placed]) -> str:
     """The circuit in words, for those who do not see it."""
-    values = ", ".join(f"{one.label} {ohms_words(one.ohms)}" for one in placed.values())
+    values = ", ".join(f"{one.label} {one.words}" for one in placed.values())
     lit = {
         DriveCircuit.SOURCE: "a driver pin that is high lights the LED",
         DriveCircuit.SINK: "a driver pin that is low lights the LED",

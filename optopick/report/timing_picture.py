@@ -28,8 +28,9 @@ BEFORE = 0.16
 
 @dataclass(frozen=True)
 class Swing:
-    """How the output moves: whether it falls as the LED lights, and the share of its swing [1] at which the receiver
-    takes it as changed, as the LED lights and as it goes dark.
+    """How the output moves: whether it falls as the LED lights.
+
+    on, off: the share of its swing [1] at which the receiver takes it as changed, as the LED lights and goes dark.
     """
 
     falls: bool

@@ -185,9 +185,10 @@ def at_rest(d: Device, c: Circuit, i_photo: float) -> tuple[float, float]:
     """v_be and v_ce [V] at which nothing moves any more.
 
     The output node's surplus falls as v_ce rises, and with v_ce set by it the base's falls as v_be rises: a bracketed
-    root inside another.
+    root inside another. Both brackets reach to where a junction carries an ampere.
     """
-    flows, lowest = flows_of(d, c), d.v_off - 0.3
+    ampere = -d.v_t * math.log(d.i_s)
+    flows, lowest = flows_of(d, c), d.v_off - ampere
     if c.v_cc <= max(d.v_off, 0.0):
         raise NotSimulatedError(f"a supply of {c.v_cc:.3g} V is below the voltage that the output keeps when on")
 
@@ -197,8 +198,8 @@ def at_rest(d: Device, c: Circuit, i_photo: float) -> tuple[float, float]:
     def base(v_be: float) -> float:
         return surplus(flows(v_be, v_ce(v_be)), i_photo)[0]
 
-    # at 0 V the base only gets current; where one ampere flows, it passes on more than any light gives
-    v_be = float(brentq(base, 0.0, -d.v_t * math.log(d.i_s), xtol=1e-13)) if i_photo > 0 else 0.0
+    # at 0 V the base only gets current, if only the junction's own; at one ampere it passes on more than any light gives
+    v_be = float(brentq(base, 0.0, ampere, xtol=1e-13))
     return v_be, v_ce(v_be)
 
 

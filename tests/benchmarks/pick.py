@@ -128,6 +128,9 @@ def whole_commands() -> dict[str, Spent]:
         brief = Path(folder) / "fine.toml"
         brief.write_text(text_of("E192", GoalName.EDGE_TIME), encoding="utf-8")
         spent["pick, one coupler at E192"] = typical(1, "pick", str(brief))
+    failed = [name for name, one in spent.items() if one.code]
+    if failed:
+        sys.exit(f"no design, or worse: {', '.join(failed)}")
     return spent
 
 

@@ -9,7 +9,17 @@ import time
 from dataclasses import dataclass
 from statistics import median
 
-COMMAND = (sys.executable, "-c", "from optopick.cli import main; main()")
+CODE = """
+import atexit, sys
+def tell(pipe=int(sys.argv.pop(1))):
+    peak = next(line for line in open("/proc/self/status") if line.startswith("VmHWM"))
+    open(pipe, "w").write(peak.split()[1])
+atexit.register(tell)
+from optopick.cli import main
+main()
+"""
+"""The command as its script runs it, and at its end the peak memory [kB] into a pipe. What the kernel tells the
+parent would count the parent's own memory too."""
 
 
 @dataclass(frozen=True)
@@ -24,14 +34,22 @@ class Spent:
 
 def run(*arguments: str) -> Spent:
     """Run optopick once with its output thrown away."""
+    receive, send = os.pipe()
     started = time.perf_counter()
     process = subprocess.Popen(
-        [*COMMAND, *arguments], stdin=subprocess.DEVNULL, stdout=subprocess.DEVNULL, stderr=subprocess.DEVNULL
+        [sys.executable, "-c", CODE, str(send), *arguments],
+        stdin=subprocess.DEVNULL,
+        stdout=subprocess.DEVNULL,
+        stderr=subprocess.DEVNULL,
+        pass_fds=(send,),
     )
+    os.close(send)
     _, status, usage = os.wait4(process.pid, 0)
-    process.returncode = os.waitstatus_to_exitcode(status)
     wall = time.perf_counter() - started
-    return Spent(wall, usage.ru_utime + usage.ru_stime, usage.ru_maxrss / 1024, process.returncode)
+    process.returncode = os.waitstatus_to_exitcode(status)
+    with os.fdopen(receive) as pipe:
+        peak = float(pipe.read()) / 1024
+    return Spent(wall, usage.ru_utime + usage.ru_stime, peak, process.returncode)
 
 
 def typical(count: int, *arguments: str) -> Spent:

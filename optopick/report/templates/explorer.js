@@ -79,7 +79,8 @@
     walk = data.walks.find((one) => one.id === id);
     label.textContent = document.querySelector(`[data-walk="${id}"] h3`).textContent;
     slider.max = walk.points.length - 1;
-    slider.value = walk.chosen;
+    slider.value = walk.chosen ?? 0;
+    find("back").hidden = walk.chosen === null;
     for (const one of data.walks) {
       for (const part of partsOf(one.id)) part.hidden = one.id !== id;
     }
