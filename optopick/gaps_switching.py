@@ -24,7 +24,7 @@ _LEAST_OVERDRIVE = 1.1
 
 @dataclass(frozen=True)
 class TypicalUnit:
-    """The unit that the sheet's times are of: CTR [1], its curve over LED current ([A], 1 at the test current), gain [1]."""
+    """The unit that the times are of: CTR [1], its curve over LED current ([A], 1 at the test current), gain [1]."""
 
     ctr: float
     curve: Curve

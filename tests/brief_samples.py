@@ -46,7 +46,7 @@ isolation = { withstand = "3.75 kV", working = "300 V", creepage = "6 mm" }
 [stock]
 tolerance = "2 %"
 drift = "50 ppm/K"
-r_led = { series = "E12", from = "100R", to = "10k", power = "0.25 W" }
+r_led = { series = "E12", from = "100R", to = "10k", power = "0.25 W", pieces = 2 }
 r_load = { series = "E24", tolerance = "5 %", voltage = "50 V" }
 r_be = { series = "E6", from = "10k", absent = true }
 r_shunt = { values = ["1k", "470R", 2200] }
@@ -91,6 +91,7 @@ rate = "1 kbit/s"
 [drive]
 circuit = "field"
 type = "IEC 61131-2 type 3"
+reverse_diode = false
 [output]
 circuit = "pull-up"
 supply = ["3.135 V", "3.465 V"]

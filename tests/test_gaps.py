@@ -3,7 +3,7 @@
 import math
 
 import pytest
-from coupler_tables import DARLINGTON, LOGIC, PHOTOTRANSISTOR, assumed, only_coupler
+from coupler_tables import DARLINGTON, LOGIC, PHOTOTRANSISTOR, assumed, only_coupler, read_table
 from hypothesis import given
 from hypothesis import strategies as st
 
@@ -131,6 +131,8 @@ def test_every_rule_is_used_by_some_gap(tmp_path):
     for row, cells, _ in [*ONE_ROW, *((PHOTOTRANSISTOR, cells, {}) for cells in SWITCHING)]:
         coupler = only_coupler(tmp_path, row, **cells)
         used |= {item.rule for item in coupler.assumed}
+    bins = read_table(tmp_path, PHOTOTRANSISTOR, PHOTOTRANSISTOR | {"bin": "H", "ctr_min": "150"})
+    used |= {item.rule for coupler in bins.couplers for item in coupler.assumed}
     silent = {"switching_rows"}  # its constant enters a figure that the sheet's rows give, nothing is assumed
     for name, rule in schema().rules.items():
         words = {rule.words(kind) for kind in (Kind.PHOTOTRANSISTOR, Kind.DARLINGTON)}

@@ -4,8 +4,10 @@ from __future__ import annotations
 
 import ast
 import json
+import re
 import subprocess
 import sys
+import tomllib
 from collections.abc import Iterator
 from graphlib import TopologicalSorter
 from itertools import pairwise
@@ -22,10 +24,10 @@ LAYERS: tuple[tuple[str, ...], ...] = (
     (
         *("brief", "coupler", "keys", "stock", "key_values", "read_keys", "brief_rules", "brief_stock", "read_brief"),
         *("coupler_columns", "coupler_curves", "coupler_cells", "gaps", "gaps_switching", "coupler_rows"),
-        "read_couplers",
+        *("coupler_sheets", "read_couplers"),
     ),
     ("physics",),
-    ("corners", "result", "cautions"),
+    ("corners", "result", "answers", "cautions"),
     ("model", "recheck", "simulate"),
     ("report",),
     ("uses",),
@@ -60,6 +62,8 @@ def imported(tree: ast.AST) -> Iterator[str]:
             for alias in node.names:
                 inner = f"{node.module}.{alias.name}"
                 yield inner if inner in MODULES else node.module
+        elif isinstance(node, ast.Call) and ast.unparse(node.func).endswith("import_module"):
+            yield from (argument.value for argument in node.args if isinstance(argument, ast.Constant))
 
 
 def of_package(module: str) -> str:
@@ -193,3 +197,21 @@ def test_python_front_is_light_and_complete():
     code = "import optopick\nfor name in optopick.__all__: assert callable(getattr(optopick, name)), name"
     loaded = loaded_after(code)
     assert not loaded & SOLVERS
+
+
+def test_what_is_imported_is_declared():
+    """Every package that the program imports stands among its dependencies, and none stands there for nothing."""
+    project = tomllib.loads((ROOT / "pyproject.toml").read_text(encoding="utf-8"))["project"]
+    declared = {re.split(r"[<>=!~ \[]", line)[0].replace("-", "_").lower() for line in project["dependencies"]}
+    used = {name for module in MODULES for name in top_names(module)} - set(sys.stdlib_module_names) - {"optopick"}
+    by_name_only = {"highspy"}  # Pyomo loads it by itself
+    assert used | by_name_only == declared
+
+
+def test_files_beside_the_code_are_packaged():
+    """What the program reads from its own folder goes into the package that pip installs."""
+    tools = tomllib.loads((ROOT / "pyproject.toml").read_text(encoding="utf-8"))["tool"]
+    patterns = tools["setuptools"]["package-data"]["optopick"]
+    packaged = {path for pattern in patterns for path in PACKAGE.glob(pattern) if path.is_file()}
+    ours = {path for path in PACKAGE.rglob("*") if path.is_file() and "__pycache__" not in path.parts}
+    assert {str(path.relative_to(PACKAGE)) for path in ours - packaged if path.suffix != ".py"} == set()

@@ -29,7 +29,7 @@ from optopick.key_values import read_value
 from optopick.keys import brief_sections, named_sets
 from optopick.read_brief import brief_from_mapping, brief_from_text, read_brief
 from optopick.stock import DEFAULT_HIGH, DEFAULT_LOW
-from optopick.toml_lines import key_lines, unclosed_quote
+from optopick.toml_lines import key_lines
 
 ALL_KEYS = [key for section in brief_sections() for key in section.keys]
 
@@ -63,6 +63,7 @@ class TestEveryKey:
             off_current=0.0,
             on_current_min=0.0,
             reverse=1.0,
+            reverse_diode=True,
         )
 
     def test_output(self, folder):
@@ -104,6 +105,12 @@ class TestStock:
         assert set(position.power) == {0.25}
         assert set(position.voltage) == {200.0}  # from the rating
         assert position.absent is False
+
+    def test_only_the_led_resistor_may_be_split(self, folder):
+        stock = read(folder, GOOD).stock
+        assert stock.r_led.pieces == 2
+        assert {position.pieces for position in (stock.r_load, stock.r_be, stock.r_shunt) if position} == {1}
+        assert read(folder, LEAST).stock.r_led.pieces == 1
 
     def test_own_tolerance_and_voltage_take_the_place_of_the_common_ones(self, folder):
         position = read(folder, GOOD).stock.r_load
@@ -159,7 +166,7 @@ class TestDefaults:
         brief = read(folder, LEAST)
         assert brief.title == "link"  # the file's name
         assert brief.signal == Signal(1e-3, 0.5)
-        assert brief.drive == Drive(DriveCircuit.SINK, Span(5.0, 5.0), Span(0.0, 0.0), None, 0.0)
+        assert brief.drive == Drive(DriveCircuit.SINK, Span(5.0, 5.0), Span(0.0, 0.0), None, 0.0, reverse_diode=True)
         assert brief.output == Output(
             OutputCircuit.EMITTER_LOAD, Span(5.0, 5.0), Span(0.8, 0.8), Span(2.0, 2.0), 0.0, 1e-6, 0.0, 15e-12
         )
@@ -333,75 +340,3 @@ class TestSchema:
     def test_data_files_are_installed(self):
         names = {entry.name for entry in resources.files("optopick").joinpath("data").iterdir()}
         assert {"brief_keys.toml", "logic_levels.toml", "field_inputs.toml"} <= names
-
-
-class TestLines:
-    def test_every_line(self):
-        text = changed(GOOD, ('table = "parts.csv"', 'table = """\n[not.a.section]\nx = 1\n"""'))
-        lines = text.split("\n")
-        found = key_lines(text)
-        for path, line in found.items():
-            assert path[-1] in lines[line - 1] or path[0] in lines[line - 1], path
-        assert found["drive", "max_current"] == lines.index('max_current = "8 mA"') + 1
-        assert found["limits", "isolation", "creepage"] == found["limits", "isolation"]
-        assert found["stock", "r_be", "absent"] == found["stock", "r_be"]
-        assert ("not", "a", "section") not in found
-
-    def test_keys_are_those_of_the_parser(self):
-        def paths(table, prefix=()):
-            for name, value in table.items():
-                yield (*prefix, name)
-                if isinstance(value, dict):
-                    yield from paths(value, (*prefix, name))
-
-        for text in (GOOD, LEAST, FIELD):
-            assert set(key_lines(text)) == set(paths(tomllib.loads(text)))
-
-    @pytest.mark.parametrize(
-        ("text", "path", "line"),
-        [
-            ("a = 1\nb = 2", ("b",), 2),
-            ("# a = 1\n\n  a = 1", ("a",), 3),
-            ('"a b" = 1', ("a b",), 1),
-            ("'a.b' = 1", ("a.b",), 1),
-            ("[a.b]\nc = 1", ("a", "b", "c"), 2),
-            ("[a]\nb.c = 1", ("a", "b", "c"), 2),
-            ("[a]\nb.c = 1", ("a", "b"), 2),
-            ("[[a]]\nb = 1", ("a", "b"), 2),
-            ("a = [\n 1, # b = 2\n 2,\n]\nb = 3", ("b",), 5),
-            ("a = [{ b = 1 },\n{ b = 2 }]\nc = 3", ("c",), 3),
-            ("a = { b = [1,\n2], c = { d = 1 } }", ("a", "c", "d"), 2),
-            ("a = {}\nb = 1", ("b",), 2),
-            ("a = { b.c = [\n1], d = 2 }", ("a", "d"), 2),
-            ("a = { b = {}, c = 2 }\nd = 1", ("a", "c"), 1),
-            ('\n"\\U000000b5\\t" = 1', ("µ\t",), 2),
-            ("a = '''\nb = 1\n'''\nc = 1", ("c",), 4),
-            ('a = "x\\"#="\nb = 1', ("b",), 2),
-            ('a = """x"""""\nb = 1', ("b",), 2),
-            ("a = 1.5\nb = 1979-05-27\nc = 1", ("c",), 3),
-        ],
-    )
-    def test_places(self, text, path, line):
-        tomllib.loads(text)  # the sample itself is valid
-        assert key_lines(text)[path] == line
-
-    @pytest.mark.parametrize("text", ["a = 'b", "}}} = 1", '"\\x" = 1', "]\n[", "= = =", "[a\nb = {", "a = ]]"])
-    def test_text_that_is_no_toml_does_no_harm(self, text):
-        assert all(1 <= line <= text.count("\n") + 1 for line in key_lines(text).values())
-
-    @pytest.mark.parametrize(
-        ("text", "line"),
-        [
-            ("", None),
-            ("a = 'b'\n# it's\n", None),
-            ("a = 'b", 1),
-            ('\na = 1\nb = "c\nd = 1', 3),
-            ('\n\na = """\n"b"\n', 3),
-            ("a = 'b'\nc = 'd\n", 2),
-        ],
-    )
-    def test_quote_that_is_never_closed(self, text, line):
-        assert unclosed_quote(text) == line
-
-    def test_keys_inside_lists_have_no_line(self):
-        assert set(key_lines("a = [{ b = 1 }, [{ c = 2 }]]")) == {("a",)}

@@ -16,10 +16,11 @@ from optopick.coupler import Coupler, Transfer, Transistor
 from optopick.model.corner_list import CornerList, corner_list
 from optopick.model.led_candidates import DARK_FRACTION, LedCandidates, led_candidates
 from optopick.model.taking import taken
-from optopick.physics import switching
+from optopick.physics.charge import Base, Load
 from optopick.physics.heat import derated, output_dissipation, resistor_derated
 from optopick.physics.leakage import dark_current, dark_current_held
 from optopick.physics.saturation import load_current, overdrive_to_hold, rise_with_current
+from optopick.physics.switching import Swing, swing
 from optopick.physics.transfer import base_led_current, collector_current, led_current_for, relative_ctr
 from optopick.physics.types import Array
 
@@ -28,17 +29,13 @@ from optopick.physics.types import Array
 class LoadCandidates:
     """Load resistors in stock. r_load: (n,) [ohm].
 
-    Over corner C, the two ends of its tolerance, and value n: i_sat [A], tau [s], on and off fractions (C, 1, 1) of
-    the swing. Over (C, n): for_margin: LED current for the CTR margin [A] (None without that limit); for_level: LED
+    swing: over corner C, the two ends of its tolerance, and value n. Over (C, n): for_margin: LED current for the CTR margin [A] (None without that limit); for_level: LED
     current that holds the on level [A]; leak_room: leakage the off level allows [A]. heat: (T, n) output dissipation
     [W]; power: (n,) worst average power of the output path [W]. keep: check name to (n,) mask.
     """
 
     r_load: Array
-    i_sat: Array
-    tau: Array
-    on: Array
-    off: Array
+    swing: Swing
     for_margin: Array | None
     for_level: Array
     leak_room: Array
@@ -66,8 +63,8 @@ class BaseCandidates:
 class Candidates:
     """All three positions of one coupler, its corners, and the light currents of every branch.
 
-    i_low, i_high: (C, n_led) extreme light [A]; i_lit_off: (C, n_led) collector current of the LED's rest [A].
-    total_room: (T,) package dissipation allowed [W]; c_be [F], tau_s [s], i_input_off [A].
+    i_low, i_high: (C, n_led) extreme light, worn and new [A]; i_lit_off: (C, n_led) collector current of the LED's rest [A].
+    total_room: (T,) package dissipation allowed [W]; tau_s [s], i_input_off [A].
     """
 
     corners: CornerList
@@ -78,7 +75,6 @@ class Candidates:
     i_high: Array
     i_lit_off: Array
     total_room: Array
-    c_be: float
     tau_s: float
     i_input_off: float
 
@@ -92,7 +88,7 @@ class Candidates:
         return replace(
             self,
             led=taken(self.led, i),
-            load=taken(self.load, j, besides=("on", "off")),
+            load=taken(self.load, j),
             base=taken(self.base, m),
             i_low=self.i_low[:, i],
             i_high=self.i_high[:, i],
@@ -105,9 +101,8 @@ def candidates(brief: Brief, coupler: Coupler) -> Candidates:
     transfer, transistor = coupler.transfer, coupler.transistor
     if transfer is None or transistor is None:
         raise ValueError(f"{coupler.part} has no transistor output")
-    c = corner_list(brief, coupler, transfer, transistor)
+    c = corner_list(brief, transfer, transistor)
     led = led_candidates(brief, coupler, transfer.curve_i[0], DARK_FRACTION * transfer.i_ref)
-    light = 1.0 + c.age * (led.light - 1.0)
     i_off = led.i_off[c.t_index]
     g_off = relative_ctr(transfer, np.clip(i_off, transfer.curve_i[0], transfer.curve_i[-1]))
     t = np.unique(c.t[:, 0])
@@ -116,11 +111,10 @@ def candidates(brief: Brief, coupler: Coupler) -> Candidates:
         led=led,
         load=_load(brief, coupler, transfer, transistor, c),
         base=_base(brief, coupler, transfer, transistor, c),
-        i_low=led.i_min[c.t_index] * light,
-        i_high=led.i_max[c.t_index] * light,
+        i_low=led.i_min[c.t_index] * led.light,
+        i_high=led.i_max[c.t_index],
         i_lit_off=c.ctr * c.h * g_off * i_off,
         total_room=derated(coupler.p_total, t),
-        c_be=transistor.c_be,
         tau_s=transistor.tau_s,
         i_input_off=input_current(brief, on=False),
     )
@@ -142,9 +136,6 @@ def _load(brief: Brief, coupler: Coupler, transfer: Transfer, transistor: Transi
     i_in = input_current(brief, on=True)
     at = c.v_cc[:, :, None]
     j_s = load_current(at, transistor.v_ce_sat, r, i_in)
-    i_sat = led_current_for(transfer, c.ctr[:, :, None], c.h[:, :, None], j_s)
-    tau = _tau(brief, transfer, transistor, c, r, i_sat)
-    on, off = _fractions(brief, transistor, c)
     margin = brief.limits.ctr_margin
     lifted = None if margin is None else led_current_for(transfer, c.ctr[:, :, None], c.h[:, :, None], margin * j_s)
     t = np.unique(c.t[:, 0]).reshape(-1, 1)
@@ -153,10 +144,7 @@ def _load(brief: Brief, coupler: Coupler, transfer: Transfer, transistor: Transi
     heat = output_dissipation(v_max, r_t, i_in)
     return LoadCandidates(
         r_load=np.asarray(stock.values),
-        i_sat=np.asarray(np.minimum(i_sat, transfer.curve_i[-1])),
-        tau=tau,
-        on=on,
-        off=off,
+        swing=_swing(brief, transfer, transistor, c, r, j_s),
         for_margin=None if lifted is None else np.asarray(lifted.max(axis=1)),
         for_level=_for_level(brief, transfer, transistor, c, r, j_s),
         leak_room=_leak_room(brief, c, r),
@@ -172,13 +160,13 @@ def _ends(position: Position, drift: float, t: Array) -> Array:
     return np.stack(ends, axis=1)
 
 
-def _tau(brief: Brief, transfer: Transfer, transistor: Transistor, c: CornerList, r: Array, i_sat: Array) -> Array:
-    """Time constants, (C, 2, n) [s]; infinite where the CTR curve does not reach the load's current."""
-    reachable = np.isfinite(i_sat)
-    g = relative_ctr(transfer, np.where(reachable, i_sat, transfer.curve_i[-1]))
-    gain = c.h_fe[:, :, None] * g / transistor.h_fe
-    tau = switching.time_constant(transistor.tau_0, transistor.c_m, gain, r, brief.output.capacitance)
-    return np.asarray(np.where(reachable, tau, np.inf))
+def _swing(brief: Brief, transfer: Transfer, transistor: Transistor, c: CornerList, r: Array, j_s: Array) -> Swing:
+    """The switching formulas' view of every load resistor, (C, 2, n)."""
+    t, v_cc, v_be, eta, carried = (part[:, :, None] for part in (c.t, c.v_cc, c.v_be, c.eta, c.ctr * c.h))
+    base = Base(transistor.tau_0 / transistor.h_fe, transistor.c_m / transistor.h_fe, transistor.c_be, v_be, eta)
+    load = Load(j_s, v_cc, v_cc - transistor.v_ce_sat, r, brief.output.capacitance, t)
+    on, off = _fractions(brief, transistor, c)
+    return swing(base, load, transfer, carried, on, off)
 
 
 def _fractions(brief: Brief, transistor: Transistor, c: CornerList) -> tuple[Array, Array]:

@@ -1,4 +1,7 @@
-"""The corners that no value in stock changes: temperature, age, lot, output supply; one entry each."""
+"""The corners that no value in stock changes: temperature, lot, output supply; one entry each.
+
+Age is no axis here: it only takes light, so what suffers from little light is judged worn, what suffers from much, new.
+"""
 
 from __future__ import annotations
 
@@ -8,21 +11,20 @@ from itertools import product
 import numpy as np
 
 from optopick.brief import Brief
-from optopick.corners import AGES, ctr_axis, light_axis, supply_axis, temperatures, thresholds
-from optopick.coupler import Coupler, Transfer, Transistor
+from optopick.corners import ctr_axis, light_axis, supply_axis, temperatures, thresholds
+from optopick.coupler import Transfer, Transistor
 from optopick.physics.transfer import light_factor, temperature_factor
 from optopick.physics.types import Array
 
 
 @dataclass(frozen=True)
 class CornerList:
-    """Arrays of shape (C, 1): temperature [degC] and its index, age (0 new, 1 end of life), CTR [1], light relative to
+    """Arrays of shape (C, 1): temperature [degC] and its index, CTR [1], light relative to
     typical [1], supply [V], receiver thresholds [V], CTR over temperature h [1], eta [1], gain h_fe [1], v_be [V].
     """
 
     t: Array
     t_index: np.ndarray
-    age: Array
     ctr: Array
     light: Array
     v_cc: Array
@@ -39,16 +41,15 @@ class CornerList:
         return len(self.t)
 
 
-def corner_list(brief: Brief, coupler: Coupler, transfer: Transfer, transistor: Transistor) -> CornerList:
-    """All combinations of temperature, age, CTR, light and output supply."""
+def corner_list(brief: Brief, transfer: Transfer, transistor: Transistor) -> CornerList:
+    """All combinations of temperature, CTR, light and output supply."""
     axes = (
         temperatures(brief.environment, transfer).values,
-        AGES.values,
         ctr_axis(transfer).values,
         light_axis(transistor.light_spread).values,
         supply_axis(brief).values,
     )
-    t, age, ctr, light, v_cc = (np.asarray(column).reshape(-1, 1) for column in zip(*product(*axes), strict=True))
+    t, ctr, light, v_cc = (np.asarray(column).reshape(-1, 1) for column in zip(*product(*axes), strict=True))
     h = temperature_factor(transfer, t)
     typical = np.sqrt(transfer.ctr_min * transfer.ctr_max) / transistor.h_fe
     eta = typical * light_factor(transfer, t) * light
@@ -56,7 +57,6 @@ def corner_list(brief: Brief, coupler: Coupler, transfer: Transfer, transistor: 
     return CornerList(
         t=t,
         t_index=np.searchsorted(np.asarray(axes[0]), t[:, 0]),
-        age=age,
         ctr=ctr,
         light=light,
         v_cc=v_cc,

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-from collections.abc import Collection
 from dataclasses import fields, replace
 from typing import Any, TypeVar
 
@@ -11,12 +10,14 @@ import numpy as np
 Part = TypeVar("Part", bound=Any)
 
 
-def taken(part: Part, values: np.ndarray, besides: Collection[str] = ()) -> Part:
-    """The candidates `values` of a position; fields named in `besides` are not over its values."""
+def taken(part: Part, values: np.ndarray) -> Part:
+    """The candidates `values` of a position."""
     changed: dict[str, Any] = {"keep": {name: mask[values] for name, mask in part.keep.items()}}
     for field in fields(part):
-        array = getattr(part, field.name)
-        if isinstance(array, np.ndarray) and field.name not in besides:
-            changed[field.name] = array[..., values]
+        own = getattr(part, field.name)
+        if isinstance(own, np.ndarray):
+            changed[field.name] = own[..., values]
+        elif hasattr(own, "taken"):
+            changed[field.name] = own.taken(values)
     found: Part = replace(part, **changed)
     return found

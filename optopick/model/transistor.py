@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterator
+from collections.abc import Iterator
 from dataclasses import dataclass
 from functools import cached_property
 
@@ -26,7 +26,6 @@ STAIRCASES = 48
 class Family:
     """A time at corners and load ends, monotone in the light and in what the base resistor takes.
 
-    time(i_eff, i_be, select): time [s] for load parameters picked by `select` (a function from (C, 2, n) arrays).
     more_light_hurts, more_base_hurts: the directions. limit: the field of Ask.
     """
 
@@ -43,18 +42,6 @@ FAMILIES = (
     Family("late_on", "distortion", more_light_hurts=False, more_base_hurts=True),
 )
 """late_off: delay off less delay on; late_on: the other way round."""
-
-
-@dataclass(frozen=True)
-class LoadSide:
-    """Load parameters at the corners in question, broadcast against the light: time constant and friends."""
-
-    tau: Array
-    i_sat: Array
-    on: Array
-    off: Array
-    v_be: Array
-    eta: Array
 
 
 @dataclass(frozen=True)
@@ -134,8 +121,8 @@ class TransistorModel:
         if not np.isfinite(ask.edge):
             return
         x = self.candidates
-        phi = switching.drive_for_edge_on(ask.edge, x.load.tau, x.load.i_sat).max(axis=1)
-        rho = switching.extraction_for_edge_off(ask.edge, x.load.tau, x.load.i_sat).max(axis=1)
+        phi = switching.drive_for_edge_on(x.load.swing.edge, ask.edge, x.load.swing.i_sat).max(axis=1)
+        rho = switching.extraction_for(x.load.swing.edge, ask.edge).max(axis=1)
         yield scaled("edge_on", x.i_low, -phi, -x.base.i_be_high)
         yield scaled("edge_off", np.zeros(self.sizes[0]), -rho, x.base.i_be_low)
 
@@ -146,9 +133,10 @@ class TransistorModel:
         """
         if not ask.has_delays:
             return
+        x = self.candidates
         strong, weak = self._extremes(light_most=True), self._extremes(light_most=False)
-        longest_on = self._time("delay_on", self._everywhere, weak.i_high, weak.i_be_low)
-        longest_off = self._time("delay_off", self._everywhere, strong.i_low, strong.i_be_high)
+        longest_on = self._time("delay_on", x.load.swing, self._eta, weak.i_high, weak.i_be_low)
+        longest_off = self._time("delay_off", x.load.swing, self._eta, strong.i_low, strong.i_be_high)
         yield from self._on_rows(np.minimum(ask.delay, ask.distortion + longest_off), strong)
         yield from self._off_rows(np.minimum(ask.delay, ask.distortion + longest_on), weak)
 
@@ -160,54 +148,38 @@ class TransistorModel:
         taken = [second(a, axis=1)[:, None, None] for a in (x.base.i_be_low, x.base.i_be_high)]
         return Extremes(*light, *taken)
 
-    @cached_property
-    def _everywhere(self) -> LoadSide:
-        return self._side(np.arange(self.candidates.corners.count)[:, None, None])
+    @property
+    def _eta(self) -> Array:
+        return self.candidates.corners.eta[:, :, None]
 
     def _on_rows(self, limit: Array, strong: Extremes) -> Iterator[Rows]:
         """Delay on within `limit` (C, 2, n): the crossing beside the shortest charging."""
-        x, side = self.candidates, self._everywhere
-        charge = switching.base_charging(x.c_be, side.v_be, side.eta, strong.i_low, strong.i_be_high)
-        phi = switching.drive_for_crossing_on(limit - charge, x.load.tau, x.load.on, x.load.i_sat)
+        x = self.candidates
+        charge = switching.charging(x.load.swing.charge, self._eta, strong.i_low, strong.i_be_high)
+        phi = switching.drive_for_crossing_on(x.load.swing.on, limit - charge)
         yield scaled("delay_on", x.i_low, -phi.max(axis=1), -x.base.i_be_high)
 
     def _off_rows(self, limit: Array, weak: Extremes) -> Iterator[Rows]:
         """Delay off within `limit` (C, 2, n): the fall beside the shortest storage, and the storage beside the fall."""
-        x = self.candidates
-        held = switching.storage(x.tau_s, weak.i_high, weak.i_be_low, x.load.i_sat)
-        rho = switching.extraction_for_crossing_off(limit - held, x.load.tau, x.load.off, x.load.i_sat)
+        x, swing = self.candidates, self.candidates.load.swing
+        held = switching.storage(x.tau_s, weak.i_high, weak.i_be_low, swing.i_sat, swing.hold)
+        rho = switching.extraction_for(swing.off, limit - held)
         yield scaled("delay_off", np.zeros(self.sizes[0]), -rho.max(axis=1), x.base.i_be_low)
-        fall = switching.crossing_off(x.load.tau, x.load.off, weak.i_be_low, x.load.i_sat)
+        fall = switching.time_off(swing.off, weak.i_be_low)
         with np.errstate(invalid="ignore"):
             left = np.nan_to_num((limit - fall) / x.tau_s, nan=50.0)
         stretch = np.exp(np.clip(left, -50.0, 50.0))
-        room = (stretch * x.load.i_sat).min(axis=1)
-        most = stretch.min(axis=1).max(axis=1)[:, None]
+        room = (stretch * swing.i_sat).min(axis=1)
+        most = (stretch * swing.hold).max(axis=(1, 2))[:, None]
         yield scaled("storage", -x.i_high, room, most * x.base.i_be_low)
 
-    def _side(self, corner: Index, end: Index | None = None, j: Index | None = None) -> LoadSide:
-        """Load parameters at corners (and ends and values, where given)."""
-        x, c = self.candidates, self.candidates.corners
-        flat = np.asarray(corner)
-        pick: Callable[[Array], Array] = (lambda a: a) if end is None or j is None else (lambda a: a[flat, end, j])
-        return LoadSide(
-            tau=pick(x.load.tau),
-            i_sat=pick(x.load.i_sat),
-            on=x.load.on[flat, 0, 0],
-            off=x.load.off[flat, 0, 0],
-            v_be=c.v_be[flat, 0],
-            eta=c.eta[flat, 0],
-        )
-
-    def _time(self, family: str, side: LoadSide, i_eff: Array, i_be: Array) -> Array:
+    def _time(self, family: str, swing: switching.Swing, eta: Array, i_eff: Array, i_be: Array) -> Array:
         """The time of a family [s]; every argument broadcasts."""
         if family == "delay_on":
-            charge = switching.base_charging(self.candidates.c_be, side.v_be, side.eta, i_eff, i_be)
-            return charge + switching.crossing_on(side.tau, side.on, i_eff, i_be, side.i_sat)
+            return switching.delay_on(swing, eta, i_eff, i_be)
         if family == "delay_off":
-            held = switching.storage(self.candidates.tau_s, i_eff, i_be, side.i_sat)
-            return held + switching.crossing_off(side.tau, side.off, i_be, side.i_sat)
-        on, off = (self._time(name, side, i_eff, i_be) for name in ("delay_on", "delay_off"))
+            return switching.delay_off(swing, self.candidates.tau_s, i_eff, i_be)
+        on, off = (self._time(name, swing, eta, i_eff, i_be) for name in ("delay_on", "delay_off"))
         with np.errstate(invalid="ignore"):
             late = off - on if family == "late_off" else on - off
         return np.nan_to_num(late, nan=np.inf, posinf=np.inf, neginf=-np.inf)
@@ -217,16 +189,14 @@ class TransistorModel:
         x = self.candidates
         light = (x.i_high if family.more_light_hurts else x.i_low)[:, None, i]
         taken = (x.base.i_be_high if family.more_base_hurts else x.base.i_be_low)[:, None, m]
-        corner = np.arange(x.corners.count)[:, None, None]
-        side = self._side(corner, np.array([0, 1])[None, :, None], j[None, None, :])
-        return self._time(family.name, side, light, taken)
+        return self._time(family.name, x.load.swing.taken(j), self._eta, light, taken)
 
     def scores(self, i: Index, j: Index, m: Index) -> Scores:
         """Worst-case goals of K designs, exactly."""
         x = self.candidates
-        tau, i_sat = x.load.tau[:, :, j], x.load.i_sat[:, :, j]
-        on = switching.edge_on(tau, x.i_low[:, None, i], x.base.i_be_high[:, None, m], i_sat)
-        off = switching.edge_off(tau, x.base.i_be_low[:, None, m], i_sat)
+        swing = x.load.swing.taken(j)
+        on = switching.edge_on(swing.edge, x.i_low[:, None, i] - x.base.i_be_high[:, None, m], swing.i_sat)
+        off = switching.time_off(swing.edge, x.base.i_be_low[:, None, m])
         by_name = {family.name: self._worst_times(family, i, j, m).max(axis=(0, 1)) for family in FAMILIES}
         p, q = self.power
         return Scores(
@@ -258,8 +228,8 @@ class TransistorModel:
         taken = (x.base.i_be_high if family.more_base_hurts else x.base.i_be_low)[corner]
         order = np.argsort(-light if family.more_light_hurts else light, kind="stable")
         load = np.arange(self.sizes[1])[:, None]
-        side = self._side(np.full_like(load, corner), np.full_like(load, end), load)
-        fails = self._time(family.name, side, light[order][None, :], taken[m]) > limit
+        swing = x.load.swing.at((np.full_like(load, corner), np.full_like(load, end), load))
+        fails = self._time(family.name, swing, x.corners.eta[corner, 0], light[order][None, :], taken[m]) > limit
         rank = np.empty(len(order))
         rank[order] = np.arange(len(order)) / len(order)
         need = fails.sum(axis=1) / len(order)

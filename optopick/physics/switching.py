@@ -1,131 +1,306 @@
-"""How fast the output follows: charge control (Ebers and Moll 1954; Moll, Proc. IRE 42 (1954) 1773).
+"""How fast the output follows: charge control (Ebers and Moll 1954; Moll, Proc. IRE 42 (1954) 1773), in steps.
 
-All drive and load quantities are LED currents (see the package glossary): `i_eff` the light, `i_be` what the base
-resistor takes of it, `i_sat` what just carries the load. The collector current follows the light with time constant
-`tau`, and stops at the load's current: on, it heads for (i_eff - i_be)/i_sat times the load current; off, for
--i_be/i_sat times it. Each limit on one logarithm has its inverse here, linear in what the resistors contribute.
+Drive and load are LED currents (see the package glossary): `i_eff` the light, `i_be` what the base resistor takes of
+it. The swing is cut at a few levels x, shares of the load current j_s from 0 (output at rest) to 1 (output at its end).
+At each level the sheet's CTR curve gives the LED current i(x) that carries x*j_s, and `base_charge` the charge q(x) in
+the base. Between two levels the charge is taken as linear in i, so a step from a to b lasts, turning on with
+n = i_eff - i_be,
+
+    tau*ln[(n - i_a)/(n - i_b)],   tau = (q_b - q_a)/(eta*(i_b - i_a)) + r_load*c_load
+
+and turning off tau*ln[(i_b + i_be)/(i_a + i_be)]. One step and a constant gain make the textbook formulas: 10 to 90 %
+in tau*ln[(n - 0.1*i_sat)/(n - 0.9*i_sat)], and tau*ln 9 off without a base resistor. A sum of steps still depends on
+light and base resistor through n or i_be alone, so a limit on it is one number for each load value, found by Newton's
+method: `drive_for_edge_on`, `drive_for_crossing_on`, `extraction_for`.
+
+Compared with circuit simulation of 1,800 random circuits over 26 device models: see tests/reference.
 """
 
 from __future__ import annotations
 
+from dataclasses import dataclass
+from typing import Any
+
 import numpy as np
 
+from optopick.coupler import Transfer
+from optopick.physics.charge import FIRST, Base, Load, base_charge, base_voltage
+from optopick.physics.transfer import led_current_for
 from optopick.physics.types import Array, Real
+
+Index = tuple[Any, ...]
+"""Whatever numpy takes as an index over the loads."""
 
 LN9 = float(np.log(9.0))
 """10 to 90 % of an exponential, in time constants: ln 9 = 2.197."""
 
-MOST_CONSTANTS = 50.0
-"""Time constants after which an exponential counts as over."""
+STEPS = 3
+"""Steps of an edge or of a delay: 12 differ from 3 by about 2 %, 1 by 8 %."""
+
+ITERATIONS, CONVERGED = 30, 1e-13
+"""Of Newton's method: the most, and the share of the time asked at which it stops."""
+
+SAFE, LEAST_RISE = 1.0 + 1e-11, 1e-13
+"""Factor that keeps a result of Newton's method on the safe side; least drive beyond the highest level [1]."""
 
 
-def time_constant(tau_0: Real, c_m: Real, gain: Real, r_load: Real, c_load: Real) -> Array:
-    """Time constant of the collector current [s]: gain*(tau_0 + r_load*c_m) + r_load*c_load.
+@dataclass(frozen=True)
+class Cut:
+    """Where the swing is cut: from share `first` to share `last` [1], ascending, in `count` steps of equal ratio."""
 
-    tau_0 [s], c_m [F]: the typical unit's, both proportional to its current gain; gain: this unit's gain over the
-    typical one's [1]; r_load [ohm]; c_load [F]. Broadcasts.
+    first: Real
+    last: Real
+    count: int
+
+
+EDGE, FIRST_TENTH = Cut(0.1, 0.9, STEPS), Cut(0.9, 1.0, 1)
+
+
+@dataclass(frozen=True)
+class Steps:
+    """Steps from one level to the next, on the first axis.
+
+    tau: time constants [s]; i_low, i_high: LED currents of the lower and the upper level [A]; hold: base-emitter
+    voltage over v_be [1]; least: the least time of each turning off, that of the output node alone [s]. Without that
+    axis: lag, what the load capacitance adds to the base's charge, as LED current times time squared [A s2].
     """
-    r = np.asarray(r_load)
-    return np.asarray(np.asarray(gain) * (np.asarray(tau_0) + r * c_m) + r * c_load)
+
+    tau: Array
+    i_low: Array
+    i_high: Array
+    hold: Array
+    least: Array
+    lag: Array
+
+    def at(self, index: Index) -> Steps:
+        """The steps of some of the loads, by an index behind the steps' own axis."""
+        along = (slice(None), *index)
+        return Steps(
+            tau=self.tau[along],
+            i_low=self.i_low[along],
+            i_high=self.i_high[along],
+            hold=self.hold[along],
+            least=self.least[along],
+            lag=self.lag[index],
+        )
+
+    def taken(self, values: Array) -> Steps:
+        """The steps of some of the values on the last axis."""
+        return self.at((..., values))
 
 
-def edge_on(tau: Real, i_eff: Real, i_be: Real, i_sat: Real) -> Array:
-    """10 to 90 % of the swing as the LED lights [s]: tau*ln[(n - 0.1*i_sat)/(n - 0.9*i_sat)], n = i_eff - i_be.
+def steps(base: Base, load: Load, transfer: Transfer, carried: Real, cut: Cut) -> Steps:
+    """Steps of a swing; carried: CTR at the test current times h [1].
 
-    Where the drive does not saturate the output, 10 to 90 % of the swing it does make: tau*ln 9. Infinite where
-    n <= 0: the output does not move. Broadcasts.
+    Where the CTR curve does not reach the highest level the time constants are infinite, and so is every time.
+    Broadcasts; the steps lie on a new first axis.
     """
-    n, s = np.asarray(i_eff) - i_be, np.asarray(i_sat)
-    saturates = n > s
-    safe = np.where(saturates, n, 2.0 * s)
-    time = np.where(saturates, np.log((safe - 0.1 * s) / (safe - 0.9 * s)), LN9)
-    return np.asarray(np.where(n > 0, tau * time, np.inf))
+    x = _levels(cut, np.asarray(load.j_s * np.asarray(carried)).ndim)
+    i = led_current_for(transfer, carried, 1.0, x * load.j_s)
+    reached = np.isfinite(i[-1:])
+    i = np.where(reached, i, x * transfer.curve_i[-1])
+    q = base_charge(base, load, x) / base.eta
+    rc = np.asarray(load.r_load) * load.c_load
+    v = base_voltage(base, x * load.j_s, load.t) / base.v_be
+    shape = np.broadcast_shapes(q.shape, i.shape, rc.shape, v.shape)
+    q, i, v = (np.broadcast_to(part, shape) for part in (q, i, v))
+    return Steps(
+        tau=np.where(reached, np.diff(q, axis=0) / np.diff(i, axis=0) + rc, np.inf),
+        i_low=i[:-1],
+        i_high=i[1:],
+        hold=np.asarray((v[1:] + v[:-1]) / 2),
+        least=np.broadcast_to(rc * np.diff(np.log(x), axis=0), (shape[0] - 1, *shape[1:])),
+        lag=np.broadcast_to(_lag(base, load, cut), shape[1:]),
+    )
 
 
-def edge_off(tau: Real, i_be: Real, i_sat: Real) -> Array:
-    """10 to 90 % of the swing as the transistor lets go [s]: tau*ln[(0.9*i_sat + i_be)/(0.1*i_sat + i_be)].
+def _lag(base: Base, load: Load, cut: Cut) -> Array:
+    return np.asarray(base.transit * load.c_load * load.swing * (np.asarray(cut.last) - cut.first) / base.eta)
 
-    Without a base resistor tau*ln 9. Broadcasts.
+
+def _levels(cut: Cut, dimensions: int) -> Array:
+    """Shares of the swing on a new first axis, before `dimensions` others."""
+    first, last = np.asarray(cut.first, dtype=float), np.asarray(cut.last, dtype=float)
+    share = np.linspace(0.0, 1.0, cut.count + 1).reshape(-1, *(1,) * max(dimensions, first.ndim, last.ndim))
+    return np.asarray(first * (last / first) ** share)
+
+
+def time_on(s: Steps, n: Real) -> Array:
+    """Time from the lowest to the highest level as the LED lights [s]: sum of tau*ln[(n - i_low)/(n - i_high)].
+
+    n = i_eff - i_be [A]. Infinite where n does not pass the highest level. Broadcasts.
     """
-    s = np.asarray(i_sat)
-    return np.asarray(tau * np.log((0.9 * s + i_be) / (0.1 * s + i_be)))
+    n, last = np.asarray(n, dtype=float), s.i_high[-1]
+    passes = n > last
+    safe = np.where(passes, n, 2.0 * last)
+    time = np.sum(s.tau * np.log((safe - s.i_low) / (safe - s.i_high)), axis=0)
+    return np.asarray(np.where(passes, time, np.inf))
 
 
-def storage(tau_s: Real, i_eff: Real, i_be: Real, i_sat: Real) -> Array:
-    """Time the output stays on after the LED is dark [s]: tau_s*ln[i_eff/(i_sat + i_be)], at least 0. Broadcasts."""
-    return np.asarray(tau_s * np.log(np.maximum(np.asarray(i_eff) / (np.asarray(i_sat) + i_be), 1.0)))
+def time_off(s: Steps, i_be: Real) -> Array:
+    """Time from the highest to the lowest level as the transistor lets go [s].
+
+    Sum of max(tau*ln[(i_high + b)/(i_low + b)], least), b = hold*i_be: however hard the base resistor pulls, the output
+    node follows no faster than its own resistor and capacitance. Broadcasts.
+    """
+    b = s.hold * np.asarray(i_be)
+    return np.asarray(np.sum(np.maximum(s.tau * np.log((s.i_high + b) / (s.i_low + b)), s.least), axis=0))
 
 
-def base_charging(c_be: Real, v_be: Real, eta: Real, i_eff: Real, i_be: Real) -> Array:
-    """Time to charge the base to conduction [s]: the photocurrent eta*i_eff into c_be with the base resistor beside it.
+def edge_on(s: Steps, n: Real, i_sat: Real) -> Array:
+    """10 to 90 % of the swing as the LED lights [s], `s` cut by EDGE: `time_on`.
 
-    -(c_be*v_be/eta)*ln(1 - i_be/i_eff)/i_be, which is c_be*v_be/(eta*i_eff) without a base resistor. c_be [F],
-    v_be [V], eta [1]. Infinite where i_be >= i_eff. Broadcasts.
+    Where the drive does not saturate the output, as long as at the edge of saturation. Infinite where n <= 0.
+    Broadcasts.
+    """
+    n = np.asarray(n, dtype=float)
+    return np.asarray(np.where(n > 0, time_on(s, np.maximum(n, i_sat)), np.inf))
+
+
+def charging(charge: Real, eta: Real, i_eff: Real, i_be: Real) -> Array:
+    """Time from rest to the level FIRST [s]: the photocurrent less the base resistor's share fills the base.
+
+    charge/(eta*i_be)*ln[i_eff/(i_eff - i_be)], which is charge/(eta*i_eff) without a base resistor. charge: of
+    `base_charge` at FIRST [C]; eta [1]. Infinite where i_be >= i_eff. Broadcasts.
     """
     i, b = np.asarray(i_eff, dtype=float), np.asarray(i_be, dtype=float)
-    share = np.clip(b / i, 0.0, 1.0 - 1e-15)
-    series = 1.0 + share / 2.0
-    stretch = np.where(share < 1e-6, series, -np.log1p(-share) / np.where(share < 1e-6, 1.0, share))
-    return np.asarray(np.where(b < i, np.asarray(c_be) * v_be / (eta * i) * stretch, np.inf))
+    share = np.clip(b / i, 1e-9, 1.0 - 1e-15)
+    time = np.asarray(charge) / (eta * i) * (-np.log1p(-share) / share)
+    return np.asarray(np.where(b < i, time, np.inf))
 
 
-def crossing_on(tau: Real, fraction: Real, i_eff: Real, i_be: Real, i_sat: Real) -> Array:
-    """Time from first conduction to `fraction` of the swing [s]: tau*ln[n/(n - fraction*i_sat)], n = i_eff - i_be.
+def crossing_on(s: Steps, n: Real) -> Array:
+    """Time from the level FIRST to a threshold as the LED lights [s], `s` cut from FIRST to the threshold.
 
-    Infinite where the output never gets there. Broadcasts.
+    The load capacitance draws c_load*swing*dx/dt more current, which takes transit times that more charge: the time
+    t' = t + lag/(n*t') solves to t/2 + sqrt(t^2/4 + lag/n), t = `time_on`. An edge from 10 to 90 % needs no such
+    term: the output already moves when it begins. Broadcasts.
     """
-    n, part = np.asarray(i_eff) - i_be, np.asarray(fraction) * i_sat
-    reaches = n > part
-    safe = np.where(reaches, n, part + 1.0)
-    return np.asarray(np.where(reaches, tau * np.log(safe / (safe - part)), np.inf))
+    t = time_on(s, n)
+    n = np.maximum(np.asarray(n, dtype=float), s.i_high[-1])
+    return np.asarray(t / 2 + np.sqrt(t * t / 4 + s.lag / n))
 
 
-def crossing_off(tau: Real, fraction: Real, i_be: Real, i_sat: Real) -> Array:
-    """Time from the end of storage until `fraction` of the swing is given back [s].
+def storage(tau_s: Real, i_eff: Real, i_be: Real, i_sat: Real, hold: Real = 1.0) -> Array:
+    """Time in saturation after the LED is dark [s]: tau_s*ln[i_eff/(i_sat + hold*i_be)], at least 0.
 
-    tau*ln[(i_sat + i_be)/((1 - fraction)*i_sat + i_be)], fraction < 1. Broadcasts.
+    hold: base-emitter voltage at the load's current over v_be [1]. The output has not moved yet when it ends: the time
+    to 10 % of the swing is this and `time_off` by FIRST_TENTH. Broadcasts.
     """
-    s = np.asarray(i_sat)
-    return np.asarray(tau * np.log((s + i_be) / ((1.0 - np.asarray(fraction)) * s + i_be)))
+    left = np.asarray(i_sat) + hold * np.asarray(i_be)
+    return np.asarray(tau_s * np.log(np.maximum(np.asarray(i_eff) / left, 1.0)))
 
 
-def drive_for_edge_on(time: float, tau: Real, i_sat: Real) -> Array:
-    """Least i_eff - i_be [A] with edge_on <= time: i_sat*(0.9*e - 0.1)/(e - 1), e = exp(time/tau); 0 where e >= 9.
+def drive_for_edge_on(s: Steps, time: Real, i_sat: Real) -> Array:
+    """Least n [A] with edge_on <= time; 0 where the edge of saturation is fast enough. Broadcasts."""
+    return np.asarray(np.where(time_on(s, i_sat) <= time, 0.0, _least_drive(s, time, 0.0)))
 
-    Broadcasts; time > 0 [s].
+
+def drive_for_crossing_on(s: Steps, time: Real) -> Array:
+    """Least n [A] with crossing_on <= time; infinite for time <= 0. Broadcasts."""
+    return _least_drive(s, time, s.lag)
+
+
+def _least_drive(s: Steps, time: Real, lag: Real) -> Array:
+    """Least n [A] with time_on + lag/(n*time) <= time, by Newton's method, never below.
+
+    The left side is convex and falls with n, so from a point too small the iterates climb to the answer. What the
+    last step alone needs, i_high + (i_high - i_low)/(exp(time/tau) - 1), is such a point.
     """
-    e = _growth(time, tau)
-    return np.asarray(np.where(e >= 9.0, 0.0, np.asarray(i_sat) * (0.9 * e - 0.1) / (e - 1.0)))
+    t, last = np.asarray(time, dtype=float), s.i_high[-1]
+    endless = np.isposinf(t)
+    possible = (t > 0) & np.isfinite(s.tau[-1])
+    t, tau = np.where(possible & ~endless, t, 1.0), np.where(possible, s.tau, 1.0)
+    width = s.i_high - s.i_low
+    n = last + np.maximum(width[-1] / np.expm1(np.minimum(t / tau[-1], 500.0)), last * LEAST_RISE)
+    for _ in range(ITERATIONS):
+        above = n - s.i_high
+        drawn = lag / (n * t)
+        late = np.maximum(np.sum(tau * np.log1p(width / above), axis=0) + drawn - t, 0.0)
+        if np.all(late <= CONVERGED * t):
+            break
+        n = n + late / (np.sum(tau * width / (above * (above + width)), axis=0) + drawn / n)
+    n = np.where(endless, last * SAFE, n * SAFE)
+    return np.asarray(np.where(possible, n, np.inf))
 
 
-def extraction_for_edge_off(time: float, tau: Real, i_sat: Real) -> Array:
-    """Least i_be [A] with edge_off <= time: i_sat*(0.9 - 0.1*e)/(e - 1), e = exp(time/tau); may be below 0.
+def extraction_for(s: Steps, time: Real) -> Array:
+    """Least i_be [A] with time_off <= time: 0 where none is needed, infinite where none is enough. Broadcasts.
+
+    By Newton's method from 0, never below: time_off is convex and falls with i_be.
+    """
+    t = np.asarray(time, dtype=float)
+    possible = (t > np.sum(s.least, axis=0)) & np.isfinite(s.tau[-1])
+    tau = np.where(possible, s.tau, 1.0)
+    i_be = np.zeros(np.broadcast_shapes(possible.shape, s.i_low.shape[1:]))
+    for _ in range(ITERATIONS):
+        low, high = s.i_low + s.hold * i_be, s.i_high + s.hold * i_be
+        step = tau * np.log(high / low)
+        late = np.where(possible, np.maximum(np.sum(np.maximum(step, s.least), axis=0) - t, 0.0), 0.0)
+        if np.all(late <= CONVERGED * np.abs(t)):
+            break
+        slope = np.sum(np.where(step > s.least, tau * s.hold * (high - low) / (low * high), 0.0), axis=0)
+        i_be = i_be + late / np.where(slope > 0, slope, np.inf)
+    return np.asarray(np.where(time_off(s, 0.0) <= t, 0.0, np.where(possible, i_be * SAFE, np.inf)))
+
+
+@dataclass(frozen=True)
+class Swing:
+    """All that the load brings to the times of one output.
+
+    edge: steps from 10 to 90 %; on: from FIRST to the receiver's threshold; off: the part of the swing given back until
+    its other threshold; charge: of the base at FIRST [C]; hold: base-emitter voltage at the load's current over v_be
+    [1]; i_sat: LED current that carries the load [A], the curve's last where it does not reach.
+    """
+
+    edge: Steps
+    on: Steps
+    off: Steps
+    charge: Array
+    hold: Array
+    i_sat: Array
+
+    def at(self, index: Index) -> Swing:
+        """Some of the loads, by an index behind the steps' own axis."""
+        return Swing(
+            edge=self.edge.at(index),
+            on=self.on.at(index),
+            off=self.off.at(index),
+            charge=self.charge[index],
+            hold=self.hold[index],
+            i_sat=self.i_sat[index],
+        )
+
+    def taken(self, values: Array) -> Swing:
+        """Some of the values on the last axis."""
+        return self.at((..., values))
+
+
+def swing(base: Base, load: Load, transfer: Transfer, carried: Real, on: Real, off: Real) -> Swing:
+    """The swing of a load; on, off: shares of it from rest to the receiver's thresholds, turning on and off [1].
 
     Broadcasts.
     """
-    e = _growth(time, tau)
-    return np.asarray(np.asarray(i_sat) * (0.9 - 0.1 * e) / (e - 1.0))
+    i_sat = led_current_for(transfer, carried, 1.0, load.j_s)
+    kept = np.clip(1.0 - np.asarray(off), 1e-4, 0.9999)
+    reach = np.clip(on, 1.0001 * FIRST, 0.9999)
+    edge = steps(base, load, transfer, carried, EDGE)
+    shape = edge.lag.shape
+    return Swing(
+        edge=edge,
+        on=steps(base, load, transfer, carried, Cut(FIRST, reach, STEPS)),
+        off=steps(base, load, transfer, carried, Cut(kept, 1.0, STEPS)),
+        charge=np.broadcast_to(base_charge(base, load, FIRST), shape),
+        hold=np.broadcast_to(base_voltage(base, load.j_s, load.t) / base.v_be, shape),
+        i_sat=np.broadcast_to(np.minimum(i_sat, transfer.curve_i[-1]), shape),
+    )
 
 
-def drive_for_crossing_on(time: Real, tau: Real, fraction: Real, i_sat: Real) -> Array:
-    """Least i_eff - i_be [A] with crossing_on <= time: fraction*i_sat*e/(e - 1), e = exp(time/tau).
-
-    Infinite for time <= 0. Broadcasts.
-    """
-    t = np.asarray(time, dtype=float)
-    e = _growth(t, tau)
-    return np.asarray(np.where(t > 0, np.asarray(fraction) * i_sat * e / (e - 1.0), np.inf))
+def delay_on(s: Swing, eta: Real, i_eff: Real, i_be: Real) -> Array:
+    """LED lit to the receiver's threshold [s]: `charging`, then `crossing_on`. Broadcasts."""
+    return charging(s.charge, eta, i_eff, i_be) + crossing_on(s.on, np.asarray(i_eff) - i_be)
 
 
-def extraction_for_crossing_off(time: Real, tau: Real, fraction: Real, i_sat: Real) -> Array:
-    """Least i_be [A] with crossing_off <= time: i_sat*(1 - (1 - fraction)*e)/(e - 1); inf for time <= 0. Broadcasts."""
-    t = np.asarray(time, dtype=float)
-    e = _growth(t, tau)
-    return np.asarray(np.where(t > 0, np.asarray(i_sat) * (1.0 - (1.0 - np.asarray(fraction)) * e) / (e - 1.0), np.inf))
-
-
-def _growth(time: Real, tau: Real) -> Array:
-    """exp(time/tau), kept off 1 and off overflow: an endless tau asks for a drive beyond any, an endless time for none."""
-    endless = np.isinf(time)
-    ratio = np.where(endless, MOST_CONSTANTS, np.where(endless, 0.0, time) / np.asarray(tau))
-    return np.asarray(np.exp(np.clip(ratio, 1e-12, MOST_CONSTANTS)))
+def delay_off(s: Swing, tau_s: Real, i_eff: Real, i_be: Real) -> Array:
+    """LED dark to the receiver's threshold [s]: `storage`, then `time_off`. Broadcasts."""
+    return storage(tau_s, i_eff, i_be, s.i_sat, s.hold) + time_off(s.off, i_be)

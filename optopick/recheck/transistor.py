@@ -10,6 +10,7 @@ from optopick.brief import Brief, OutputCircuit
 from optopick.corners import thresholds
 from optopick.coupler import Coupler, Transfer, Transistor
 from optopick.physics import switching
+from optopick.physics.charge import Base, Load
 from optopick.physics.heat import derated, output_dissipation, resistor_derated
 from optopick.physics.leakage import dark_current, dark_current_held
 from optopick.physics.saturation import load_current, rise_with_current, v_ce_on
@@ -194,28 +195,33 @@ def rating_checks(
 
 
 def times(brief: Brief, coupler: Coupler, box: Vertices, s: Stage) -> Times:
-    """Edges, storage and delays at every vertex, without guard [s]."""
+    """Edges, storage and delays at every vertex, without guard [s]; storage lasts until 10 % of the swing, as in sheets."""
     transfer, transistor = parts_of(coupler)
-    reachable = np.isfinite(s.i_sat)
-    i_sat = np.where(reachable, s.i_sat, transfer.curve_i[-1])
-    gain = s.h_fe * relative_ctr(transfer, i_sat) / transistor.h_fe
-    tau = switching.time_constant(transistor.tau_0, transistor.c_m, gain, box.r_load, brief.output.capacitance)
-    tau = np.asarray(np.where(reachable, tau, np.inf))
-    on, off = _fractions(brief, transistor, box, s)
-    held = switching.storage(transistor.tau_s, s.i_eff, s.i_be, i_sat)
-    charge = switching.base_charging(transistor.c_be, s.v_be, s.eta, s.i_eff, s.i_be)
-    delay_on = charge + switching.crossing_on(tau, on, s.i_eff, s.i_be, i_sat)
-    delay_off = held + switching.crossing_off(tau, off, s.i_be, i_sat)
+    base, load = _charged(brief, transistor, box, s)
+    carried = box.ctr * s.h
+    swung = switching.swing(base, load, transfer, carried, *_fractions(brief, transistor, box, s))
+    tenth = switching.steps(base, load, transfer, carried, switching.FIRST_TENTH)
+    delay_on = switching.delay_on(swung, s.eta, s.i_eff, s.i_be)
+    delay_off = switching.delay_off(swung, transistor.tau_s, s.i_eff, s.i_be)
     with np.errstate(invalid="ignore"):
         distortion = np.nan_to_num(np.abs(delay_off - delay_on), nan=np.inf, posinf=np.inf)
+    held = switching.storage(transistor.tau_s, s.i_eff, s.i_be, swung.i_sat, swung.hold)
     return Times(
-        edge_on=switching.edge_on(tau, s.i_eff, s.i_be, i_sat),
-        edge_off=switching.edge_off(tau, s.i_be, i_sat),
-        storage=held,
+        edge_on=switching.edge_on(swung.edge, s.i_eff - s.i_be, swung.i_sat),
+        edge_off=switching.time_off(swung.edge, s.i_be),
+        storage=held + switching.time_off(tenth, s.i_be),
         delay_on=delay_on,
         delay_off=delay_off,
         distortion=distortion,
     )
+
+
+def _charged(brief: Brief, transistor: Transistor, box: Vertices, s: Stage) -> tuple[Base, Load]:
+    """Base and load of the switching formulas at every vertex."""
+    gain = transistor.h_fe
+    base = Base(transistor.tau_0 / gain, transistor.c_m / gain, transistor.c_be, s.v_be, s.eta)
+    swing = box.v_cc - transistor.v_ce_sat
+    return base, Load(s.j_s, box.v_cc, swing, box.r_load, brief.output.capacitance, box.t)
 
 
 def _fractions(brief: Brief, transistor: Transistor, box: Vertices, s: Stage) -> tuple[Array, Array]:

@@ -29,7 +29,7 @@ from optopick.simulate.transient import Run, input_resistance
 DRIVE_EDGE = 1e-9
 """Rise and fall of the drive [s]."""
 
-FINENESS = 25
+FINENESS = 50
 """Steps at least within the shortest of the times measured, and ..."""
 
 MOST_STEPS = 20_000

@@ -20,6 +20,9 @@ from optopick.result import Check
 MOST_POINTS = 1200
 """Points of a curve beyond which neighbours are drawn as their lowest and highest."""
 
+WIDE = 8.0
+"""Largest over smallest value from which on a front's scale is logarithmic."""
+
 BAR_LOW, BAR_HIGH = -0.25, 1.0
 """Room that a margin bar can show [1]; what lies beyond ends at its edge."""
 
@@ -77,7 +80,7 @@ def front_plot(front: Front, chosen: int | None) -> Markup:
     """
     units = [goal_unit(goal) for goal in front.goals]
     points = [(point.first, point.second) for point in front.points]
-    x, y = (scale_over((at[k] for at in points), units[k], room=0.08) for k in (0, 1))
+    x, y = (_goal_scale([at[k] for at in points], units[k]) for k in (0, 1))
     names = [f"{goal.value}, worst case" for goal in front.goals]
     frame = Frame(x, f"{names[0]} →", y, f"↑ {names[1]}")
     drawn = [frame.line(_steps(points), series_class(0))] if front.complete else []
@@ -86,6 +89,11 @@ def front_plot(front: Front, chosen: int | None) -> Markup:
         drawn += [frame.mark(*points[chosen], "ring", 9.0), _beside(frame, points[chosen], "this design")]
     told = f"{len(points)} designs from {amount(points[0][0], units[0])} to {amount(points[-1][0], units[0])}."
     return frame.drawn(f"{names[1]} against {names[0]}", told, *drawn)
+
+
+def _goal_scale(values: Sequence[float], unit: str) -> Scale:
+    """A scale for one goal of a front, logarithmic where the values lie far apart."""
+    return scale_over(values, unit, log=max(values) > WIDE * min(values) > 0, room=0.08)
 
 
 def _steps(points: Sequence[Point]) -> list[Point]:
@@ -143,7 +151,10 @@ def waveform_plot(wave: Waveform) -> Markup:
     """Voltages over time, when the LED is lit, and the bits that were sent."""
     across = Scale(wave.time[0], wave.time[-1], "s")
     values = [value for trace in wave.traces for value in trace.values] + [level.value for level in wave.levels]
-    frame = Frame(across, "time →", scale_over(values, "V", room=0.12), "↑ voltage")
+    up = scale_over(values, "V", room=0.12)
+    # further down there is the band that tells when the LED is lit
+    below = 0.2 * (up.high - up.low) if wave.lit else 0.0
+    frame = Frame(across, "time →", Scale(up.low - below, up.high, "V"), "↑ voltage")
     drawn = [frame.level(level.name, level.value) for level in wave.levels]
     drawn += [frame.line(thinned(wave.time, trace.values), series_class(k)) for k, trace in enumerate(wave.traces)]
     drawn += _lit(frame, wave) + _bits(frame, wave)

@@ -6,6 +6,7 @@ and all text are added here. Resistors are the rectangles of IEC 60617.
 
 from __future__ import annotations
 
+import re
 import sys
 from collections.abc import Callable, Iterator, Sequence
 from contextlib import contextmanager
@@ -20,7 +21,7 @@ from markupsafe import Markup
 from optopick.brief import Brief, DriveCircuit, OutputCircuit, Span
 from optopick.coupler import Coupler, Kind
 from optopick.report.placed import Placed, placed_resistors
-from optopick.report.svg import Point, element, picture, text
+from optopick.report.svg import Point, element, picture, short, text
 from optopick.report.words import amount
 from optopick.result import Design
 
@@ -28,8 +29,8 @@ UNIT = 36.0
 """Pixels to one unit of schemdraw: half an inch at 72 to the inch."""
 
 WIDTH, HEIGHT = 560.0, 452.0
-EXTRA_ROOM = 24.0
-"""Room at the left that the words of a part across the LED need; two such parts need twice as much and more."""
+SHUNT_ROOM, DIODE_ROOM = 24.0, 66.0
+"""Room at the left for the words of a resistor across the LED, and for a diode beside that."""
 
 MOST_DRAWN = 3
 """Resistors in series that are drawn one by one; the words always say how many there are."""
@@ -40,6 +41,7 @@ RAIL, RETURN = 74.0, 346.0
 PACKAGE = (128.0, 188.0, 276.0, 96.0)
 """Left, top, width and height of the coupler's outline."""
 
+_NUMBER = re.compile(r"-?\d+\.?\d*(?:e-?\d+)?")
 _SHAPES = {"path", "polygon", "polyline", "circle", "ellipse", "rect"}
 
 
@@ -91,7 +93,7 @@ def schematic_svg(brief: Brief, coupler: Coupler, design: Design) -> str:
         _transistor(sheet, coupler)
         side = _pulled_up if brief.output.circuit is OutputCircuit.PULL_UP else _emitter_load
         side(sheet, brief, placed)
-    left = EXTRA_ROOM * (("r_shunt" in placed) + 1.4 * design.reverse_diode)
+    left = (SHUNT_ROOM + DIODE_ROOM * design.reverse_diode) if "r_shunt" in placed else 0.0
     shapes = Markup("").join(_shapes(sheet.drawing.get_imagedata("svg")))
     return picture(
         "Schematic",
@@ -136,7 +138,8 @@ def _shapes(data: bytes) -> Iterator[Markup]:
         if name in _SHAPES:
             style = node.attrib.pop("style", "")
             filled = "fill:none" not in style
-            yield element(name, class_="filled" if filled else "outline", **node.attrib)
+            places = {key: _NUMBER.sub(lambda found: short(float(found[0])), value) for key, value in node.attrib.items()}
+            yield element(name, class_="filled" if filled else "outline", **places)
 
 
 def _name(symbol: str) -> Markup:
@@ -227,7 +230,7 @@ def _led_side(sheet: _Sheet, placed: dict[str, Placed], design: Design) -> None:
         _across(sheet, 108.0, sheet.symbols.ResistorIEC().scale(1.2))
         _resistor_words(sheet, (92.0, MIDDLE - 16), placed["r_shunt"], "end")
     if design.reverse_diode:
-        x = -12.0 if "r_shunt" in placed else 108.0
+        x = -26.0 if "r_shunt" in placed else 108.0
         _across(sheet, x, sheet.symbols.Diode().scale(1.2), upward=True)
         sheet.say((x - 16, MIDDLE - 6), *(("diode",) if "r_shunt" in placed else ("reverse", "diode")), class_="small", anchor="end")
 

@@ -89,9 +89,8 @@ def _lights(timing: Timing, swing: Swing) -> _Turn:
 
 def _goes_dark(timing: Timing, swing: Swing) -> _Turn:
     whole, at = timing.edge_off / 0.8, timing.delay_off
-    held = min(timing.storage, at)
-    begin = min(max(at - swing.off * whole, held), at)
-    course = ((held, 0.0), (begin, 0.0), (at, swing.off), (at + (1 - swing.off) * whole, 1.0))
+    begin = max(at - swing.off * whole, 0.0)
+    course = ((begin, 0.0), (at, swing.off), (at + (1 - swing.off) * whole, 1.0))
     edge = at + (0.1 - swing.off) * whole
     dimensions = (
         (TIMES["delay_off"], 0.0, at),

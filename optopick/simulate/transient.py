@@ -245,7 +245,7 @@ def _stretch(d: Device, c: Circuit, phase: Phase, start: tuple[float, float], t:
     between: list[DenseOutput[np.float64]] = []
     while ts[-1] < until and not settled(states[-1]):
         if solver.step() is not None or len(ts) > MOST_STEPS or (endless and solver.t >= until):
-            raise NotSimulatedError("the output does not settle")
+            raise NotSimulatedError("the output does not settle: the LED hardly lights")
         ts.append(float(solver.t))
         states.append(solver.y.copy())
         between.append(solver.dense_output())
