@@ -136,7 +136,7 @@ class Why:
 
 @dataclass(frozen=True)
 class Passing:
-    """One check over all samples: how many pass, the least margin, and counts of the margin in equal bins from -1 to 3."""
+    """One check over all samples: how many pass, counts of the margin in equal bins from -1 to 3, the least margin."""
 
     check: str
     passed: int

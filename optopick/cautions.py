@@ -21,7 +21,7 @@ def cautions(brief: Brief) -> tuple[str, ...]:
     said = [FUNCTION_ONLY]
     if brief.drive.circuit is DriveCircuit.FIELD and brief.drive.supply.high > HAZARDOUS_PEAK:
         said.append(
-            f"The field input goes to {brief.drive.supply.high:g} V: above 30 V rms, 42.4 V peak or 60 V DC a voltage is "
-            "hazardous to touch."
+            f"The field input goes to {brief.drive.supply.high:g} V: above 30 V rms, 42.4 V peak or 60 V DC a voltage "
+            "is hazardous to touch."
         )
     return tuple(said)

@@ -38,7 +38,9 @@ class Rating:
 
 @dataclass(frozen=True)
 class Led:
-    """LED: V_F min/typ/max [V] at i_ref [A] and 25 degC; emission coefficient n [1]; series resistance r_s [ohm];
+    """The LED.
+
+    V_F min/typ/max [V] at i_ref [A] and 25 degC; emission coefficient n [1]; series resistance r_s [ohm];
     drift of V_F [V/K]; ratings of current [A] and power [W]; reverse limit [V].
     """
 
@@ -56,7 +58,9 @@ class Led:
 
 @dataclass(frozen=True)
 class Transfer:
-    """CTR bin [1] at i_ref [A] and 25 degC; its relative curve over LED current (ascending [A], [1], 1 at i_ref) and
+    """From LED to collector current.
+
+    CTR bin [1] at i_ref [A] and 25 degC; its relative curve over LED current (ascending [A], [1], 1 at i_ref) and
     over temperature (ascending [degC], [1], 1 at 25 degC); drift of the LED's light [1/K], negative.
     """
 
@@ -78,7 +82,8 @@ class Transistor:
     given CTR lies within h_fe*(ctr/ctr_mid)*[1/spread, spread]. v_be [V], v_be_tc [V/K].
     v_ce_sat [V] max at sat_i_f, sat_i_c [A]; beta_r [1] reverse gain. i_c_max [A], v_ceo [V].
     i_ceo_1, i_ceo_2 [A] max at t_1, t_2 [degC]. c_be [F] charged before conduction.
-    tau_0 [s], c_m [F], tau_s [s]: switching constants of a typical unit, gain h_fe.
+    tau_0 [s], c_m [F], tau_s [s]: switching constants of a typical unit, gain h_fe: h_fe times the transit time, h_fe
+    times the collector-base capacitance at 0 V, and the storage constant.
     """
 
     h_fe: float
@@ -128,7 +133,9 @@ class Logic:
 
 @dataclass(frozen=True)
 class Ageing:
-    """LED wear: `loss` [1] of the light after `time` [h] at `current` [A] and `temperature` [degC]; exponent n [1] of
+    """LED wear.
+
+    `loss` [1] of the light after `time` [h] at `current` [A] and `temperature` [degC]; exponent n [1] of
     current and activation energy e_a [eV] of the acceleration factor.
     """
 
@@ -142,7 +149,7 @@ class Ageing:
 
 @dataclass(frozen=True)
 class Barrier:
-    """Isolation: withstand [V rms, 1 min], working [V], creepage [m]; None where the table has no figure; class as text."""
+    """Isolation: withstand [V rms, 1 min], working [V], creepage [m]; None where the table is silent; class as text."""
 
     withstand: float | None
     working: float | None

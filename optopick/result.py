@@ -38,9 +38,7 @@ class Design:
 
 @dataclass(frozen=True)
 class Check:
-    """One requirement at its worst corner. `sense` is "<=" or ">=". `margin`: the room left over the limit [1],
-    negative where the check fails (the plain difference where the limit is zero).
-    """
+    """One requirement at its worst corner; `sense` is "<=" or ">="."""
 
     name: str
     value: float
@@ -51,7 +49,7 @@ class Check:
 
     @property
     def margin(self) -> float:
-        """Room left, relative to the limit [1]."""
+        """Room left over the limit, negative where the check fails [1]; the plain difference where the limit is 0."""
         room = self.limit - self.value if self.sense == "<=" else self.value - self.limit
         return room / abs(self.limit) if self.limit else room
 

@@ -93,9 +93,8 @@ def keys_table() -> str:
     for section in brief_sections():
         title = f"`[{section.name}]`" if section.name else "Above the first section"
         needed = " Required." if section.required else ""
-        parts.append(
-            f"\n**{title}** {section.meaning}{needed}\n\n| key | meaning | example | where absent |\n|---|---|---|---|\n"
-        )
+        parts.append(f"\n**{title}** {section.meaning}{needed}\n\n")
+        parts.append("| key | meaning | example | where absent |\n|---|---|---|---|\n")
         parts += [_row(key) for key in section.keys]
     return "".join(parts) + "\n"
 

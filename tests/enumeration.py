@@ -1,8 +1,8 @@
 """Full enumeration: every combination in stock at every vertex of the uncertainty box, without model or solver.
 
-The yardstick for the optimiser. Formulas come from `oracle_led` and `oracle_output`; here are the loops. Axes of the
-arrays: ends of r_load, ends of r_be, rows of light, combinations; the remaining vertices (temperature, CTR, light of
-the LED, output supply) are looped over.
+The yardstick for the optimiser. Formulas come from `oracle_led`, `oracle_output` and `oracle_times`; here are the
+loops. Axes of the arrays: ends of r_load, ends of r_be, rows of light, combinations; the remaining vertices
+(temperature, CTR, light of the LED, output supply) are looped over.
 
 `every_vertex`: all values of light that the LED's side can have go into the output's formulas. Without it only the
 least and the largest at each temperature do, and V_CE(on) is compared with its limit instead of being solved for; a
@@ -19,6 +19,7 @@ from typing import NamedTuple
 import numpy as np
 import oracle_led as led_side
 import oracle_output as out
+import oracle_times
 from oracle_led import Held, Worn
 
 from optopick.brief import Brief, Position, Span
@@ -357,8 +358,10 @@ class Trial:
         worst_of(self.rooms, held, len(i))
 
     def _timing(self, x: out.Lot, i: np.ndarray, j: np.ndarray, m: np.ndarray) -> None:
-        light, _, r_load, r_be = self._ends(x, i, j, m)
-        held, goals = out.timing_checks(self.brief, out.times(self.brief, self.coupler, x, light, r_load, r_be))
+        light, _, _, r_be = self._ends(x, i, j, m)
+        swing = oracle_times.swing(self.brief, self.coupler, x, self.load.ends[float(x.t)][:, None, None, :]).taken(j)
+        times = oracle_times.times(self.coupler, x, swing, light, r_be)
+        held, goals = oracle_times.timing_checks(self.brief, times)
         worst_of(self.rooms, held, len(i))
         for name, goal in goals.items():
             most = goal.max(axis=(0, 1, 2))

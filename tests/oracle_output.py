@@ -6,7 +6,6 @@ CTR by power laws between the table's points, V_CE(on) by bisection on the load 
 from __future__ import annotations
 
 from dataclasses import dataclass
-from typing import NamedTuple
 
 import numpy as np
 from oracle_led import K_OVER_Q, KELVIN, Held, Worn, above, below, chip_share, rating
@@ -193,77 +192,6 @@ def level_off(brief: Brief, coupler: Coupler, x: Lot, i_off, r_load, r_be) -> tu
     if pulled_up(brief):
         return "output_high", above(x.v_cc - lift, x.v_ih + brief.output.noise_margin)
     return "output_low", below(lift, x.v_il - brief.output.noise_margin)
-
-
-class Times(NamedTuple):
-    """Times [s], without guard."""
-
-    edge_on: np.ndarray
-    edge_off: np.ndarray
-    storage: np.ndarray
-    delay_on: np.ndarray
-    delay_off: np.ndarray
-
-
-def times(brief: Brief, coupler: Coupler, x: Lot, i_eff, r_load, r_be) -> Times:
-    """Charge control: the collector current heads exponentially for what light and base resistor leave it."""
-    transfer, transistor = coupler.transfer, coupler.transistor
-    s = needed(transfer, x.ctr, x.h, load_of(brief, coupler, x, r_load))
-    never = np.isinf(s)
-    s = np.where(never, transfer.curve_i[-1], s)
-    gain = x.h_fe * relative(transfer, s) / transistor.h_fe
-    tau = gain * (transistor.tau_0 + r_load * transistor.c_m) + r_load * brief.output.capacitance
-    tau = np.where(never, np.inf, tau)
-    b = base_taken(x, r_be)
-    n = i_eff - b
-    on, off = fractions(brief, coupler, x)
-    held = transistor.tau_s * np.log(np.maximum(i_eff / (s + b), 1.0))
-    rise = np.where(n > s, np.log((n - 0.1 * s) / (n - 0.9 * s)), np.log(0.9 / 0.1))
-    crossing = np.where(n > on * s, -np.log1p(-on * s / n), np.inf)
-    charge = base_charging(transistor.c_be, x, i_eff, r_be)
-    return Times(
-        np.where(n > 0, tau * rise, np.inf),
-        tau * np.log((0.9 * s + b) / (0.1 * s + b)),
-        held,
-        charge + tau * crossing,
-        held + tau * np.log((s + b) / (s - off * s + b)),
-    )
-
-
-def fractions(brief: Brief, coupler: Coupler, x: Lot) -> tuple[np.ndarray, np.ndarray]:
-    """Shares of the swing at which the receiver has surely seen the change, lighting up and going dark."""
-    v_ce_sat = coupler.transistor.v_ce_sat
-    swing = x.v_cc - v_ce_sat
-    if pulled_up(brief):
-        on, off = x.v_cc - x.v_il, x.v_ih - v_ce_sat
-    else:
-        on, off = x.v_ih, swing - x.v_il
-    return np.maximum(on / swing, 0.0), np.clip(off / swing, 0.0, 1.0 - 1e-9)
-
-
-def base_charging(c_be: float, x: Lot, i_eff, r_be) -> np.ndarray:
-    """Time until a photocurrent into the base capacitance and the base resistor beside it has made V_BE."""
-    photo = x.eta * i_eff
-    share = np.where(np.isinf(r_be), 0.0, x.v_be / (photo * r_be))
-    alone = c_be * x.v_be / photo
-    stretched = np.where(share > 0, -np.log1p(-np.minimum(share, 1 - 1e-15)) / np.where(share > 0, share, 1.0), 1.0)
-    return np.where(share < 1, alone * stretched, np.inf)
-
-
-def timing_checks(brief: Brief, x: Times) -> tuple[dict[str, Held], dict[str, np.ndarray]]:
-    """The checks on times, and the three goals that are times; guard included."""
-    guard, limits = brief.limits.timing_guard, brief.limits
-    skew = np.abs(x.delay_off - x.delay_on)
-    goals = {
-        "edge time": guard * np.maximum(x.edge_on, x.edge_off),
-        "delay": guard * np.maximum(x.delay_on, x.delay_off),
-        "distortion": guard * np.where(np.isnan(skew), np.inf, skew),
-    }
-    held = {"shortest_pulse": below(goals["delay"], brief.signal.shortest_pulse)}
-    for name, limit in (("edge_time", limits.edge_time), ("delay", limits.delay), ("distortion", limits.distortion)):
-        if limit is not None:
-            held[name] = below(goals[name.replace("_", " ")], limit)
-    return held, goals
 
 
 def barrier_checks(brief: Brief, coupler: Coupler) -> dict[str, Held]:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from pathlib import Path
 
 import numpy as np
@@ -23,7 +24,7 @@ from optopick.brief import (
     Span,
     Stock,
 )
-from optopick.coupler import Ageing, Barrier, Coupler, Kind, Led, Rating, Transfer, Transistor
+from optopick.coupler import Ageing, Barrier, Coupler, Kind, Led, Logic, Rating, Transfer, Transistor
 from optopick.eseries import series_values
 
 
@@ -139,3 +140,134 @@ def brief(rng: np.random.Generator, series: str = "E12", circuit: OutputCircuit 
         couplers=CouplerChoice(Path("none.csv"), None, 1),
         goal=Goal(first, second, float(rng.choice([0.0, 0.02, 0.1]))),
     )
+
+
+# ---- other kinds of coupler -----------------------------------------------------------------------------------------
+
+
+def darlington(rng: np.random.Generator, part: str = "RND-D") -> Coupler:
+    """A random photodarlington: two junctions, gain in the thousands, slow."""
+    plain = coupler(rng, part)
+    ctr_min = float(rng.choice([6.0, 10.0, 20.0]))
+    h_fe = float(rng.uniform(3e3, 15e3))
+    transit, c_cb = float(rng.uniform(2e-9, 7e-9)), float(rng.uniform(2e-12, 10e-12))
+    curve_g = (float(rng.uniform(0.15, 0.4)), float(rng.uniform(0.6, 0.8)), 1.0, 1.1, float(rng.uniform(0.7, 0.9)))
+    return replace(
+        plain,
+        kind=Kind.DARLINGTON,
+        base_pin=bool(rng.random() < 0.3),
+        transfer=Transfer(
+            ctr_min=ctr_min,
+            ctr_max=ctr_min * float(rng.uniform(1.8, 5)),
+            i_ref=1e-3,
+            curve_i=(0.05e-3, 0.3e-3, 1e-3, 3e-3, 20e-3),
+            curve_g=curve_g,
+            curve_t=plain.transfer.curve_t,
+            curve_h=(float(rng.uniform(0.5, 0.8)), 1.0, float(rng.uniform(0.65, 0.95))),
+            light_tc=-0.005,
+        ),
+        transistor=replace(
+            plain.transistor,
+            h_fe=h_fe,
+            v_be=1.3,
+            v_be_tc=-4e-3,
+            v_ce_sat=float(rng.uniform(0.7, 1.1)),
+            sat_i_f=5e-3,
+            sat_i_c=float(rng.uniform(2e-3, 8e-3)),
+            v_ceo=float(rng.choice([30, 60])),
+            i_ceo_1=100e-9,
+            i_ceo_2=float(rng.uniform(10e-6, 100e-6)),
+            tau_0=h_fe * transit,
+            c_m=h_fe * c_cb,
+            tau_s=float(rng.uniform(15e-6, 60e-6)),
+        ),
+    )
+
+
+def logic(rng: np.random.Generator, part: str = "RND-L") -> Coupler:
+    """A random logic output with open collector."""
+    i_f_on = float(rng.choice([0.5e-3, 1.6e-3, 3e-3, 5e-3]))
+    v_cc_min, v_cc_max = ((3.0, 5.5), (4.5, 5.5), (4.5, 20.0), (2.7, 15.0))[int(rng.integers(4))]
+    t_phl = float(np.exp(rng.uniform(np.log(50e-9), np.log(4e-6))))
+    return replace(
+        coupler(rng, part),
+        kind=Kind.LOGIC,
+        base_pin=False,
+        p_out=Rating(0.2, 60, 3e-3),
+        p_total=Rating(0.3, 60, 4e-3),
+        ageing=Ageing(float(rng.uniform(0.03, 0.1)), 1000.0, 20e-3, 100.0, 2.0, 0.43),
+        transfer=None,
+        transistor=None,
+        logic=Logic(
+            i_f_on=i_f_on,
+            i_f_off=i_f_on * float(rng.uniform(0.05, 0.2)),
+            v_ol=float(rng.uniform(0.3, 0.6)),
+            i_ol=float(rng.choice([4e-3, 8e-3, 16e-3])),
+            i_oh=float(rng.choice([5e-6, 50e-6, 100e-6])),
+            i_cc=float(rng.uniform(1e-3, 10e-3)),
+            v_cc_min=v_cc_min,
+            v_cc_max=v_cc_max,
+            t_phl=t_phl,
+            t_plh=t_phl * float(rng.uniform(0.9, 1.4)),
+            t_r=float(rng.uniform(0.1, 0.6)) * t_phl,
+            t_f=float(rng.uniform(0.1, 0.4)) * t_phl,
+            r_l=float(rng.choice([280.0, 350.0, 1e3])),
+            c_l=15e-12,
+            c_out=float(rng.uniform(3e-12, 12e-12)),
+        ),
+    )
+
+
+def mixed_couplers(rng: np.random.Generator) -> list[Coupler]:
+    """One coupler of each kind, in random order."""
+    made = [coupler(rng, "RND-1"), darlington(rng), logic(rng)]
+    return [made[k] for k in rng.permutation(3)]
+
+
+# ---- other drives ---------------------------------------------------------------------------------------------------
+
+
+def sink_brief(rng: np.random.Generator, series: str = "E12", circuit: OutputCircuit | None = None) -> Brief:
+    """A random brief whose pin lights the LED by pulling low."""
+    drawn = brief(rng, series, circuit)
+    return replace(drawn, drive=replace(drawn.drive, circuit=DriveCircuit.SINK))
+
+
+def field_brief(rng: np.random.Generator, series: str = "E12", circuit: OutputCircuit | None = None) -> Brief:
+    """A random brief whose LED is lit by a voltage from outside, which may leak when off and may be reversed."""
+    drawn = brief(rng, series, circuit)
+    off_current = float(rng.choice([0.0, 0.3e-3, 1e-3, 1.5e-3], p=[0.5, 0.2, 0.2, 0.1]))
+    drive = Drive(
+        circuit=DriveCircuit.FIELD,
+        supply=Span(float(rng.choice([11.0, 15.0, 18.0])), float(rng.choice([28.8, 30.0]))),
+        drop=Span(0.0, float(rng.choice([0.0, 1.0]))),
+        max_current=float(rng.choice([15e-3, 30e-3])) if rng.random() < 0.6 else None,
+        off_leakage=0.0,
+        off_voltage=float(rng.choice([1.0, 3.0, 5.0])),
+        off_current=off_current,
+        on_current_min=float(rng.choice([0.0, 2e-3])),
+        reverse=float(rng.choice([0.0, 4.0, 30.0])),
+        reverse_diode=bool(rng.random() < 0.8),
+    )
+    # without a shunt a contact that leaks, or that reads as off above the knee, lights the LED: mostly no design
+    shunt = position("E12", 220, 3.3e3, absent=bool(rng.random() < 0.5)) if rng.random() < 0.85 else None
+    # 30 V on a few kiloohms is more than one small resistor takes
+    r_led = rated(position(series, 820, 10e3), float(rng.choice([0.25, 0.5, 1.0])), float(rng.choice([20.0, 200.0])))
+    r_led = replace(r_led, pieces=int(rng.integers(1, 4)))
+    return replace(drawn, drive=drive, stock=replace(drawn.stock, r_led=r_led, r_shunt=shunt))
+
+
+def rated(stock: Position, power: float, voltage: float) -> Position:
+    """The same stock with other ratings: power [W], voltage [V]."""
+    n = len(stock.values)
+    return replace(stock, power=(power,) * n, voltage=(voltage,) * n)
+
+
+def mixed_brief(rng: np.random.Generator, series: str = "E12") -> Brief:
+    """A random brief of any drive for couplers of every kind: two in three with a pull-up, levels a darlington holds."""
+    circuit = OutputCircuit.PULL_UP if rng.random() < 0.67 else OutputCircuit.EMITTER_LOAD
+    drawn = (brief, sink_brief, field_brief)[int(rng.integers(3))](rng, series, circuit)
+    # fewer limits than `brief` draws: it is meant for one kind, and these must leave room for others
+    limits = drawn.limits
+    kept = {name: getattr(limits, name) if rng.random() < 0.5 else None for name in ("edge_time", "delay", "power")}
+    return replace(drawn, limits=replace(limits, distortion=None, **kept))

@@ -12,6 +12,7 @@ from pathlib import Path
 import click
 import pytest
 from command import ESCAPE, ROOT, Ran, run, run_at_terminal
+from fine_link import fine_link
 
 import optopick
 from optopick.cli import main
@@ -39,21 +40,6 @@ def changed(folder: Path, *changes: tuple[str, str], name: str = "link.toml") ->
 def impossible(tmp_path: Path) -> Path:
     """A brief that no design meets: a tenth of the power that the best takes."""
     return changed(tmp_path, ('power = "40 mW"', 'power = "1 mW"'))
-
-
-def fine_link(folder: Path, goal: str, distortion: str = "1 ms") -> Path:
-    """A brief over a fine series of three positions, without limits on delay but this one."""
-    text = (ROOT / "tests" / "benchmarks" / "link.toml").read_text(encoding="utf-8")
-    stock = 'r_led = { series = "E48", from = "680", to = "1.8k", power = "0.25 W" }'
-    stock += '\nr_load = { series = "E48", from = "3k", to = "7k" }'
-    stock += '\nr_be = { series = "E48", from = "300k", to = "2M", absent = true }\n'
-    text, found = re.subn(r"r_led = .*\nr_load = .*\nr_be = .*\n", stock, text)
-    assert found == 1
-    text = text.replace('distortion = "45 us"', f'distortion = "{distortion}"').replace('delay = "70 us"\n', "")
-    text = text.replace("GOAL", goal).replace("THEN", "edge time").replace("give", "# give")
-    path = folder / "fine.toml"
-    path.write_text(text.replace("TABLE", str(ROOT / "catalogs" / "demo.csv")), encoding="utf-8")
-    return path
 
 
 @pytest.fixture(scope="module")
@@ -185,11 +171,12 @@ CHECK = {"name", "value", "limit", "sense", "margin", "unit", "corner", "passed"
 ASSUMED = {"part", "parameter", "value", "rule"}
 
 
-class TestJson:
-    @pytest.fixture(scope="class")
-    def picked(self) -> dict[str, object]:
-        return json_of(run("pick", ROOT / "examples" / "shortlist.toml", "--json"))
+@pytest.fixture(scope="module")
+def picked() -> dict[str, object]:
+    return json_of(run("pick", ROOT / "examples" / "shortlist.toml", "--json"))
 
+
+class TestJson:
     def test_pick_has_every_field(self, picked):
         assert set(picked) >= RESULT
         for name, fields in FIELDS.items():
@@ -338,6 +325,21 @@ class TestAtTerminal:
             assert re.search(pattern, shown), (check["name"], value, limit)
         for name, seconds in found["timing"].items():
             assert amount(seconds, "s") in shown, name
+        assert "…" not in shown
+
+    @pytest.mark.parametrize(
+        "arguments",
+        [
+            ("check", TINY, *UNSOUND, "--budget"),
+            ("rank", "examples/shortlist.toml"),
+            ("tradeoff", "examples/shortlist.toml", "--first", "delay", "--points", "3"),
+            ("why", TINY),
+        ],
+        ids=lambda arguments: arguments[0],
+    )
+    def test_narrow_terminals_cut_nothing(self, arguments):
+        shown = ESCAPE.sub("", run_at_terminal(80, *arguments))
+        assert max(len(line) for line in shown.splitlines()) <= 80
         assert "…" not in shown
 
     def test_colours_and_none_of_them(self):

@@ -4,11 +4,13 @@ from __future__ import annotations
 
 import numpy as np
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from optopick.coupler import Led, Rating
 from optopick.physics.led import branch_current, forward_voltage, led_current, led_current_of_leak, thermal_voltage
+
+UNHURRIED = settings(deadline=None, max_examples=60)
 
 LED = Led(1.1, 1.2, 1.4, 10e-3, 2.0, 3.0, -1.5e-3, Rating(60e-3, 60, 1e-3), Rating(0.1, 60, 1.5e-3), 5.0)
 
@@ -32,6 +34,7 @@ def test_forward_voltage_at_and_about_the_reference():
     assert forward_voltage(LED, 1.2, 20e-3, 25.0) == pytest.approx(1.2 + 2 * v_t * np.log(2) + 0.03, rel=1e-12)
 
 
+@UNHURRIED
 @given(v=st.floats(1.8, 60), v_f=st.floats(1.0, 1.6), r=st.floats(20, 1e5), t=temperatures, shunt=shunts)
 def test_currents_and_voltages_add_up(v, v_f, r, t, shunt):
     i = led_current(LED, v_f, v, r, t, shunt)
@@ -39,6 +42,7 @@ def test_currents_and_voltages_add_up(v, v_f, r, t, shunt):
     assert r * branch_current(i, across, shunt) + across == pytest.approx(v, rel=1e-9)
 
 
+@UNHURRIED
 @given(i=currents, v_f=st.floats(1.0, 1.6), r=st.floats(1, 1e5), t=temperatures, shunt=shunts)
 def test_led_current_undoes_forward_voltage(i, v_f, r, t, shunt):
     across = forward_voltage(LED, v_f, i, t)
@@ -46,6 +50,7 @@ def test_led_current_undoes_forward_voltage(i, v_f, r, t, shunt):
     assert led_current(LED, v_f, v, r, t, shunt) == pytest.approx(i, rel=1e-7)
 
 
+@UNHURRIED
 @given(leak=st.floats(1e-9, 5e-3), v_f=st.floats(1.0, 1.6), t=temperatures, shunt=st.floats(100, 1e5))
 def test_the_shunt_takes_its_part_of_a_leak(leak, v_f, t, shunt):
     i = float(led_current_of_leak(LED, v_f, leak, t, shunt))

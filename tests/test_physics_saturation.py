@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 from scipy.optimize import brentq
 
@@ -18,6 +18,8 @@ from optopick.physics.saturation import (
     smallest_load,
     v_ce_on,
 )
+
+UNHURRIED = settings(deadline=None, max_examples=60)
 
 
 def transistor_v_ce(i_b: float, i_c: float, beta_f: float, beta_r: float, i_s: float = 1e-14) -> float:
@@ -63,6 +65,7 @@ def test_towards_an_overdrive_of_one_the_voltage_grows_without_end_and_never_wit
     assert np.isinf(v[3:]).all()
 
 
+@UNHURRIED
 @given(
     overdrive=st.floats(1.001, 3.9),
     h_fe=st.floats(30, 3000),

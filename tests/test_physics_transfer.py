@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from optopick.coupler import Transfer
@@ -16,6 +16,8 @@ from optopick.physics.transfer import (
     relative_ctr,
     temperature_factor,
 )
+
+UNHURRIED = settings(deadline=None, max_examples=60)
 
 CURVE = Transfer(
     ctr_min=0.5,
@@ -58,6 +60,7 @@ def test_collector_current():
     assert list(collector_current(CURVE, 1.0, 1.0, np.array([-1e-3, 0.0]))) == [0.0, 0.0]
 
 
+@UNHURRIED
 @given(i=st.floats(1e-6, 39e-3), ctr=st.floats(0.05, 10), h=st.floats(0.3, 1.5))
 def test_led_current_undoes_collector_current(i, ctr, h):
     assert led_current_for(CURVE, ctr, h, collector_current(CURVE, ctr, h, i)) == pytest.approx(i, rel=1e-9)

@@ -4,6 +4,7 @@ import csv
 import io
 import math
 import time
+from collections import Counter
 from pathlib import Path
 
 import pytest
@@ -324,22 +325,57 @@ def test_every_rule_can_say_what_it_does():
 def test_the_demo_table_is_usable_and_says_that_it_is_invented():
     path = CATALOGS / "demo.csv"
     table = read_couplers(path)
-    assert len(table.couplers) >= 26
-    assert {coupler.kind for coupler in table.couplers} == {Kind.PHOTOTRANSISTOR}
+    kinds = Counter(coupler.kind for coupler in table.couplers)
+    assert len(table.couplers) >= 62
+    assert kinds[Kind.PHOTOTRANSISTOR] >= 40
+    assert kinds[Kind.DARLINGTON] >= 12
+    assert kinds[Kind.LOGIC] >= 10
     assert {coupler.base_pin for coupler in table.couplers} == {True, False}
-    assert 3 <= len({coupler.maker for coupler in table.couplers}) <= 4
-    assert [(item.part, item.reason) for item in table.set_aside] == [("PYRA29", "ctr_at: empty, and no rule fills it")]
+    assert {coupler.channels for coupler in table.couplers} == {1, 2, 4}
+    assert len({coupler.maker for coupler in table.couplers}) == 5
+    assert [(item.part, item.reason) for item in table.set_aside] == [
+        ("PYRA29", "ctr_at: empty, and no rule fills it"),
+        ("KESTRO62", "t_plh: empty, and no rule fills it"),
+    ]
     assert "INVENTED" in path.read_text(encoding="utf-8").splitlines()[0]
     assert "c_m" in assumed(next(coupler for coupler in table.couplers if coupler.part == "KESTRO28-L"))
 
 
-def test_the_demo_table_resolves_to_plausible_switching_constants():
+PLAUSIBLE = {
+    # transit time [s], collector junction [F], storage constant [s], gain [1]: least and most
+    Kind.PHOTOTRANSISTOR: ((0.5e-9, 6e-9), (0.5e-12, 12e-12), (0.5e-6, 40e-6), (70, 3000)),
+    Kind.DARLINGTON: ((1e-9, 10e-9), (1e-12, 14e-12), (10e-6, 250e-6), (3000, 30000)),
+}
+
+
+def test_the_demo_table_resolves_to_plausible_transistors():
     for coupler in read_couplers(CATALOGS / "demo.csv").couplers:
+        if coupler.kind is Kind.LOGIC:
+            continue
         transistor = coupler.transistor
-        assert 0.1e-6 < transistor.tau_0 < 5e-6
-        assert 0.1e-9 < transistor.c_m < 10e-9
-        assert 0.5e-6 < transistor.tau_s < 40e-6
+        constants = (transistor.tau_0 / transistor.h_fe, transistor.c_m / transistor.h_fe, transistor.tau_s)
+        for constant, (low, high) in zip((*constants, transistor.h_fe), PLAUSIBLE[coupler.kind], strict=True):
+            assert low < constant < high, coupler.part
         assert transistor.i_ceo_2 > transistor.i_ceo_1
+        assert not any("; so " in item.rule for item in coupler.assumed), coupler.part  # its rows agree
+
+
+def test_the_demo_darlingtons_are_slow_and_strong():
+    for coupler in read_couplers(CATALOGS / "demo.csv").couplers:
+        if coupler.kind is Kind.DARLINGTON:
+            assert 6.0 <= coupler.transfer.ctr_min < coupler.transfer.ctr_max <= 75.0
+            assert 0.9 <= coupler.transistor.v_ce_sat <= 1.2
+            assert 10e-6 < coupler.transistor.tau_0 < 100e-6
+
+
+def test_the_demo_logic_outputs_span_fast_slow_and_frugal():
+    logic = {c.part: c.logic for c in read_couplers(CATALOGS / "demo.csv").couplers if c.kind is Kind.LOGIC}
+    assert min(one.i_f_on for one in logic.values()) == 0.5e-3
+    assert max(one.i_f_on for one in logic.values()) == 5e-3
+    assert min(one.t_phl for one in logic.values()) == pytest.approx(50e-9)
+    assert max(one.t_plh for one in logic.values()) > 2e-6
+    assert {(one.v_cc_min, one.v_cc_max) for one in logic.values()} >= {(3.0, 5.5), (4.5, 5.5), (4.5, 20.0)}
+    assert all(0.4 <= one.v_ol <= 0.6 and 4e-3 <= one.i_ol <= 16e-3 for one in logic.values())
 
 
 def test_the_shelf_list_can_be_read():

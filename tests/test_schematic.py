@@ -99,6 +99,9 @@ def circuit_of(svg: str) -> Circuit:
             circuit.grounds.append(parts[0][0])
         elif straight(parts[0]):
             circuit.wires.append((parts[0][0], parts[0][-1]))
+    # an end of a part is a wire of no length, so that parts may meet without another wire between them
+    ends = [end for part in (*circuit.resistors, *circuit.diodes) for end in part]
+    circuit.wires += [(end, end) for end in (*ends, *circuit.grounds)]
     return circuit
 
 
@@ -139,7 +142,7 @@ def draw(drive, output, kind, base, shunt, pieces, diode) -> tuple[str, Design]:
     return schematic_svg(brief, coupler, design), design
 
 
-PIN, RETURN, OUT_OF_RANGE = (66.0, 74.0), (66.0, 346.0), 252.0
+PIN, RETURN, OUT_OF_RANGE, RECEIVER = (66.0, 74.0), (66.0, 346.0), 252.0, 510.0
 
 
 @pytest.mark.parametrize("case", list(cases()), ids=lambda case: "-".join(str(part) for part in case))
@@ -182,7 +185,7 @@ def _output_side(c: Circuit, output, kind, base: bool) -> None:
     """The load at the supply or at the ground, the receiver at the output, the base resistor from base to emitter."""
     resistors = [part for part in c.resistors if part[0][0] > OUT_OF_RANGE]
     ground = c.grounds[-1]
-    receiver = max((end for wire in c.wires for end in wire), key=lambda end: end[0])
+    receiver = max((end for wire in c.wires for end in wire if end[0] < RECEIVER), key=lambda end: end[0])
     supply = min((end for wire in c.wires for end in wire if end[0] > OUT_OF_RANGE), key=lambda end: end[1])
     assert len(resistors) == 1 + base
     far = supply if output is OutputCircuit.PULL_UP else ground

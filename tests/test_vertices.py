@@ -11,6 +11,7 @@ from itertools import product
 import numpy as np
 import oracle_led
 import oracle_output
+import oracle_times
 import pytest
 import random_links
 from enumeration import resistor_ends, survey, temperatures
@@ -134,8 +135,8 @@ def rooms_at(brief: Brief, coupler: Coupler, design: Design, p: Points) -> tuple
         held["r_be_power"] = oracle_led.below(x.v_be**2 / p.r_be, most)
     i_eff = s.i_f * (1.0 + p.age * (light_at_end_of_life(brief, coupler, design) - 1.0))
     held |= output_rooms(brief, coupler, x, s, i_eff, p)
-    times = out.times(brief, coupler, x, i_eff, p.r_load, p.r_be)
-    timing, goals = out.timing_checks(brief, times)
+    times = oracle_times.times(coupler, x, oracle_times.swing(brief, coupler, x, p.r_load), i_eff, p.r_be)
+    timing, goals = oracle_times.timing_checks(brief, times)
     power = brief.signal.lit * (p.drive * s.i_branch + p.v_cc * out.load_of(brief, coupler, x, p.r_load))
     if brief.limits.power is not None:
         held["power"] = oracle_led.below(power, np.float64(brief.limits.power))

@@ -101,10 +101,16 @@ def _shaved(box: Box, ask: Ask) -> Box | None:
     return tightened(box, ask)
 
 
-def _blocks(box: Box, axis: int) -> list[Box]:
+def _blocks(box: Box, axis: int, count: int = BLOCKS) -> list[Box]:
     """The box cut along one position; indices stay ascending."""
     sizes = box.model.sizes
     blocks = []
-    for part in np.array_split(np.arange(sizes[axis]), min(BLOCKS, sizes[axis])):
+    for part in np.array_split(np.arange(sizes[axis]), min(count, sizes[axis])):
         blocks.append(box.take(*(part if n == axis else np.arange(sizes[n]) for n in range(3))))
     return blocks
+
+
+def halves(box: Box) -> list[Box]:
+    """The box in two, along the base resistors or the LED branches, whichever are more."""
+    led, _, base = box.model.sizes
+    return _blocks(box, 2 if base >= led else 0, 2)

@@ -29,9 +29,9 @@ from optopick.physics.types import Array
 class LoadCandidates:
     """Load resistors in stock. r_load: (n,) [ohm].
 
-    swing: over corner C, the two ends of its tolerance, and value n. Over (C, n): for_margin: LED current for the CTR margin [A] (None without that limit); for_level: LED
-    current that holds the on level [A]; leak_room: leakage the off level allows [A]. heat: (T, n) output dissipation
-    [W]; power: (n,) worst average power of the output path [W]. keep: check name to (n,) mask.
+    swing: over corner C, the two ends of its tolerance, and value n. Over (C, n): for_margin: LED current for the CTR
+    margin [A] (None without that limit); for_level: LED current that holds the on level [A]; leak_room: leakage the off
+    level allows [A]. heat: (T, n) output dissipation [W]; power: (n,) worst average power of the output path [W]. keep: check name to (n,) mask.
     """
 
     r_load: Array
@@ -63,7 +63,8 @@ class BaseCandidates:
 class Candidates:
     """All three positions of one coupler, its corners, and the light currents of every branch.
 
-    i_low, i_high: (C, n_led) extreme light, worn and new [A]; i_lit_off: (C, n_led) collector current of the LED's rest [A].
+    i_low, i_high: (C, n_led) least light, worn, and most, new [A]; i_lit_off: (C, n_led) collector current of the LED's
+    rest [A].
     total_room: (T,) package dissipation allowed [W]; tau_s [s], i_input_off [A].
     """
 

@@ -23,7 +23,9 @@ from optopick.physics.types import Array
 
 @dataclass(frozen=True)
 class Pulls:
-    """Pull-up resistors in stock, (n,) [ohm]; worst edge, delay [s]; heat of the output (T, n) [W]; worst average power
+    """Pull-up resistors in stock.
+
+    r_load (n,) [ohm]; worst edge, delay [s]; heat of the output (T, n) [W]; worst average power
     of the output path (n,) [W]; keep: check name to (n,) mask.
     """
 

@@ -8,7 +8,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from optopick.brief import GoalName
-from optopick.model.box import Box, Choice, narrowed, tightened, whole_box
+from optopick.model.box import Box, Choice, halves, narrowed, tightened, whole_box
 from optopick.model.kinds import LinkModel
 from optopick.model.ranges import undominated
 from optopick.model.rows import Ask, Rows, stack
@@ -16,6 +16,9 @@ from optopick.model.solver import Answer, Clock, Outcome, Problem, solve
 
 STEP = 1e-6
 """A design counts as better only if it is so by this share; the proof's resolution."""
+
+LEAF = 4000
+"""A box with more combinations is split before the solver sees it, where rows only bound the delays."""
 
 GRID = (24, 10, 8)
 """How many values per position the first look tries."""
@@ -87,28 +90,36 @@ class _Search:
     ) -> None:
         self.goal, self.ask, self.clock = goal or GoalName.POWER, ask, clock
         self.any = goal is None
+        self.boxes: list[Box] = []
         self.box = whole_box(model, ask, stack([_only(choice, model.sizes) for choice in without], model.sizes))
         self.scale = float(sum(np.median(part) for part in model.power))
 
     def run(self, below: float) -> Found:
+        """Work through boxes: narrow, look, split what is large, solve what is small, until none is left."""
         choice: Choice | None = None
-        value, bound = below, 0.0
-        while bound < value * (1 - STEP):
-            wanted = self.better_than(value)
-            self.box = narrowed(self.box, wanted) if self.box else None
-            if self.box is None:
-                self.clock.by_ranges += 1
-                return _proved(choice, value)
-            better = _look(self.box, self.goal, wanted)
+        value = below
+        self.boxes = [self.box] if self.box else []
+        solved = False
+        while self.boxes:
+            box = narrowed(self.boxes.pop(), self.better_than(value))
+            if box is None:
+                continue
+            better, outcome = _look(box, self.goal, self.better_than(value)), None
+            if better is None and box.combinations > LEAF and self.ask.has_delays:
+                self.boxes.extend(halves(box))
+                continue
             if better is None:
-                outcome, better = self.solve(self.box, wanted)
-                bound = max(bound, outcome.bound * self.scale) if self.goal is GoalName.POWER else bound
-                if outcome.answer is Answer.NONE:
-                    return _proved(choice, value)
-                if better is None:
-                    return Found(choice, value, max(bound, self._bound_by_ranges(value)))
-            choice, value = self.box.whole(better[0]), better[1]
-        return Found(choice, value, bound)
+                outcome, better = self.solve(box, self.better_than(value))
+                box, solved = self.box or box, True
+                if outcome.answer is Answer.OUT_OF_TIME:
+                    self.boxes.append(box)
+                    return Found(choice, value, self._bound_by_ranges(value))
+            if better is not None:
+                choice, value = box.whole(better[0]), better[1]
+                least = outcome is not None and outcome.bound * self.scale >= value * (1 - STEP)
+                self.boxes.extend([] if least and self.goal is GoalName.POWER else [box])
+        self.clock.by_ranges += not solved
+        return _proved(choice, value)
 
     def better_than(self, value: float) -> Ask:
         """What a better design must do."""
@@ -139,11 +150,11 @@ class _Search:
         return p / self.scale, q / self.scale
 
     def _bound_by_ranges(self, value: float) -> float:
-        """The largest goal that tightening alone excludes, by bisection; 0 where there is nothing to halve."""
+        """The largest goal that tightening alone excludes in every box left, by bisection; 0 with nothing to halve."""
         low, high = 0.0, value if np.isfinite(value) else 0.0
-        for _ in range(20):
+        for _ in range(20 if high else 0):
             middle = (low + high) / 2
-            gone = self.box is None or narrowed(self.box, self.ask.limited(self.goal, middle)) is None
+            gone = all(tightened(box, self.ask.limited(self.goal, middle)) is None for box in self.boxes)
             low, high = (middle, high) if gone else (low, middle)
         return low
 

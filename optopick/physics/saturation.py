@@ -62,7 +62,8 @@ def v_ce_on(v_ce_sat: Real, overdrive_sheet: Real, overdrive: Real, h_fe: Real, 
 def overdrive_to_hold(v_ce: Real, v_ce_sat: Real, overdrive_sheet: Real, h_fe: Real, beta_r: float, t: Real) -> Array:
     """Overdrive that holds the output at `v_ce` or lower [1]: the inverse of `v_ce_on`.
 
-    Above 1, towards 1 for high v_ce. Infinite where v_ce < v_ce_sat: the sheet does not promise it at any drive. Broadcasts.
+    Above 1, towards 1 for high v_ce. Infinite where v_ce < v_ce_sat: the sheet does not promise it at any drive.
+    Broadcasts.
     """
     room = (np.asarray(v_ce, dtype=float) - v_ce_sat) / thermal_voltage(t)
     reach = np.exp(np.clip(room, 0.0, 500.0)) * saturation_shape(overdrive_sheet, h_fe, beta_r)

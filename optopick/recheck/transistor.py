@@ -195,7 +195,7 @@ def rating_checks(
 
 
 def times(brief: Brief, coupler: Coupler, box: Vertices, s: Stage) -> Times:
-    """Edges, storage and delays at every vertex, without guard [s]; storage lasts until 10 % of the swing, as in sheets."""
+    """Edges, storage and delays at every vertex, without guard [s]; storage as in sheets, until 10 % of the swing."""
     transfer, transistor = parts_of(coupler)
     base, load = _charged(brief, transistor, box, s)
     carried = box.ctr * s.h

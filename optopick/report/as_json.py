@@ -8,7 +8,7 @@ from collections.abc import Sequence
 from dataclasses import asdict
 from typing import Any
 
-from optopick.answers import Checked, Front, Nearest, Ranked, Ranking, Share, Why
+from optopick.answers import Checked, Front, Nearest, Ranked, Ranking, Share, Sweep, Why, Yield
 from optopick.result import Check, Design, Objective, Result, Review
 
 
@@ -138,3 +138,17 @@ def why_object(why: Why) -> dict[str, object]:
         "objective": objective_object(why.result.objective) if why.result else None,
         "worth": [asdict(worth) for worth in why.worth],
     }
+
+
+def sweep_object(sweep: Sweep) -> dict[str, object]:
+    """The object that `sweep --json` prints."""
+    steps = [
+        {"ohms": step.ohms, "worst": review_object(step.worst), "typical": review_object(step.typical)}
+        for step in sweep.steps
+    ]
+    return {"position": sweep.position, "chosen": sweep.chosen, "steps": steps}
+
+
+def yield_object(drawn: Yield) -> dict[str, object]:
+    """The object that `yield --json` prints."""
+    return {"samples": drawn.count, "good": drawn.good, "checks": [asdict(passing) for passing in drawn.checks]}

@@ -6,7 +6,7 @@ from dataclasses import asdict
 
 import pandas as pd
 
-from optopick.answers import Front, Ranking
+from optopick.answers import Front, Ranking, Sweep
 
 
 def ranking_frame(ranking: Ranking) -> pd.DataFrame:
@@ -37,4 +37,15 @@ def front_frame(front: Front) -> pd.DataFrame:
         {names[0]: point.first, names[1]: point.second, **asdict(point.review.design), "knee": index == front.knee}
         for index, point in enumerate(front.points)
     ]
+    return pd.DataFrame(rows)
+
+
+def sweep_frame(sweep: Sweep) -> pd.DataFrame:
+    """One row a stock value: worst and typical times [s], worst power [W], failing checks."""
+    rows = []
+    for step in sweep.steps:
+        typical = {f"typical_{name}": value for name, value in asdict(step.typical.timing).items()}
+        failing = " ".join(check.name for check in step.worst.failing)
+        power = {"power": step.worst.power.worst, "fails": failing, "chosen": step.ohms == sweep.chosen}
+        rows.append({sweep.position: step.ohms} | asdict(step.worst.timing) | typical | power)
     return pd.DataFrame(rows)

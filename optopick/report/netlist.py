@@ -17,11 +17,12 @@ from scipy.constants import Boltzmann, elementary_charge, zero_Celsius
 from optopick.brief import Brief
 from optopick.cautions import cautions
 from optopick.coupler import Coupler, Led
+from optopick.physics.charge import J_V_BE
 from optopick.physics.led import branch_current, forward_voltage
 from optopick.result import Design
 from optopick.simulate.corner import Corner, threshold_pair
 from optopick.simulate.design import simulate_pulse
-from optopick.simulate.device import I_V_BE, Device, device_at
+from optopick.simulate.device import Device, device_at
 from optopick.simulate.junction import FORWARD_BEND
 from optopick.simulate.measure import EARLY, LATE, pulse_times
 from optopick.simulate.transient import Run, input_resistance
@@ -113,9 +114,9 @@ RULES = (
     "straight stretches over v(b,e) with rounded bends.",
     "Qcore carries the collector current and stores the charge; its BF is as good as infinite, as Bbase is its base "
     "current.",
-    "TF and CJC give the edges of the table's two switching rows, TR the storage time of the saturated one.",
+    "TF and CJC follow from the table's two switching rows, TR from the storage time of the saturated one.",
     "Voff: what the table's largest V_CE(sat) has above the saturation voltage of the junctions.",
-    f"Taken from memory, not from the table: V_BE holds at {I_V_BE * 1e3:g} mA; built-in voltage and grading of the "
+    f"Taken from memory, not from the table: V_BE holds at {J_V_BE * 1e3:g} mA; built-in voltage and grading of the "
     "collector junction; no Early effect; no resistance in base, collector and emitter.",
     "A darlington is one transistor with two junctions in series (NF = 2).",
 )
@@ -220,7 +221,7 @@ def _analysis(s: Scene) -> Iterator[str]:
     step = max(min(shortest, total) / FINENESS, total / MOST_STEPS)
     yield ""
     yield f".options TEMP={_num(s.corner.t)} TNOM={_num(s.corner.t)}"
-    yield ".options RELTOL=1e-4 ABSTOL=1e-14 VNTOL=1e-7 CHGTOL=1e-17 GMIN=1e-18"
+    yield ".options RELTOL=1e-5 ABSTOL=1e-14 VNTOL=1e-7 CHGTOL=1e-17 GMIN=1e-18"
     yield f".tran {_num(step)} {_num(total)} 0 {_num(step)}"
     yield ".save V(out) V(drive)"
 

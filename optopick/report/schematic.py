@@ -42,6 +42,7 @@ PACKAGE = (128.0, 188.0, 276.0, 96.0)
 """Left, top, width and height of the coupler's outline."""
 
 _NUMBER = re.compile(r"-?\d+\.?\d*(?:e-?\d+)?")
+_FILLS = {"fill:none": "outline", "fill:white": "hollow"}
 _SHAPES = {"path", "polygon", "polyline", "circle", "ellipse", "rect"}
 
 
@@ -52,6 +53,7 @@ class _Sheet:
         self.symbols, drawing = _schemdraw()
         self.drawing: Any = drawing(canvas="svg", show=False)
         self.words: list[Markup] = []
+        self.outlines: list[Markup] = []
 
     def part(self, symbol: Any, begin: Point, end: Point) -> None:  # noqa: ANN401 - schemdraw's own element
         """A part with two ends."""
@@ -65,6 +67,13 @@ class _Sheet:
         """A line through points."""
         for begin, end in pairwise(points):
             self.part(self.symbols.Line(), begin, end)
+
+    def triangle(self, tip: Point, length: float, half: float) -> None:
+        """A stage that passes a signal on, to the right: a triangle with its tip at a point."""
+        (x, y), back = tip, tip[0] - length
+        corners = ((back, y - half), (back, y + half), (x, y))
+        places = " ".join(f"{short(across)},{short(down)}" for across, down in corners)
+        self.outlines.append(element("polygon", points=places, class_="outline"))
 
     def joint(self, *points: Point) -> None:
         """Dots where wires meet."""
@@ -94,7 +103,7 @@ def schematic_svg(brief: Brief, coupler: Coupler, design: Design) -> str:
         side = _pulled_up if brief.output.circuit is OutputCircuit.PULL_UP else _emitter_load
         side(sheet, brief, placed)
     left = (SHUNT_ROOM + DIODE_ROOM * design.reverse_diode) if "r_shunt" in placed else 0.0
-    shapes = Markup("").join(_shapes(sheet.drawing.get_imagedata("svg")))
+    shapes = Markup("").join((*_shapes(sheet.drawing.get_imagedata("svg")), *sheet.outlines))
     return picture(
         "Schematic",
         _described(brief, coupler, placed),
@@ -132,14 +141,14 @@ def _without(name: str) -> Iterator[None]:
 
 
 def _shapes(data: bytes) -> Iterator[Markup]:
-    """Schemdraw's shapes without their styles: outlines and filled ones told apart by class."""
+    """Schemdraw's shapes without their styles: outlines, filled and hollow ones told apart by class."""
     for node in ElementTree.fromstring(data).iter():
         name = node.tag.rpartition("}")[2]
         if name in _SHAPES:
             style = node.attrib.pop("style", "")
-            filled = "fill:none" not in style
+            kind = next((kind for fill, kind in _FILLS.items() if fill in style), "filled")
             places = {key: _NUMBER.sub(lambda found: short(float(found[0])), value) for key, value in node.attrib.items()}
-            yield element(name, class_="filled" if filled else "outline", **places)
+            yield element(name, class_=kind, **places)
 
 
 def _name(symbol: str) -> Markup:
@@ -205,7 +214,7 @@ def _field(sheet: _Sheet, brief: Brief) -> None:
 def _driver_pin(sheet: _Sheet, at: Point) -> None:
     """A driver as a triangle whose tip is the pin."""
     x, y = at
-    sheet.wire((x - 30, y - 17), (x - 30, y + 17), (x, y), (x - 30, y - 17))
+    sheet.triangle(at, 30, 17)
     sheet.wire((x - 44, y), (x - 30, y))
 
 
@@ -303,7 +312,7 @@ def _receiver(sheet: _Sheet, brief: Brief, at: Point) -> None:
     x, y = WIDTH - 52, at[1]
     sheet.joint(at)
     sheet.wire(at, (x, y))
-    sheet.wire((x, y - 17), (x, y + 17), (x + 30, y), (x, y - 17))
+    sheet.triangle((x + 30, y), 30, 17)
     sheet.wire((x + 30, y), (x + 44, y))
     for k, (name, span) in enumerate((("V_IH", brief.output.v_ih), ("V_IL", brief.output.v_il))):
         sheet.say((OUT_X + 24, y + 36 + 20 * k), _name(name), class_="small")
@@ -350,7 +359,7 @@ def _emitter_load(sheet: _Sheet, brief: Brief, placed: dict[str, Placed]) -> Non
 def _logic_side(sheet: _Sheet, brief: Brief, placed: dict[str, Placed]) -> None:
     """A logic output with an open collector: amplifier, supply pin, pull-up, receiver."""
     left, right, x = BASE_X + 20, BASE_X + 74, OUT_X + 36
-    sheet.wire((left, MIDDLE - 28), (left, MIDDLE + 28), (right, MIDDLE), (left, MIDDLE - 28))
+    sheet.triangle((right, MIDDLE), right - left, 28)
     sheet.wire((right, MIDDLE), (x, MIDDLE))
     middle = (left + right) / 2
     _supply(sheet, brief, (x, 46.0), -1)

@@ -10,11 +10,11 @@ from rich.padding import Padding
 from rich.table import Table
 from rich.text import Text
 
-from optopick.answers import CAUSES, Change, Front, Ranked, Ranking, Share, Why, Worth
+from optopick.answers import CAUSES, Change, Front, Ranked, Ranking, Share, Sweep, Why, Worth, Yield
 from optopick.report.labels import check_label
 from optopick.report.text import TIGHT, amount
 from optopick.result import Design, Rejected
-from optopick.units import format_resistor
+from optopick.units import format_quantity, format_resistor
 
 
 def ranking_text(ranking: Ranking, title: str, top: int | None) -> RenderableType:
@@ -165,9 +165,9 @@ def budget_text(shares: Sequence[Share]) -> RenderableType:
         costs = [_percent(share.cost[cause]) for cause in CAUSES]
         table.add_row(check_label(share.check), _percent(share.worst), _percent(share.nominal), *costs)
     note = Text(
-        "left: at the worst corner; nominal: with everything at its nominal value; then the room that comes back if one "
-        "cause alone stands there: the CTR bin, the LED's light at a given CTR, its forward voltage, ageing, temperature, "
-        "drive supply and drop, output supply, resistor tolerance."
+        "left: at the worst corner; nominal: with everything at its nominal value; then the room that comes back if "
+        "one cause alone stands there: CTR bin, the LED's light at a given CTR, its forward voltage, ageing, "
+        "temperature, drive supply and drop, output supply, resistor tolerance."
     )
     return Group(Text(), Text("Margin budget", style="bold"), table, note)
 
@@ -176,3 +176,63 @@ def _percent(share: float) -> str:
     if math.isnan(share):
         return "–"
     return "0" if abs(share) < 5e-4 else f"{100 * share:.0f}" if abs(share) >= 0.1 else f"{100 * share:.1f}"
+
+
+def sweep_text(sweep: Sweep, title: str) -> RenderableType:
+    """The whole answer to `sweep`."""
+    table = Table(box=None, padding=(0, 1, 0, 0), header_style="bold")
+    for heading in (
+        sweep.position,
+        "edge on",
+        "edge off",
+        "delay on",
+        "delay off",
+        "typical edge",
+        "CTR margin",
+        "power",
+    ):
+        table.add_column(heading, justify="right", no_wrap=True)
+    table.add_column("fails", ratio=1)
+    for step in sweep.steps:
+        timing, typical = step.worst.timing, step.typical.timing
+        margins = [check for check in step.worst.checks if check.name == "ctr_margin"]
+        marked = "chosen" if step.ohms == sweep.chosen else ""
+        failing = ", ".join(check_label(check.name) for check in step.worst.failing)
+        table.add_row(
+            "none" if step.ohms is None else format_resistor(step.ohms),
+            *(short(value) for value in (timing.edge_on, timing.edge_off, timing.delay_on, timing.delay_off)),
+            short(max(typical.edge_on, typical.edge_off)),
+            f"{margins[0].value:.3g}" if margins else "–",
+            format_quantity(step.worst.power.worst, "W", 3),
+            failing or marked,
+            style="bold" if marked else "",
+        )
+    said = f"{sweep.position} over its stock, the rest of the design as it is; worst cases but for one typical column."
+    return Group(Text(title, style="bold"), Text(said), Text(), table)
+
+
+def short(seconds: float) -> str:
+    """A time with three digits."""
+    return format_quantity(seconds, "s", 3)
+
+
+def yield_text(drawn: Yield, title: str) -> RenderableType:
+    """The whole answer to `yield`."""
+    table = Table(box=None, padding=(0, 2, 0, 0), header_style="bold")
+    table.add_column("Check")
+    table.add_column("Pass", justify="right", no_wrap=True)
+    table.add_column("Least room", justify="right", no_wrap=True)
+    table.add_column("Room from -100 % to 300 %", no_wrap=True)
+    for passing in drawn.checks:
+        share = f"{100 * passing.passed / drawn.count:.4f} %"
+        table.add_row(check_label(passing.check), share, f"{100 * passing.least:.1f} %", _bars(passing.histogram))
+    said = f"{drawn.good:,} of {drawn.count:,} random units pass every check ({100 * drawn.good / drawn.count:.4f} %)."
+    return Group(
+        Text(title, style="bold"), Text(said, style="green" if drawn.good == drawn.count else "red"), Text(), table
+    )
+
+
+def _bars(counts: Sequence[int]) -> str:
+    """A histogram of block characters; any count at all shows."""
+    blocks, most = " ▁▂▃▄▅▆▇█", max(counts) or 1
+    return "".join(blocks[0 if not n else max(1, round(8 * n / most))] for n in counts)

@@ -19,8 +19,9 @@ from optopick.result import Design
 TIMES = ("edge_on", "edge_off", "storage", "delay_on", "delay_off")
 """The times that are both computed and simulated."""
 
-SLOWED_BY_DARK_CURRENT = ("edge_off", "storage", "delay_off")
-"""Times that dark current makes longer; the others it makes shorter, as it has the base half charged beforehand."""
+SLOWED_BY_REST = ("edge_off", "storage", "delay_off")
+"""Times that dark current and light left in the dark LED make longer. The others they make shorter, as they have the
+base half charged beforehand."""
 
 TYPICAL = "typical parts, 25 °C"
 
@@ -84,7 +85,7 @@ def threshold_pair(brief: Brief, corner: Corner) -> tuple[float, float]:
 
 
 def typical_corner(brief: Brief, coupler: Coupler, design: Design) -> Corner:
-    """Typical parts, new, 25 degC, mid supplies, resistors at their nominal values, no dark current to speak of."""
+    """Typical parts, new, 25 degC, mid supplies, nominal resistors; neither dark current nor light when off."""
     box = vertices(brief, coupler, design, ORDER)
     return replace(_corner_at(box, led_branch(brief, coupler, box), np.zeros(box.t.shape), 0.0), words=TYPICAL)
 
@@ -92,18 +93,17 @@ def typical_corner(brief: Brief, coupler: Coupler, design: Design) -> Corner:
 def worst_corners(brief: Brief, coupler: Coupler, design: Design) -> dict[str, Corner]:
     """For each of TIMES the corner at which the formulas find it longest, of all vertices of the uncertainty box.
 
-    The formulas do not know of dark current; it is set to the end that makes the time longer.
+    The formulas know neither dark current nor light left in the dark LED: both are at the end that makes the time
+    longer.
     """
     box = vertices(brief, coupler, design)
     branch = led_branch(brief, coupler, box)
     found = times(brief, coupler, box, stage(brief, coupler, box, branch))
-    return {
-        name: _corner_at(box, branch, getattr(found, name), float(name in SLOWED_BY_DARK_CURRENT)) for name in TIMES
-    }
+    return {name: _corner_at(box, branch, getattr(found, name), float(name in SLOWED_BY_REST)) for name in TIMES}
 
 
 def _corner_at(box: Vertices, branch: LedBranch, value: Array, dark: float) -> Corner:
-    """The vertex with the largest value."""
+    """The vertex with the largest value; dark: share of the largest dark and LED off current that flows [1]."""
     flat = int(np.argmax(value))
     index = np.unravel_index(flat, value.shape)
 
@@ -114,7 +114,7 @@ def _corner_at(box: Vertices, branch: LedBranch, value: Array, dark: float) -> C
     with np.errstate(invalid="ignore"):
         words = box.corner(value, flat)
     numbers = {name: at(getattr(box, name)) for name in names}
-    left, i_f, i_off = at(branch.light), at(branch.i_f), at(branch.i_off)
+    left, i_f, i_off = at(branch.light), at(branch.i_f), dark * at(branch.i_off)
     return Corner(words=words, **numbers, left=left, i_f=i_f, i_off=i_off, dark=dark)
 
 

@@ -22,21 +22,21 @@ from dataclasses import dataclass
 import numpy as np
 
 from optopick.coupler import Coupler, Kind, Transfer, Transistor
+from optopick.physics.charge import J_V_BE, M_J, V_J
 from optopick.physics.leakage import dark_current
 from optopick.physics.led import thermal_voltage
 from optopick.physics.saturation import saturation_shape
 from optopick.physics.transfer import collector_current, light_factor, temperature_factor
-from optopick.simulate.charges import M_J, V_J, charges
 from optopick.simulate.corner import Corner
 from optopick.simulate.errors import NotSimulatedError
 from optopick.simulate.gain import GainLaw, gain_law
 from optopick.simulate.junction import Junction
 
-I_V_BE = 2e-3
-"""Collector current at which the table's v_be is taken to hold [A]: right for a small transistor (from memory)."""
-
 LEAST_GAIN = 1.5
 """Where the gain falls to this on the CTR curve, photocurrent and collector current are no longer apart [1]."""
+
+LEAST_C = 1e-15
+"""Least capacitance of the collector junction [F]: with none at all the output voltage would jump."""
 
 LEAST_OVERDRIVE = 1.05
 """Overdrive that the table's v_ce_sat row is at least taken to have [1]."""
@@ -79,9 +79,9 @@ def device_at(coupler: Coupler, corner: Corner) -> Device:
     """The unit of a coupler that a corner describes.
 
     eta = ctr_mid/h_fe times the light's temperature factor, its spread and what ageing has left, ctr_mid the middle
-    of the bin. i_s puts the table's v_be at I_V_BE. The gain law goes through every point of the CTR curve, moved by
-    this unit's CTR, its light and the temperature. Transit times and the collector junction come from the table's
-    switching constants by `charges` and `reverse_transit`. Raises NotSimulatedError where the table's figures leave no
+    of the bin. i_s puts the table's v_be at J_V_BE. The gain law goes through every point of the CTR curve, moved by
+    this unit's CTR, its light and the temperature. Transit time and junctions are those of the formulas: tau_0/h_fe,
+    c_m/h_fe at 0 V, c_be; tau_r gives the table's tau_s. Raises NotSimulatedError where the table's figures leave no
     such transistor.
     """
     transfer, transistor = transistor_parts(coupler)
@@ -92,18 +92,18 @@ def device_at(coupler: Coupler, corner: Corner) -> Device:
     carried = corner.ctr * float(temperature_factor(transfer, corner.t))
     gain = gain_of_curve(coupler.part, transfer, carried, eta)
     v_be = transistor.v_be + transistor.v_be_tc * (corner.t - 25.0)
-    stored = charges(transfer, transistor, junctions * float(thermal_voltage(25.0)))
+    tau_f = transistor.tau_0 / transistor.h_fe
     i_ceo = float(dark_current(transistor.i_ceo_1, transistor.t_1, transistor.i_ceo_2, transistor.t_2, corner.t))
     return Device(
         eta=eta * corner.left,
         v_t=v_t,
-        i_s=I_V_BE * math.exp(-v_be / v_t),
+        i_s=J_V_BE * math.exp(-v_be / v_t),
         gain=gain,
         beta_r=transistor.beta_r,
-        tau_f=stored.tau_f,
-        tau_r=reverse_transit(stored.tau_s, stored.tau_f, carried / eta, transistor.beta_r),
+        tau_f=tau_f,
+        tau_r=reverse_transit(transistor.tau_s, tau_f, carried / eta, transistor.beta_r),
         emitter=Junction(transistor.c_be, V_J, 0.0),
-        collector=Junction(stored.c_0, V_J, M_J),
+        collector=Junction(max(transistor.c_m / transistor.h_fe, LEAST_C), V_J, M_J),
         v_off=_v_off(transfer, transistor, v_t, carried / eta),
         # the dark current of the sheet is the collector's, with the base open: this is what the base then gets
         i_cbo=corner.dark * math.exp(gain.at(math.log(i_ceo))[0]) if i_ceo > 0 else 0.0,

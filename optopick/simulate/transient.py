@@ -29,8 +29,8 @@ from optopick.simulate.device import Device
 from optopick.simulate.errors import NotSimulatedError
 
 TOLERANCE = 2e-6
-"""Relative tolerance of the integration; a tenth of it in volts is the absolute one. Storage, grown of small differences
-in voltage, is then right to 0.05 %, everything else to 0.01 %."""
+"""Relative tolerance of the integration; a tenth of it in volts is the absolute one. Storage, which grows out of small
+differences in voltage, is then right to 0.05 %, everything else to 0.01 %."""
 
 SETTLED = 1e-3
 """A phase without an end is over when the output is within this share of the swing from where it heads, and ..."""
@@ -198,7 +198,7 @@ def at_rest(d: Device, c: Circuit, i_photo: float) -> tuple[float, float]:
     def base(v_be: float) -> float:
         return surplus(flows(v_be, v_ce(v_be)), i_photo)[0]
 
-    # at 0 V the base only gets current, if only the junction's own; at one ampere it passes on more than any light gives
+    # at 0 V the base only gets current, if only the junction's own; at one ampere it passes on more than light gives
     v_be = float(brentq(base, 0.0, ampere, xtol=1e-13))
     return v_be, v_ce(v_be)
 

@@ -46,10 +46,15 @@ def _positive(text: str) -> float:
 def check_design(brief: Brief, design: Design) -> Checked:
     """Every check of a design; raises InputError where the table has no such coupler or it has no base pin."""
     coupler = coupler_named(brief, design.coupler)
+    refuse_missing_pin(coupler, design)
+    return Checked(review(brief, coupler, design), coupler.assumed, _notes(brief, coupler, design), cautions(brief))
+
+
+def refuse_missing_pin(coupler: Coupler, design: Design) -> None:
+    """Raise InputError where a design has a base-emitter resistor and its coupler no base pin."""
     if design.r_be is not None and not coupler.base_pin:
         found = f"a base-emitter resistor with {coupler.part}, whose base is not brought out"
         raise InputError([Mistake("--r-be", found, "no --r-be, or a coupler with a base pin")])
-    return Checked(review(brief, coupler, design), coupler.assumed, _notes(brief, coupler, design), cautions(brief))
 
 
 def coupler_named(brief: Brief, part: str) -> Coupler:

@@ -87,10 +87,10 @@ def _chunks(i: Index, j: Index, m: Index) -> Iterator[Designs]:
 # --- clever ----------------------------------------------------------------------------------------------------------
 
 
-def clever(brief: Brief, coupler: Coupler) -> Least:
-    """Every pair of load and base resistor, the LED resistor by bisection."""
+def clever(brief: Brief, coupler: Coupler, every: int = 1) -> Least:
+    """Every pair of load and base resistor, the LED resistor by bisection; of the load resistors each `every`th."""
     model, ask = TransistorModel.of(brief, coupler), ask_of(brief)
-    pairs = _Pairs(model)
+    pairs = _Pairs(model, every)
     first = pairs.least(brief.goal.minimize, ask)
     if not np.isfinite(first):
         return NOTHING
@@ -101,13 +101,13 @@ def clever(brief: Brief, coupler: Coupler) -> Least:
 class _Pairs:
     """Pairs (j, m), and LED resistors in the order of rising light."""
 
-    def __init__(self, model: TransistorModel) -> None:
+    def __init__(self, model: TransistorModel, every: int) -> None:
         self.model = model
         i, j, m = model.start().indices
         self.by_light = i[np.argsort(model.candidates.i_low[0, i], kind="stable")]
         for light in (model.candidates.i_low, model.candidates.i_high):
             assert (np.diff(light[:, self.by_light], axis=1) >= 0).all(), "light does not rise with one order"
-        grid = np.meshgrid(j, m, indexing="ij")
+        grid = np.meshgrid(j[::every], m, indexing="ij")
         self.j, self.m = grid[0].ravel(), grid[1].ravel()
 
     def least(self, goal: GoalName, ask: Ask) -> float:
