@@ -10,22 +10,47 @@ from importlib import import_module
 from typing import TYPE_CHECKING, Any
 
 if TYPE_CHECKING:
-    from optopick.read_brief import read_brief
-    from optopick.read_couplers import read_couplers
+    from optopick.read_brief import read_brief as load_brief
+    from optopick.read_couplers import read_couplers as load_couplers
     from optopick.recheck import review
-    from optopick.uses.pick import pick
+    from optopick.report.frames import front_frame, ranking_frame, sweep_frame
+    from optopick.uses.pick import alternatives, pick
+    from optopick.uses.rank import rank
+    from optopick.uses.tradeoff import tradeoff
+    from optopick.uses.why import why
 
 _HOMES = {
-    "pick": "optopick.uses.pick",
-    "read_brief": "optopick.read_brief",
-    "read_couplers": "optopick.read_couplers",
-    "review": "optopick.recheck",
+    "alternatives": ("optopick.uses.pick", "alternatives"),
+    "front_frame": ("optopick.report.frames", "front_frame"),
+    "load_brief": ("optopick.read_brief", "read_brief"),
+    "load_couplers": ("optopick.read_couplers", "read_couplers"),
+    "pick": ("optopick.uses.pick", "pick"),
+    "rank": ("optopick.uses.rank", "rank"),
+    "ranking_frame": ("optopick.report.frames", "ranking_frame"),
+    "review": ("optopick.recheck", "review"),
+    "sweep_frame": ("optopick.report.frames", "sweep_frame"),
+    "tradeoff": ("optopick.uses.tradeoff", "tradeoff"),
+    "why": ("optopick.uses.why", "why"),
 }
+"""Each name of the package, and the module and name where it lives."""
 
-__all__ = ["pick", "read_brief", "read_couplers", "review"]
+__all__ = [
+    "alternatives",
+    "front_frame",
+    "load_brief",
+    "load_couplers",
+    "pick",
+    "rank",
+    "ranking_frame",
+    "review",
+    "sweep_frame",
+    "tradeoff",
+    "why",
+]
 
 
 def __getattr__(name: str) -> Any:  # noqa: ANN401 - whatever the name stands for
     if name not in _HOMES:
         raise AttributeError(f"module 'optopick' has no attribute {name!r}")
-    return getattr(import_module(_HOMES[name]), name)
+    module, own = _HOMES[name]
+    return getattr(import_module(module), own)

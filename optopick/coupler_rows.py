@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Callable
+from dataclasses import replace
 from functools import cache
 from typing import TypeVar
 
@@ -14,14 +15,8 @@ from optopick.coupler_columns import UNITS, schema
 from optopick.coupler_curves import Curve
 from optopick.coupler_sheets import SWITCHING, Bin
 from optopick.gaps import Filled, Unit, UnusableError
-from optopick.gaps_switching import (
-    PlainRow,
-    SaturatedRow,
-    SwitchingConstants,
-    TypicalUnit,
-    saturated_current,
-    switching_constants,
-)
+from optopick.gaps_switching import SwitchingConstants, saturated_voltage, switching_constants
+from optopick.switching_rows import PlainRow, SaturatedRow, TypicalUnit, rounded
 
 Value = TypeVar("Value")
 
@@ -178,13 +173,14 @@ def _transistor(r: _Reader, transfer: Transfer, bin_: Bin) -> Transistor:
     curve = Curve(transfer.curve_i, transfer.curve_g)
     h_min, h_max = r.row.number("h_fe_min"), r.row.number("h_fe_max")
     h_fe = _gain(r, bin_)
-    times = _switching(r, bin_, curve, h_fe)
+    v_be, c_be = r.get("v_be"), r.get("c_be")
+    times = _switching(r, bin_, TypicalUnit(bin_.ctr, curve, h_fe, v_be, c_be))
     sat_i_f, sat_i_c = _saturation_point(r, transfer, curve)
     (i_ceo_1, t_1), (i_ceo_2, t_2) = _dark_currents(r)
     return Transistor(
         h_fe=h_fe,
         light_spread=r.note(gaps.light_spread(r.unit, transfer.ctr_max / transfer.ctr_min, h_min, h_max)),
-        v_be=r.get("v_be"),
+        v_be=v_be,
         v_be_tc=r.get("v_be_tc"),
         v_ce_sat=r.get("v_ce_sat"),
         sat_i_f=sat_i_f,
@@ -196,7 +192,7 @@ def _transistor(r: _Reader, transfer: Transfer, bin_: Bin) -> Transistor:
         t_1=t_1,
         i_ceo_2=i_ceo_2,
         t_2=t_2,
-        c_be=r.get("c_be"),
+        c_be=c_be,
         tau_0=times.tau_0,
         c_m=times.c_m,
         tau_s=times.tau_s,
@@ -252,10 +248,10 @@ def _dark_currents(r: _Reader) -> tuple[tuple[float, float], tuple[float, float]
     return (r.get("i_ceo", lambda: gaps.i_ceo(r.unit, hot, t_hot, t_cold)), t_cold), (hot, t_hot)
 
 
-def _switching(r: _Reader, bin_: Bin, curve: Curve, h_fe: float) -> SwitchingConstants:
-    """Return the switching constants of the bin's typical unit, whose gain is `h_fe`."""
+def _switching(r: _Reader, bin_: Bin, own: TypicalUnit) -> SwitchingConstants:
+    """Return the switching constants of the bin's typical unit."""
     gain = _moved(r, bin_, *SWITCHING)
-    typical = TypicalUnit(bin_.ctr / gain, curve, h_fe / gain)
+    typical = replace(own, ctr=rounded(own.ctr / gain), h_fe=rounded(own.h_fe / gain))
     plain, saturated = _plain_row(r), _saturated_row(r)
     stated = r.row.number("c_cb")
     # noted only if used: with both switching rows c_cb goes unasked
@@ -266,8 +262,10 @@ def _switching(r: _Reader, bin_: Bin, curve: Curve, h_fe: float) -> SwitchingCon
 
 
 def _plain_row(r: _Reader) -> PlainRow | None:
-    edges = [t for t in (r.row.number("sw_t_r"), r.row.number("sw_t_f")) if t is not None]
-    return PlainRow(max(edges), r.get("sw_i_c"), r.get("sw_r_l")) if edges else None
+    t_r, t_f = r.row.number("sw_t_r"), r.row.number("sw_t_f")
+    if t_r is None and t_f is None:
+        return None
+    return PlainRow(t_r, t_f, r.get("sw_i_c"), r.get("sw_r_l"), r.get("sw_v_cc"))
 
 
 def _saturated_row(r: _Reader) -> SaturatedRow | str:
@@ -279,7 +277,7 @@ def _saturated_row(r: _Reader) -> SaturatedRow | str:
     if i_f is None or r_l is None:
         lacking = [name for name in ("sat_i_f", "sat_r_l") if r.row.number(name) is None]
         return f"saturated row: {' and '.join(lacking)} empty"
-    return SaturatedRow(*times, saturated_current(r.unit, r.get("sat_v_cc"), r_l), i_f, r_l)
+    return SaturatedRow(*times, i_f, r_l, r.get("sat_v_cc"), saturated_voltage(r.unit))
 
 
 def _saturated_times(r: _Reader) -> tuple[float, float] | None:

@@ -12,7 +12,7 @@ from optopick.coupler_cells import Row
 
 GAIN = ("h_fe_min", "h_fe_typ", "h_fe_max")
 SWITCHING = (
-    *("sw_t_r", "sw_t_f", "sw_i_c", "sw_r_l"),
+    *("sw_t_r", "sw_t_f", "sw_v_cc", "sw_i_c", "sw_r_l"),
     *("sat_t_s", "sat_t_off", "sat_v_cc", "sat_i_f", "sat_r_l"),
 )
 

@@ -53,7 +53,7 @@ def run_at_terminal(columns: int, *arguments: str | Path, **environment: str) ->
         env={**kept, "TERM": "xterm-256color", "LANG": "C.UTF-8", **environment},
         stdin=follower,
         stdout=follower,
-        stderr=subprocess.DEVNULL,
+        stderr=subprocess.PIPE,
     )
     os.close(follower)
     shown = bytearray()
@@ -61,5 +61,7 @@ def run_at_terminal(columns: int, *arguments: str | Path, **environment: str) ->
         while chunk := os.read(leader, 65536):
             shown += chunk
     os.close(leader)
-    assert process.wait() in (0, 1)
+    _, errors = process.communicate()
+    assert process.returncode in (0, 1), errors
+    assert b"Traceback" not in errors, errors.decode()
     return shown.decode().replace("\r\n", "\n")

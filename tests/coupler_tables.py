@@ -60,6 +60,7 @@ PHOTOTRANSISTOR = {
     "v_be_tc": "-1.9",
     "sw_t_r": "2",
     "sw_t_f": "3",
+    "sw_v_cc": "10",
     "sw_i_c": "2",
     "sw_r_l": "100",
     "sat_t_s": "20",

@@ -39,6 +39,7 @@ class Winner(NamedTuple):
     r_load: float
     r_be: float | None
     r_shunt: float | None
+    pieces: int = 1
 
 
 @dataclass(frozen=True)
@@ -60,6 +61,7 @@ class Grid:
     r_shunt: np.ndarray
     r_load: np.ndarray
     r_be: np.ndarray
+    pieces: np.ndarray
     rooms: dict[str, np.ndarray] = field(default_factory=dict)
     goals: dict[str, np.ndarray] = field(default_factory=dict)
 
@@ -73,12 +75,16 @@ class Grid:
 
     def winner(self, k: int) -> Winner:
         values = (float(a[k]) for a in (self.r_led, self.r_load, self.r_be, self.r_shunt))
-        return Winner(self.coupler, *(v if np.isfinite(v) else None for v in values))
+        return Winner(self.coupler, *(v if np.isfinite(v) else None for v in values), int(self.pieces[k]))
 
 
 def enumerate_best(brief: Brief, couplers: Sequence[Coupler]) -> Best:
     """The optimum over all couplers and all of the stock."""
-    surveyed = [survey(brief, c) for c in couplers if eligible(brief, c)]
+    return best_of(brief, [survey(brief, c) for c in couplers if eligible(brief, c)])
+
+
+def best_of(brief: Brief, surveyed: Sequence[Grid]) -> Best:
+    """The optimum over grids."""
     grids = [grid for grid in surveyed if grid.feasible.any()]
     if not grids:
         return Best("infeasible")
@@ -107,22 +113,24 @@ def feasible_grid(brief: Brief, coupler: Coupler) -> Grid:
 
 
 @np.errstate(invalid="ignore", divide="ignore", over="ignore")
-def survey(brief: Brief, coupler: Coupler, every_vertex: bool = False) -> Grid:
-    """All combinations if `every_vertex`, else those that hold every check."""
+def survey(brief: Brief, coupler: Coupler, every_vertex: bool = False, failing: bool = False) -> Grid:
+    """All combinations if `every_vertex` or `failing`, else those that hold every check."""
     led, load, base = led_branches(brief, coupler, every_vertex), loads(brief, coupler), bases(brief, coupler)
     barriers = {name: np.full(1, held.room) for name, held in out.barrier_checks(brief, coupler).items()}
     sides = ((led.rooms, len(led.r_led)), (load.rooms, len(load.r)), (base.rooms, len(base.r)), (barriers, 1))
-    alive = [np.arange(n) if every_vertex else holding(rooms, n) for rooms, n in sides]
+    failing = failing or every_vertex
+    alive = [np.arange(n) if failing else holding(rooms, n) for rooms, n in sides]
     index = np.stack([a.ravel() for a in np.meshgrid(*alive, indexing="ij")])
     step = max(1, CHUNK // (4 * led.rows))
     trials = [
-        Trial(brief, coupler, led, load, base, index[:, k : k + step], every_vertex)
+        Trial(brief, coupler, led, load, base, index[:, k : k + step], every_vertex, failing)
         for k in range(0, max(1, index.shape[1]), step)
     ]
     for trial in trials:
         trial.run()
     index = np.concatenate([trial.index for trial in trials], axis=1)
-    grid = Grid(coupler.part, led.r_led[index[0]], led.r_shunt[index[0]], load.r[index[1]], base.r[index[2]])
+    i, j, m = index[:3]
+    grid = Grid(coupler.part, led.r_led[i], led.r_shunt[i], load.r[j], base.r[m], led.pieces[i])
     for (rooms, _), at in zip(sides, index, strict=True):
         grid.rooms.update({name: room[at] for name, room in rooms.items()})
     for name in trials[0].rooms:
@@ -142,12 +150,16 @@ def holding(rooms: dict[str, np.ndarray], n: int) -> np.ndarray:
 # --- the box ---------------------------------------------------------------------------------------------------------
 
 
-def temperatures(brief: Brief, transfer: Transfer) -> list[float]:
+def temperatures(brief: Brief, transfer: Transfer | None) -> list[float]:
     """Coldest, 25 degC, hottest, and where the CTR curve turns between them."""
     low, high = brief.environment.temperature.low, brief.environment.temperature.high
-    signs = np.sign(np.diff(transfer.curve_h))
-    turns = [t for t, a, b in zip(transfer.curve_t[1:-1], signs[:-1], signs[1:], strict=True) if a != b]
+    turns = turning_points(transfer) if transfer else []
     return sorted({low, high, *(t for t in (25.0, *turns) if low < t < high)})
+
+
+def turning_points(transfer: Transfer) -> list[float]:
+    signs = np.sign(np.diff(transfer.curve_h))
+    return [t for t, a, b in zip(transfer.curve_t[1:-1], signs[:-1], signs[1:], strict=True) if a != b]
 
 
 def ends(span: Span) -> list[float]:
@@ -189,6 +201,7 @@ class Branches:
     (rows, n), LED heat [W] (n,). power: worst average of the LED path [W]."""
 
     r_led: np.ndarray
+    pieces: np.ndarray
     r_shunt: np.ndarray
     rooms: dict[str, np.ndarray]
     light: dict[float, np.ndarray]
@@ -202,24 +215,31 @@ class Branches:
 
 
 def led_branches(brief: Brief, coupler: Coupler, every_vertex: bool) -> Branches:
-    series, shunts = _pairs(brief.stock.r_led, brief.stock.r_shunt)
+    series, pieces, shunts = _branches(brief.stock.r_led, brief.stock.r_shunt)
     led, drive = coupler.led, brief.drive
     axes = ((led.v_f_min, led.v_f_max), ends(drive.supply), ends(drive.drop), (0, 1), (0, 1))
     v_f, v, drop, at, to = (np.array(c)[:, None] for c in zip(*product(*axes), strict=True))
     worn = Worn(*series[2:]), None if brief.stock.r_shunt is None else Worn(*shunts[2:])
     rooms: dict[str, np.ndarray] = {}
+    fewer: dict[str, np.ndarray] = {}
     states, power = {}, np.zeros(1)
     for t in temperatures(brief, coupler.transfer):
-        r = resistor_ends(*series[:2], brief.stock.drift, t)[at[:, 0]]
+        r = resistor_ends(series[0] * pieces, series[1], brief.stock.drift, t)[at[:, 0]]
         p = resistor_ends(*shunts[:2], brief.stock.drift, t)[to[:, 0]]
         states[t] = s = led_side.led_state(brief, led, t, v_f, v, drop, r, p)
-        worst_of(rooms, led_side.led_checks(brief, coupler, s, t, r, p, *worn), len(series[0]))
+        worst_of(rooms, led_side.led_checks(brief, coupler, s, t, r / pieces, p, *worn), len(pieces))
+        one_less = r / np.maximum(pieces - 1, 1)
+        worst_of(fewer, led_side.series_checks(s, t, one_less, worn[0]), len(pieces))
         power = np.maximum(power, (v * s.i_branch).max(axis=0))
     most = np.max([s.i_f.max(axis=0) for s in states.values()], axis=0)
     left = led_side.light_left(coupler.ageing, most, max(states), brief.environment.life, brief.signal.lit)
     thin: Callable[[np.ndarray], np.ndarray] = (lambda a: a) if every_vertex else _least_and_most
+    if brief.stock.r_led.pieces > 1:
+        spared = np.minimum(*fewer.values()) >= 0
+        rooms["fewest_pieces"] = np.where((pieces > 1) & spared, -1.0, 1.0)
     return Branches(
         series[0],
+        pieces,
         shunts[0],
         rooms,
         light={t: thin(np.concatenate([s.i_f, s.i_f * left])) for t, s in states.items()},
@@ -229,12 +249,13 @@ def led_branches(brief: Brief, coupler: Coupler, every_vertex: bool) -> Branches
     )
 
 
-def _pairs(series: Position, shunt: Position | None) -> tuple[tuple[np.ndarray, ...], tuple[np.ndarray, ...]]:
-    """Columns of every pair of series and shunt resistor."""
+def _branches(series: Position, shunt: Position | None) -> tuple[tuple[np.ndarray, ...], ...]:
+    """Columns of the series resistor, its pieces, columns of the shunt: every way to put one of each together."""
     first = _columns(series)
     second = tuple(np.array([x]) for x in EMPTY) if shunt is None else _columns(shunt)
-    a, b = np.divmod(np.arange(len(first[0]) * len(second[0])), len(second[0]))
-    return tuple(c[a] for c in first), tuple(c[b] for c in second)
+    every = list(product(range(len(first[0])), range(1, series.pieces + 1), range(len(second[0]))))
+    a, pieces, b = (np.array(c) for c in zip(*every, strict=True))
+    return tuple(c[a] for c in first), pieces, tuple(c[b] for c in second)
 
 
 def _least_and_most(rows: np.ndarray) -> np.ndarray:
@@ -308,15 +329,16 @@ class Trial:
     base: Bases
     index: np.ndarray
     every_vertex: bool
+    failing: bool
     rooms: dict[str, np.ndarray] = field(default_factory=dict)
     goals: dict[str, np.ndarray] = field(default_factory=dict)
 
     def run(self) -> None:
-        """Find rooms and goals at the worst of all vertices; failures are dropped early unless all are wanted."""
+        """Find rooms and goals at the worst of all vertices; failures are dropped early unless they are wanted."""
         for look in (self._sums, self._static, self._timing):
             for x in lots(self.brief, self.coupler):
                 look(x, *self.index[:3])
-                if not self.every_vertex:
+                if not self.failing:
                     self._drop()
 
     def _drop(self) -> None:

@@ -17,6 +17,7 @@ from optopick.coupler import Ageing, Coupler, Led, Rating
 K_OVER_Q = 1.380649e-23 / 1.602176634e-19
 KELVIN = 273.15
 DARK = 0.01
+DIODE = 1.0
 
 
 class Held(NamedTuple):
@@ -119,22 +120,32 @@ class Worn(NamedTuple):
     voltage: np.ndarray
 
 
+def series_checks(s: LedState, t, r_led, worn: Worn) -> dict[str, Held]:
+    """What one piece of the series resistor bears; r_led: of that piece."""
+    return {
+        "r_led_power": below(s.i_branch**2 * r_led, worn.power * chip_share(t)),
+        "r_led_voltage": below(s.i_branch * r_led, worn.voltage),
+    }
+
+
 def led_checks(brief: Brief, coupler: Coupler, s: LedState, t, r_led, r_shunt, series: Worn, shunt: Worn | None):
     led, drive, transfer = coupler.led, brief.drive, coupler.transfer
+    most_dark = DARK * transfer.i_ref if transfer else coupler.logic.i_f_off
     held = {
         "led_current": below(s.i_f, rating(led.i_max, t)),
         "led_power": below(s.i_f * s.v_f, rating(led.p_max, t)),
-        "led_current_low": above(s.i_f, transfer.curve_i[0]),
-        "led_dark": below(s.i_off, DARK * transfer.i_ref),
-        "r_led_power": below(s.i_branch**2 * r_led, series.power * chip_share(t)),
-        "r_led_voltage": below(s.i_branch * r_led, series.voltage),
+        "led_dark": below(s.i_off, most_dark),
+        **series_checks(s, t, r_led, series),
     }
+    if transfer:
+        held["led_current_low"] = above(s.i_f, transfer.curve_i[0])
     if drive.max_current is not None:
         held["driver_current"] = below(s.i_branch, drive.max_current)
     if drive.on_current_min > 0:
         held["input_current"] = above(s.i_branch, drive.on_current_min)
     if drive.reverse > 0:
-        held["reverse_voltage"] = below(np.float64(drive.reverse), led.v_r_max)
+        guarded = drive.reverse_diode and drive.reverse > led.v_r_max
+        held["reverse_voltage"] = below(np.float64(DIODE if guarded else drive.reverse), led.v_r_max)
     if shunt is not None:
         held["r_shunt_power"] = below(s.v_f**2 / r_shunt, shunt.power * chip_share(t))
     return held

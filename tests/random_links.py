@@ -243,7 +243,7 @@ def field_brief(rng: np.random.Generator, series: str = "E12", circuit: OutputCi
         drop=Span(0.0, float(rng.choice([0.0, 1.0]))),
         max_current=float(rng.choice([15e-3, 30e-3])) if rng.random() < 0.6 else None,
         off_leakage=0.0,
-        off_voltage=float(rng.choice([1.0, 3.0, 5.0])),
+        off_voltage=float(rng.choice([0.5, 1.0, 3.0, 5.0])),
         off_current=off_current,
         on_current_min=float(rng.choice([0.0, 2e-3])),
         reverse=float(rng.choice([0.0, 4.0, 30.0])),
@@ -254,7 +254,8 @@ def field_brief(rng: np.random.Generator, series: str = "E12", circuit: OutputCi
     # 30 V on a few kiloohms is more than one small resistor takes
     r_led = rated(position(series, 820, 10e3), float(rng.choice([0.25, 0.5, 1.0])), float(rng.choice([20.0, 200.0])))
     r_led = replace(r_led, pieces=int(rng.integers(1, 4)))
-    return replace(drawn, drive=drive, stock=replace(drawn.stock, r_led=r_led, r_shunt=shunt))
+    slow = replace(drawn.signal, shortest_pulse=float(np.exp(rng.uniform(np.log(0.3e-3), np.log(20e-3)))))
+    return replace(drawn, signal=slow, drive=drive, stock=replace(drawn.stock, r_led=r_led, r_shunt=shunt))
 
 
 def rated(stock: Position, power: float, voltage: float) -> Position:
@@ -269,5 +270,7 @@ def mixed_brief(rng: np.random.Generator, series: str = "E12") -> Brief:
     drawn = (brief, sink_brief, field_brief)[int(rng.integers(3))](rng, series, circuit)
     # fewer limits than `brief` draws: it is meant for one kind, and these must leave room for others
     limits = drawn.limits
-    kept = {name: getattr(limits, name) if rng.random() < 0.5 else None for name in ("edge_time", "delay", "power")}
+    kept = {name: getattr(limits, name) if rng.random() < 0.4 else None for name in ("edge_time", "delay", "power")}
+    if drawn.drive.circuit is DriveCircuit.FIELD:
+        kept["power"] = None  # `brief` draws it for a few volts
     return replace(drawn, limits=replace(limits, distortion=None, **kept))

@@ -84,7 +84,7 @@ class TestExitCodes:
         assert ran.out == ""
         assert "lit" in ran.err
 
-    @pytest.mark.parametrize("command", ["pick", "rank", "tradeoff", "why"])
+    @pytest.mark.parametrize("command", ["pick", "rank", "tradeoff", "why", "sweep", "yield"])
     def test_no_design(self, impossible, command):
         ran = run(command, impossible)
         assert ran.code == 3, ran
@@ -266,6 +266,55 @@ class TestJson:
         assert found["objective"]["name"] == "power"
 
 
+class TestBench:
+    """`sweep` and `yield`."""
+
+    def test_sweep_goes_over_the_stock(self):
+        found = json_of(run("sweep", TINY, *SOUND, "--position", "r_led", "--json"))
+        assert set(found) >= {"position", "chosen", "steps"}
+        assert found["position"] == "r_led"
+        assert [step["ohms"] for step in found["steps"]] == [470.0, 680.0, 1000.0]
+        margins = []
+        for step in found["steps"]:
+            assert step["worst"]["design"]["r_led"] == step["ohms"]
+            margins += [check["value"] for check in step["worst"]["checks"] if check["name"] == "ctr_margin"]
+        assert margins == sorted(margins, reverse=True)
+
+    def test_sweep_of_the_best_design(self):
+        best = json_of(run("pick", TINY, "--json"))
+        found = json_of(run("sweep", TINY, "--json"))
+        chosen = next(step["worst"] for step in found["steps"] if step["ohms"] == best["design"]["r_load"])
+        assert found["position"] == "r_load"
+        assert chosen["design"] == best["design"]
+        assert chosen["checks"] == best["checks"]
+
+    def test_sweep_as_csv_and_picture(self, tmp_path):
+        picture = tmp_path / "sweep.svg"
+        ran = run("sweep", TINY, "--csv", "--plot", picture)
+        assert ran.code == 0
+        assert len(list(csv.reader(io.StringIO(ran.out)))) == 4
+        assert b"<svg" in picture.read_bytes()
+
+    def test_every_unit_of_a_sound_design_passes(self):
+        found = json_of(run("yield", TINY, *SOUND, "--samples", "5000", "--json"))
+        assert (found["samples"], found["good"]) == (5000, 5000)
+        assert run("yield", TINY, *SOUND, "--samples", "2000").code == 0
+
+    def test_no_unit_of_an_unsound_one_does(self):
+        """Its LED current is too small at every vertex but few."""
+        ran = run("yield", TINY, *UNSOUND, "--samples", "2000", "--json")
+        assert ran.code == 1
+        assert json_of(ran)["good"] < 2000
+
+    def test_units_are_drawn_by_the_seed(self):
+        def drawn(*options: str) -> str:
+            return run("yield", TINY, *UNSOUND, "--samples", "2000", "--json", *options).out
+
+        assert drawn("--seed", "4") == drawn("--seed", "4")
+        assert drawn("--seed", "4") != drawn("--seed", "5")
+        assert drawn("--seed", "4", "--normal") != drawn("--seed", "4")
+
+
 class TestPlainText:
     @pytest.mark.parametrize(
         "arguments",
@@ -277,6 +326,8 @@ class TestPlainText:
             ("rank", TINY, "--top", "1"),
             ("tradeoff", TINY, "--first", "delay", "--second", "power", "--points", "2"),
             ("why", TINY),
+            ("sweep", TINY, "--position", "r_be"),
+            ("yield", TINY, "--samples", "1000"),
         ],
         ids=lambda arguments: arguments[0],
     )
@@ -334,6 +385,8 @@ class TestAtTerminal:
             ("rank", "examples/shortlist.toml"),
             ("tradeoff", "examples/shortlist.toml", "--first", "delay", "--points", "3"),
             ("why", TINY),
+            ("sweep", "examples/shortlist.toml"),
+            ("yield", TINY, "--samples", "1000"),
         ],
         ids=lambda arguments: arguments[0],
     )
@@ -371,6 +424,12 @@ class TestWrongInput:
             (("tradeoff", TINY, "--plot", "front.gif"), "front.gif"),
             (("tradeoff", TINY, "--plot", "no/such/folder/front.svg"), "front.svg"),
             (("why", TINY, "--time-limit", "-1"), "--time-limit"),
+            (("sweep", TINY, "--position", "r_x"), "r_x"),
+            (("sweep", TINY, "--position", "r_shunt"), "r_shunt"),
+            (("sweep", TINY, "--r-led", "1k"), "--coupler"),
+            (("sweep", TINY, "--coupler", "TINYPHOTO"), "--r-led"),
+            (("yield", TINY, "--samples", "0"), "--samples"),
+            (("yield", TINY, "--seed", "x"), "--seed"),
         ],
     )
     def test_a_message_and_no_traceback(self, arguments, said):

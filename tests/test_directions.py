@@ -8,14 +8,15 @@ import numpy as np
 import pytest
 import random_links
 
-from optopick.coupler import Coupler
+from optopick.coupler import Coupler, Transfer
 from optopick.physics import switching
 from optopick.physics.ageing import light_left
+from optopick.physics.charge import Base, Load
 from optopick.physics.heat import derated, output_dissipation, resistor_derated
 from optopick.physics.leakage import dark_current, dark_current_held
 from optopick.physics.led import branch_current, forward_voltage, led_current, led_current_of_leak
 from optopick.physics.saturation import load_current, overdrive_to_hold, rise_with_current, v_ce_on
-from optopick.physics.transfer import base_led_current, collector_current, led_current_for, relative_ctr
+from optopick.physics.transfer import base_led_current, collector_current, led_current_for
 from optopick.recheck import review
 from optopick.result import Design
 
@@ -55,13 +56,13 @@ class Link:
         return led_current_for(self.coupler.transfer, self.ctr, 1.0, self.j_s)
 
     @property
-    def gain(self):
-        return self.ctr * relative_ctr(self.coupler.transfer, self.i_sat)
-
-    @property
-    def tau(self):
-        transistor = self.coupler.transistor
-        return switching.time_constant(transistor.tau_0, transistor.c_m, self.gain, self.r_load, 15e-12)
+    def swing(self):
+        """All that the load brings to the times; arrays of one axis throughout."""
+        transistor, ctr = self.coupler.transistor, np.atleast_1d(self.ctr)
+        gain, j_s = transistor.h_fe, np.atleast_1d(self.j_s)
+        base = Base(transistor.tau_0 / gain, transistor.c_m / gain, transistor.c_be, transistor.v_be, self.eta)
+        load = Load(j_s, self.v_cc, self.v_cc - transistor.v_ce_sat, np.atleast_1d(self.r_load), 15e-12, self.t)
+        return switching.swing(base, load, self.coupler.transfer, ctr, 0.7, 0.7)
 
     @property
     def margin(self):
@@ -69,25 +70,24 @@ class Link:
 
     @property
     def edge_on(self):
-        return switching.edge_on(self.tau, self.i_eff, self.i_be, self.i_sat)
+        return switching.edge_on(self.swing.edge, self.i_eff - self.i_be, self.i_sat)
 
     @property
     def edge_off(self):
-        return switching.edge_off(self.tau, self.i_be, self.i_sat)
+        return switching.time_off(self.swing.edge, self.i_be)
 
     @property
     def storage(self):
-        return switching.storage(self.coupler.transistor.tau_s, self.i_eff, self.i_be, self.i_sat)
+        tau_s, s = self.coupler.transistor.tau_s, self.swing
+        return switching.storage(tau_s, self.i_eff, self.i_be, s.i_sat, s.hold)
 
     @property
     def delay_on(self):
-        transistor = self.coupler.transistor
-        charge = switching.base_charging(transistor.c_be, transistor.v_be, self.eta, self.i_eff, self.i_be)
-        return charge + switching.crossing_on(self.tau, 0.7, self.i_eff, self.i_be, self.i_sat)
+        return switching.delay_on(self.swing, self.eta, self.i_eff, self.i_be)
 
     @property
     def delay_off(self):
-        return self.storage + switching.crossing_off(self.tau, 0.7, self.i_be, self.i_sat)
+        return switching.delay_off(self.swing, self.coupler.transistor.tau_s, self.i_eff, self.i_be)
 
 
 SWEEPS = {
@@ -105,7 +105,6 @@ RISES = [
     *(("storage", name) for name in ("r_load", "r_be", "left", "ctr")),
     *(("delay_on", name) for name in ("r_led",)),
     *(("delay_off", name) for name in ("r_be", "left", "ctr")),
-    *(("tau", name) for name in ("r_load", "ctr")),
 ]
 FALLS = [
     *(("margin", name) for name in ("r_led",)),
@@ -144,35 +143,47 @@ def test_the_off_edge_knows_nothing_of_the_light(name):
 
 
 def test_off_edge_rises_with_the_load_without_base_resistor():
-    """Then it is tau*ln 9, and tau rises."""
+    """Then it is time constants times logarithms of fixed ratios, and the time constants rise."""
     for coupler in couplers():
         assert np.all(np.diff(Link(coupler, r_load=SWEEPS["r_load"], r_be=np.inf).edge_off) > 0)
+
+
+def at_constant_ctr(transit: float, c_cb: float, r_load: np.ndarray) -> switching.Swing:
+    """5 V and a CTR of 1 whatever the current: time constants from transit time and collector capacitance alone."""
+    flat = Transfer(1.0, 1.0, 5e-3, (1e-9, 60e-3), (1.0, 1.0), (-40.0, 110.0), (1.0, 1.0), 0.0)
+    base = Base(transit, c_cb, 0.0, 0.65, 2.5e-3)
+    return switching.swing(base, Load(4.8 / r_load, 5.0, 4.8, r_load, 0.0, 25.0), flat, np.ones(len(r_load)), 0.7, 0.7)
 
 
 def test_off_edge_may_fall_with_the_load_beside_a_base_resistor():
     """A larger load resistor lowers the current to be switched off against a fixed extraction.
 
-    The logarithm falls like 1/r_load once extraction outweighs the load; tau = gain*(tau_0 + r_load*c_m) makes up for
-    it only through its second part. So the edge falls while r_load*c_m is small beside tau_0 and the base resistor
-    strong, and rises again after.
+    The logarithm falls like 1/r_load once extraction outweighs the load; the time constant makes up for it only by the
+    charge of the collector junction over a falling current. So the edge falls while the transit time's charge is most
+    of it and the base resistor strong; with the junction's charge alone it comes to rest at charge over extraction.
     """
-    i_be, r_load = 2e-3, np.geomspace(1e3, 1e6, 60)
-    i_sat = 5.0 / r_load
-    edge = switching.edge_off(switching.time_constant(2e-6, 0.2e-9, 1.0, r_load, 0.0), i_be, i_sat)
-    assert edge[20] < 0.9 * edge[0]
-    with_miller = switching.edge_off(switching.time_constant(2e-6, 5e-9, 1.0, r_load, 1e-12), i_be, i_sat)
-    assert with_miller[-1] > with_miller[0]
+    r_load = np.geomspace(1e3, 200e3, 60)
+    slow_itself, slow_by_load = (
+        switching.time_off(at_constant_ctr(transit, c_cb, r_load).edge, 5e-3)
+        for transit, c_cb in ((20e-9, 0.0), (0.0, 10e-12))
+    )
+    assert falls(slow_itself)
+    assert slow_itself[-1] < 0.05 * slow_itself[0]
+    assert rises(slow_by_load)
+    assert slow_by_load[-1] < 1.5 * slow_by_load[30]
 
 
 def test_on_edge_falls_with_the_load_only_while_the_gain_is_slow_by_itself():
-    """Saturated deeply it is about 0.8*tau*i_sat/(light - base), and tau*i_sat is gain*(tau_0/r_load + c_m)."""
+    """Saturated deeply it is about charge over base current: the transit time's charge falls with the load's current,
+    the collector junction's does not."""
     r_load = np.geomspace(1e3, 50e3, 30)
     slow_itself, slow_by_load = (
-        switching.edge_on(switching.time_constant(tau_0, c_m, 1.0, r_load, c), 10e-3, 1e-3, 5.0 / r_load)
-        for tau_0, c_m, c in ((5e-6, 1e-9, 0.0), (0.0, 1e-9, 0.0))
+        switching.time_on(at_constant_ctr(transit, c_cb, r_load).edge, 50e-3)
+        for transit, c_cb in ((20e-9, 0.0), (0.0, 10e-12))
     )
-    assert np.all(np.diff(slow_itself) < 0)
-    assert slow_by_load[-1] == pytest.approx(0.8 * 1e-9 * 5.0 / 9e-3, rel=0.01)
+    assert falls(slow_itself)
+    assert slow_itself[-1] == pytest.approx(20e-9 * 0.8 * 4.8 / 50e3 / (2.5e-3 * 50e-3), rel=0.01)
+    assert slow_by_load[-1] == pytest.approx(slow_by_load[15], rel=0.02)
 
 
 def falls(values) -> bool:
@@ -223,20 +234,6 @@ def test_heat_and_wear():
     assert falls(light_left(ageing, 10e-3, np.linspace(-20.0, 100.0, 40), 1e5, 0.5))
     assert falls(light_left(ageing, 10e-3, 70.0, np.linspace(1e3, 2e5, 40), 0.5))
     assert falls(light_left(ageing, 10e-3, 70.0, 1e5, np.linspace(0.05, 1.0, 40)))
-
-
-def test_an_output_that_does_not_saturate_may_be_slowest_inside_the_box():
-    """Why the comparison of on edges asks for saturation: the slowest unit is the one that only just saturates.
-
-    Below that point the swing shrinks and with it the time, above it the drive left over grows. A vertex on each side
-    misses the point between.
-    """
-    tau_per_gain, i_eff = 5e-6, 1e-3
-    ctr = np.linspace(0.7, 1.4, 201)
-    i_sat = 1e-3 / ctr
-    edge = switching.edge_on(tau_per_gain * ctr, i_eff, 0.0, i_sat)
-    assert 0 < edge.argmax() < len(ctr) - 1
-    assert ctr[edge.argmax()] == pytest.approx(1.0, abs=0.01)
 
 
 def test_power_falls_with_both_resistors():

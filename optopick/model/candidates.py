@@ -31,7 +31,8 @@ class LoadCandidates:
 
     swing: over corner C, the two ends of its tolerance, and value n. Over (C, n): for_margin: LED current for the CTR
     margin [A] (None without that limit); for_level: LED current that holds the on level [A]; leak_room: leakage the off
-    level allows [A]. heat: (T, n) output dissipation [W]; power: (n,) worst average power of the output path [W]. keep: check name to (n,) mask.
+    level allows [A]. heat: (T, n) output dissipation [W]; power: (n,) worst average power of
+    the output path [W]. keep: check name to (n,) mask.
     """
 
     r_load: Array

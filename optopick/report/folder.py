@@ -32,6 +32,12 @@ def write_folder(target: Path, files: Mapping[str, bytes | str], force: bool) ->
         shutil.rmtree(part, ignore_errors=True)
 
 
+def refuse_occupied(target: Path, force: bool) -> None:
+    """Raise InputError before any work where `write_folder` would refuse what is there for lack of `force`."""
+    if os.path.lexists(target) and not force:
+        raise InputError([Mistake(str(target), "something that is there already", "a new folder, or --force")])
+
+
 def _check_names(files: Mapping[str, bytes | str]) -> None:
     for name in files:
         if not name or name != Path(name).name or name.startswith("."):

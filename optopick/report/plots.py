@@ -2,7 +2,10 @@
 
 from __future__ import annotations
 
+from io import BytesIO
+
 import numpy as np
+from matplotlib import rc_context
 from matplotlib.backends.backend_agg import FigureCanvasAgg
 from matplotlib.figure import Figure
 from matplotlib.ticker import EngFormatter
@@ -69,3 +72,11 @@ def sweep_figure(sweep: Sweep, title: str) -> Figure:
     axes.grid(True, which="both", alpha=0.3)
     axes.legend(fontsize=8)
     return figure
+
+
+def figure_bytes(figure: Figure, kind: str) -> bytes:
+    """A figure as the bytes of an SVG (text as text, no date) or PNG file."""
+    buffer = BytesIO()
+    with rc_context({"svg.fonttype": "none", "svg.hashsalt": "optopick"}):
+        figure.savefig(buffer, format=kind, dpi=150, metadata={"Date": None} if kind == "svg" else None)
+    return buffer.getvalue()

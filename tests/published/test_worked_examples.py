@@ -32,6 +32,7 @@ from optopick.brief import (
 from optopick.coupler import Ageing, Barrier, Coupler, Kind, Led, Rating, Transfer, Transistor
 from optopick.physics import switching
 from optopick.physics.ageing import acceleration_factor, light_left
+from optopick.physics.charge import Base, Load
 from optopick.physics.heat import derated, resistor_derated
 from optopick.physics.leakage import dark_current
 from optopick.physics.led import branch_current, forward_voltage, led_current
@@ -289,10 +290,13 @@ def test_storage_exercise(off_drive, nanoseconds):
     assert switching.storage(10e-9, light, base, load) == pytest.approx(nanoseconds * 1e-9, rel=1e-3)
 
 
-def test_edge_without_extraction():
+def test_edges_of_a_constant_time_constant():
     """Univ. at Buffalo course page (READ): i_C(t) = beta*I_B*(1 - exp(-t/tau)); hence 10 to 90 % takes
     tau*ln 9 = 2.197 tau with no extraction, and the on edge the time between its own two instants."""
-    assert switching.edge_off(1e-6, 0.0, 1.0) == pytest.approx(2.197e-6, rel=1e-3)
+    transit, eta = 2e-9, 2e-3  # no capacitance: tau is transit time times gain, 1 us
+    load = Load(1e-3, 5.0, 5.0, 5e3, 0.0, 25.0)
+    steps = switching.steps(Base(transit, 0.0, 0.0, 0.65, eta), load, FLAT, 1.0, switching.EDGE)
+    assert switching.time_off(steps, 0.0) == pytest.approx(2.197e-6, rel=1e-3)
     drive = 4.0
     t10, t90 = (-np.log(1 - share / drive) for share in (0.1, 0.9))
-    assert switching.edge_on(1e-6, drive, 0.0, 1.0) == pytest.approx((t90 - t10) * 1e-6, rel=1e-9)
+    assert switching.edge_on(steps, drive * 1e-3, 1e-3) == pytest.approx((t90 - t10) * 1e-6, rel=1e-9)
