@@ -6,6 +6,7 @@ from dataclasses import dataclass
 
 from optopick.brief import GoalName
 from optopick.coupler import Assumed, Coupler
+from optopick.read_couplers import SetAside
 from optopick.result import Check, Objective, Rejected, Result, Review, Status
 
 CAUSES: dict[str, tuple[str, ...]] = {
@@ -169,3 +170,65 @@ class Sweep:
     position: str
     chosen: float | None
     steps: tuple[Step, ...]
+
+
+@dataclass(frozen=True)
+class FittedTime:
+    """One switching time [s]: as the sheet gives it, and as the resolved constants reproduce it.
+
+    fitted: the constants are meant to meet it, and miss it only where `Fitted.note` says why; else a comparison.
+    """
+
+    column: str
+    given: float
+    reproduced: float
+    fitted: bool
+
+    @property
+    def residual(self) -> float:
+        """Reproduced over given, less one, in per cent."""
+        return 100.0 * (self.reproduced / self.given - 1.0)
+
+
+@dataclass(frozen=True)
+class Fitted:
+    """One part and bin: its switching rows beside its constants, and why a row was not used (empty: all were).
+
+    transit: transit time [s]; c_cb: collector-base capacitance at 0 V [F]; tau_s: storage constant [s].
+    """
+
+    part: str
+    transit: float
+    c_cb: float
+    tau_s: float
+    times: tuple[FittedTime, ...]
+    note: str
+
+
+@dataclass(frozen=True)
+class CheckedRow:
+    """A usable row of a coupler table: part and bin, its line in the file, and what rules filled in."""
+
+    part: str
+    row: int
+    assumed: tuple[Assumed, ...]
+
+
+@dataclass(frozen=True)
+class Gap:
+    """A parameter that some rows leave out: the rule that fills it, those parts, and the different values taken."""
+
+    parameter: str
+    rule: str
+    parts: tuple[str, ...]
+    values: tuple[str, ...]
+
+
+@dataclass(frozen=True)
+class TableCheck:
+    """A coupler table looked at by itself: usable rows, rows set aside with the reason, gaps, the commonest first."""
+
+    file: str
+    rows: tuple[CheckedRow, ...]
+    set_aside: tuple[SetAside, ...]
+    gaps: tuple[Gap, ...]

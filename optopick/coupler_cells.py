@@ -16,6 +16,7 @@ from pathlib import Path
 from optopick.coupler import Kind
 from optopick.coupler_columns import UNITS, Column, schema
 from optopick.coupler_curves import Curve, read_points
+from optopick.coupler_files import Place, read_file, reads
 from optopick.errors import InputError, Mistake
 from optopick.units import QuantityError, parse_quantity
 
@@ -66,22 +67,30 @@ class _Record:
 def read_rows(path: Path) -> tuple[Row, ...]:
     """Read every row of the table at `path`; raises InputError with every mistake of the file."""
     mistakes: list[Mistake] = []
-    records = list(_records(path, mistakes))
+    place, records = _file(path, mistakes)
     if not records:
-        mistakes = mistakes or [Mistake(path.name, "no header line", "a line with the names of the columns")]
+        mistakes = mistakes or [Mistake(place.name, "no header line", "a line with the names of the columns")]
         raise InputError(mistakes)
     header, *body = records
-    columns = _header(path.name, header, mistakes)
-    rows = [row for record in body if (row := _row(path.name, columns, record, mistakes)) is not None]
-    _check_names(path.name, rows, mistakes)
+    columns = _header(place, header, mistakes)
+    rows = [row for record in body if (row := _row(place, columns, record, mistakes)) is not None]
+    _check_names(place, rows, mistakes)
     if not body and not mistakes:
-        mistakes.append(Mistake(path.name, "no rows", "one line per part and CTR bin below the header"))
+        mistakes.append(Mistake(place.name, "no rows", "one line per part and CTR bin below the header"))
     if mistakes:
         raise InputError(mistakes)
     return tuple(rows)
 
 
 # ---- lines ----------------------------------------------------------------------------------------------------------
+
+
+def _file(path: Path, mistakes: list[Mistake]) -> tuple[Place, list[_Record]]:
+    """Return how the lines of the file are called, and the header and rows in it."""
+    if not reads(path):
+        return Place(path.name, "line"), list(_records(path, mistakes))
+    place, lines = read_file(path)
+    return place, [_Record(number, cells) for number, cells in lines]
 
 
 def _text(path: Path) -> str:
@@ -128,10 +137,10 @@ def _delimiter(lines: list[str]) -> str:
 # ---- header ---------------------------------------------------------------------------------------------------------
 
 
-def _header(file: str, header: _Record, mistakes: list[Mistake]) -> tuple[str, ...]:
+def _header(place: Place, header: _Record, mistakes: list[Mistake]) -> tuple[str, ...]:
     """Return the column of each cell, "" where there is none; unknown, repeated and missing columns are mistakes."""
     known = schema().columns
-    where = f"{file} line {header.line}"
+    where = place.at(header.line)
     names = tuple(name.lower() for name in header.cells)
     for name in dict.fromkeys(names):
         if name and name not in known:
@@ -152,9 +161,9 @@ def _nearest(name: str) -> str:
 # ---- rows -----------------------------------------------------------------------------------------------------------
 
 
-def _row(file: str, columns: tuple[str, ...], record: _Record, mistakes: list[Mistake]) -> Row | None:
+def _row(place: Place, columns: tuple[str, ...], record: _Record, mistakes: list[Mistake]) -> Row | None:
     """Read one line; None where it does not line up with the header."""
-    where = f"{file} line {record.line}"
+    where = place.at(record.line)
     if len(record.cells) < len(columns) or any(record.cells[len(columns) :]):
         expected = f"{len(columns)} as in the header, with a delimiter for every empty cell"
         mistakes.append(Mistake(where, f"{len(record.cells)} cells", expected))
@@ -314,13 +323,13 @@ def _curve_relations(where: str, row: Row) -> Iterator[Mistake]:
         yield Mistake(f"{where}, column ctr_temperature", found, "points on both sides of 25 °C")
 
 
-def _check_names(file: str, rows: list[Row], mistakes: list[Mistake]) -> None:
+def _check_names(place: Place, rows: list[Row], mistakes: list[Mistake]) -> None:
     seen: dict[str, int] = {}
     for row in rows:
         first = seen.setdefault(row.name.casefold(), row.line)
         if row.name and first != row.line:
-            expected = f"each part and bin once (first on line {first})"
-            mistakes.append(Mistake(f"{file} line {row.line}, column part", _quoted(row.name), expected))
+            expected = f"each part and bin once (first on {place.word} {first})"
+            mistakes.append(Mistake(f"{place.at(row.line)}, column part", _quoted(row.name), expected))
 
 
 def _quoted(text: str) -> str:

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Callable
-from dataclasses import replace
+from dataclasses import dataclass, replace
 from functools import cache
 from typing import TypeVar
 
@@ -24,6 +24,15 @@ Value = TypeVar("Value")
 _LEAST_OVERDRIVE = 1.05
 
 
+@dataclass(frozen=True)
+class Sheet:
+    """The switching rows of a data sheet and the typical unit they are of; saturated: the row, or what it lacks."""
+
+    typical: TypicalUnit
+    plain: PlainRow | None
+    saturated: SaturatedRow | str
+
+
 class _Reader:
     """One row being resolved: its cells, and what has been assumed so far."""
 
@@ -33,6 +42,7 @@ class _Reader:
         self.row = row
         self.unit = Unit(row.name, Kind(row.text("kind")))
         self.assumed: list[Assumed] = []
+        self.sheet: Sheet | None = None
         self._check_needed()
 
     def _check_needed(self) -> None:
@@ -80,6 +90,11 @@ def resolve(row: Row, bin_: Bin | None) -> Coupler:
 
     bin_: the row's place among the bins of its part, of a row that states CTR.
     """
+    return resolve_with_sheet(row, bin_)[0]
+
+
+def resolve_with_sheet(row: Row, bin_: Bin | None) -> tuple[Coupler, Sheet | None]:
+    """Return `resolve`'s coupler with the switching rows behind its constants, None of a logic output."""
     r = _Reader(row)
     led = _led(r)
     stated_led, stated_total = row.number("p_led"), row.number("p_total")
@@ -90,7 +105,7 @@ def resolve(row: Row, bin_: Bin | None) -> Coupler:
     logic = _logic(r) if is_logic else None
     transistor = _transistor(r, transfer, bin_) if transfer and bin_ else None
     specified = transfer.i_ref if transfer else r.need("i_f_on")
-    return Coupler(
+    coupler = Coupler(
         part=row.name,
         maker=row.text("maker"),
         kind=r.unit.kind,
@@ -109,6 +124,7 @@ def resolve(row: Row, bin_: Bin | None) -> Coupler:
         row=row.line,
         assumed=tuple(r.assumed),
     )
+    return coupler, r.sheet
 
 
 def _base_pin(r: _Reader) -> bool:
@@ -252,11 +268,11 @@ def _switching(r: _Reader, bin_: Bin, own: TypicalUnit) -> SwitchingConstants:
     """Return the switching constants of the bin's typical unit."""
     gain = _moved(r, bin_, *SWITCHING)
     typical = replace(own, ctr=rounded(own.ctr / gain), h_fe=rounded(own.h_fe / gain))
-    plain, saturated = _plain_row(r), _saturated_row(r)
+    r.sheet = Sheet(typical, _plain_row(r), _saturated_row(r))
     stated = r.row.number("c_cb")
     # noted only if used: with both switching rows c_cb goes unasked
     c_cb = gaps.usual(r.unit, "c_cb") if stated is None else Filled(stated, None)
-    found = switching_constants(r.unit, typical, plain, saturated, c_cb).with_gain_times(gain)
+    found = switching_constants(r.unit, typical, r.sheet.plain, r.sheet.saturated, c_cb).with_gain_times(gain)
     r.assumed.extend(found.assumed)
     return found
 

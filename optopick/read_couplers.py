@@ -5,17 +5,18 @@ The columns, their units and the rules that fill gaps are those of `optopick.cou
 
 from __future__ import annotations
 
+from contextlib import suppress
 from dataclasses import dataclass
 from pathlib import Path
 
 from optopick.coupler import Coupler
 from optopick.coupler_cells import Row, read_rows
 from optopick.coupler_columns import blank_template, columns_markdown
-from optopick.coupler_rows import resolve
+from optopick.coupler_rows import Sheet, resolve, resolve_with_sheet
 from optopick.coupler_sheets import Bin, bins_of
 from optopick.gaps import UnusableError
 
-__all__ = ["CouplerTable", "SetAside", "blank_template", "columns_markdown", "read_couplers"]
+__all__ = ["CouplerTable", "SetAside", "blank_template", "columns_markdown", "read_couplers", "sheets_of"]
 
 
 @dataclass(frozen=True)
@@ -49,6 +50,16 @@ def read_couplers(path: Path) -> CouplerTable:
         set_aside=tuple(outcome for outcome in outcomes if isinstance(outcome, SetAside)),
         path=path,
     )
+
+
+def sheets_of(path: Path) -> tuple[tuple[Coupler, Sheet | None], ...]:
+    """Return the couplers of a table, each with the switching rows behind its constants; raises InputError as above."""
+    rows = read_rows(path)
+    found = []
+    for row, bin_ in zip(rows, bins_of(rows), strict=True):
+        with suppress(UnusableError):
+            found.append(resolve_with_sheet(row, bin_))
+    return tuple(found)
 
 
 def _outcome(row: Row, bin_: Bin | None) -> Coupler | SetAside:

@@ -213,6 +213,29 @@ def _hint(text: object) -> str:
     return ", with a decimal point" if isinstance(text, str) and "," in text else ""
 
 
+def quantity_pattern(unit: str) -> str:
+    """Return a regular expression, for editors, that every text `parse_quantity` can read in `unit` matches.
+
+    Written in what JavaScript and Python have in common. It is no stricter than the reader, and may be less so.
+    """
+    rule = _UNITS[unit]
+    prefix = f"[TGMkcmuµμnpf{'K' if rule.trade_kilo else ''}]"
+    names = [re.escape(name) for name in rule.fixed]
+    names += [f"{prefix}?{re.escape(name)}" for name in rule.scaled]
+    names += [prefix] if rule.bare_prefix else []
+    suffix = "|".join(names).replace("Ω", "[Ω\u2126]").replace("°C", "(?:°C|\u2103)").replace("\\-", "-")
+    number = _NUMBER.replace("+-", "+\u2212-")
+    return rf"^\s*(?:{number}(?:\s*(?:{suffix}))?{_code_pattern(rule)})\s*$"
+
+
+def _code_pattern(rule: _Unit) -> str:
+    letters = "".join(letter for letter, (_, unit) in rkm_codes.IEC60062_MAPS.items() if unit == rule.shown)
+    if not letters:
+        return ""
+    names = "|".join(rule.scaled)
+    return f"|(?:[0-9]+[{letters}\u2126][0-9]*|[{letters}\u2126][0-9]+)(?:\\s*(?:{names}|\u2126))?"
+
+
 def format_quantity(value: float, unit: str, digits: int = 3) -> str:
     """Show `value` (SI, degC or h) of `unit` with `digits` significant digits: "4.7 kΩ", "52 µs", "-20 °C".
 

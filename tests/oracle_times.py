@@ -146,7 +146,7 @@ def times(coupler: Coupler, x: Lot, s: Swing, i_eff, r_be) -> Times:
     held = coupler.transistor.tau_s * np.log(np.maximum(i_eff / (s.i_sat + s.hold * b), 1.0))
     enough = np.maximum(n, s.i_sat)
     return Times(
-        edge_on=np.where(n > 0, climb(s.edge, enough), np.inf),
+        edge_on=np.where(n > 0, climb(s.edge, enough) * enough / np.where(n > 0, n, 1.0), np.inf),
         edge_off=fall(s.edge, b),
         storage=held + fall(s.tenth, b),
         delay_on=start(x, s.started, i_eff, r_be) + to_threshold(s, n),

@@ -265,12 +265,11 @@ def rated(stock: Position, power: float, voltage: float) -> Position:
 
 
 def mixed_brief(rng: np.random.Generator, series: str = "E12") -> Brief:
-    """A random brief of any drive for couplers of every kind: two in three with a pull-up, levels a darlington holds."""
-    circuit = OutputCircuit.PULL_UP if rng.random() < 0.67 else OutputCircuit.EMITTER_LOAD
+    """A random brief of any drive and either output circuit, for couplers of every kind."""
+    circuit = list(OutputCircuit)[int(rng.integers(2))]
     drawn = (brief, sink_brief, field_brief)[int(rng.integers(3))](rng, series, circuit)
-    # fewer limits than `brief` draws: it is meant for one kind, and these must leave room for others
-    limits = drawn.limits
-    kept = {name: getattr(limits, name) if rng.random() < 0.4 else None for name in ("edge_time", "delay", "power")}
     if drawn.drive.circuit is DriveCircuit.FIELD:
-        kept["power"] = None  # `brief` draws it for a few volts
-    return replace(drawn, limits=replace(limits, distortion=None, **kept))
+        # power is drawn for a few volts, distortion for one kind
+        return replace(drawn, limits=replace(drawn.limits, power=None, distortion=None))
+    # three couplers of three kinds hold more than one does: ask more
+    return replace(drawn, signal=replace(drawn.signal, shortest_pulse=0.2 * drawn.signal.shortest_pulse))

@@ -107,16 +107,19 @@ def test_gains_that_differ_are_the_bins_own_and_the_times_still_follow_ctr(tmp_p
     found = bins(tmp_path, LOW | {"h_fe_typ": "300"}, HIGH | {"h_fe_typ": "700"})
     low, high = found["L"].transistor, found["H"].transistor
     assert (low.h_fe, high.h_fe) == (300.0, 700.0)
-    assert high.tau_0 == pytest.approx(4 * low.tau_0)
+    # the rows are those of a unit in the middle, which with each bin's own gain has another light
+    of_low, of_high = (typical(tmp_path, PHOTOTRANSISTOR | {"h_fe_typ": h_fe}) for h_fe in ("600", "350"))
+    assert (low.tau_0, low.c_m) == (pytest.approx(of_low.tau_0 / 2), pytest.approx(of_low.c_m / 2))
+    assert (high.tau_0, high.c_m) == (pytest.approx(of_high.tau_0 * 2), pytest.approx(of_high.c_m * 2))
     assert assumed(found["H"]) == {"bin_gain": "2"}
 
 
 def test_times_that_differ_are_the_bins_own_and_the_gain_still_follows_ctr(tmp_path):
     found = bins(tmp_path, LOW | {"sat_t_off": "30"}, HIGH)
-    alone = only_coupler(tmp_path, PHOTOTRANSISTOR, **HIGH).transistor
+    alone = only_coupler(tmp_path, PHOTOTRANSISTOR, **HIGH, h_fe_typ="800").transistor
     high = found["H"].transistor
-    assert (high.tau_0, high.c_m, high.tau_s) == (alone.tau_0, alone.c_m, alone.tau_s)
-    assert high.h_fe == pytest.approx(2 * alone.h_fe)
+    assert (high.tau_0, high.c_m, high.tau_s) == tuple(map(pytest.approx, (alone.tau_0, alone.c_m, alone.tau_s)))
+    assert high.h_fe == pytest.approx(800)
     assert assumed(found["H"]) == {"bin_gain": "2"}
 
 
@@ -127,7 +130,8 @@ def test_with_both_their_own_nothing_is_moved(tmp_path):
 
 def test_a_time_that_one_bin_lacks_is_a_difference_too(tmp_path):
     found = bins(tmp_path, LOW, HIGH | {"sat_t_s": "", "sat_t_off": ""})
-    assert found["L"].transistor.tau_0 == only_coupler(tmp_path, PHOTOTRANSISTOR, **LOW).transistor.tau_0
+    alone = only_coupler(tmp_path, PHOTOTRANSISTOR, **LOW, h_fe_typ="200").transistor
+    assert found["L"].transistor.tau_0 == pytest.approx(alone.tau_0)
 
 
 # ---- what rules fill in ---------------------------------------------------------------------------------------------

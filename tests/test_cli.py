@@ -84,7 +84,7 @@ class TestExitCodes:
         assert ran.out == ""
         assert "lit" in ran.err
 
-    @pytest.mark.parametrize("command", ["pick", "rank", "tradeoff", "why", "sweep", "yield"])
+    @pytest.mark.parametrize("command", ["pick", "rank", "tradeoff", "why", "sweep", "yield", "netlist"])
     def test_no_design(self, impossible, command):
         ran = run(command, impossible)
         assert ran.code == 3, ran
@@ -315,6 +315,51 @@ class TestBench:
         assert drawn("--seed", "4", "--normal") != drawn("--seed", "4")
 
 
+FOLDER = {"review.html", "design.json", "bom.csv", "link.cir", "schematic.svg"}
+
+
+class TestFiles:
+    """`report` and `netlist`."""
+
+    def test_report_makes_a_folder_once(self, tmp_path):
+        folder = tmp_path / "review"
+        ran = run("report", TINY, "--output", folder, "--date", "2026-01-02")
+        assert ran.code == 0
+        assert {path.name for path in folder.iterdir()} >= FOLDER
+        page = (folder / "review.html").read_text(encoding="utf-8")
+        assert "2026-01-02" in page
+        picked = json_of(run("pick", TINY, "--json"))
+        written = json.loads((folder / "design.json").read_text(encoding="utf-8"))
+        assert written["design"] == picked["design"]
+
+        (folder / "review.html").write_text("changed by hand", encoding="utf-8")
+        again = run("report", TINY, "-o", folder)
+        assert again.code == 2
+        assert "--force" in again.err
+        assert (folder / "review.html").read_text(encoding="utf-8") == "changed by hand"
+        assert run("report", TINY, "-o", folder, "--force").code == 0
+        assert "changed by hand" not in (folder / "review.html").read_text(encoding="utf-8")
+
+    def test_report_of_the_impossible(self, impossible, tmp_path):
+        assert run("report", impossible, "-o", tmp_path / "review").code == 3
+
+    def test_netlist_of_the_best_and_of_a_given_design(self):
+        best = run("netlist", TINY)
+        assert best.code == 0
+        assert run("netlist", TINY, *SOUND).out == best.out
+        assert run("netlist", TINY, *SOUND, "--at", "delay_off").out != best.out
+        lines = best.out.splitlines()
+        assert lines[0].startswith("*")
+        assert lines[-1].lower() == ".end"
+
+    def test_simulated_designs_say_what_the_simulation_found(self):
+        ran = run("pick", TINY, "--simulate", "--json")
+        assert ran.code == 0
+        found = json_of(ran)
+        assert set(found) >= RESULT | {"simulation"}
+        assert all(check["passed"] for check in found["checks"])
+
+
 class TestPlainText:
     @pytest.mark.parametrize(
         "arguments",
@@ -430,6 +475,8 @@ class TestWrongInput:
             (("sweep", TINY, "--coupler", "TINYPHOTO"), "--r-led"),
             (("yield", TINY, "--samples", "0"), "--samples"),
             (("yield", TINY, "--seed", "x"), "--seed"),
+            (("netlist", TINY, "--at", "noon"), "noon"),
+            (("report", TINY), "--output"),
         ],
     )
     def test_a_message_and_no_traceback(self, arguments, said):

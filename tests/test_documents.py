@@ -31,7 +31,7 @@ def test_the_readme_shows_the_program():
 
 def test_every_command_and_option_is_documented():
     for name, command in main.commands.items():
-        assert f"optopick {name} " in README, name
+        assert f"optopick {name} " in README or f"`{name}`" in README, name
         for parameter in command.params:
             if isinstance(parameter, click.Option) and "--help" not in parameter.opts:
                 assert any(f"`{opt}" in README or f"{opt} " in README for opt in parameter.opts), (name, parameter.opts)

@@ -43,7 +43,7 @@ def case(seed: int) -> tuple[Brief, list[Coupler]]:
     couplers = random_links.mixed_couplers(rng)
     if seed % 5 == 2:
         couplers = [MAKERS[seed % 3](rng, "RND-A"), MAKERS[(seed // 3) % 3](rng, "RND-B")]
-    return shortened(rng, brief, (14, 12, 5, 4)), couplers
+    return shortened(rng, brief, (9, 10, 3, 3)), couplers
 
 
 def winner_of(design: Design) -> Winner:

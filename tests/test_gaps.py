@@ -1,6 +1,7 @@
 """Every rule that fills a gap: the value, its text in table units, the sentence that goes with it."""
 
 import math
+from dataclasses import replace
 
 import pytest
 from coupler_tables import DARLINGTON, LOGIC, PHOTOTRANSISTOR, assumed, only_coupler, read_table
@@ -8,14 +9,17 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 from optopick import gaps
-from optopick.coupler import Assumed, Kind, Rating
+from optopick.coupler import Assumed, Kind, Rating, Transfer
 from optopick.coupler_columns import schema
 from optopick.coupler_curves import Curve
 from optopick.gaps import Filled, Unit, UnusableError
-from optopick.gaps_switching import PlainRow, SaturatedRow, TypicalUnit, switching_constants
+from optopick.gaps_switching import switching_constants
+from optopick.physics import switching
+from optopick.physics.charge import Base, Load, zero_bias
 from optopick.physics.leakage import dark_current
 from optopick.physics.led import forward_voltage
-from optopick.physics.transfer import relative_ctr
+from optopick.physics.transfer import led_current_for, relative_ctr
+from optopick.switching_rows import PlainRow, SaturatedRow, TypicalUnit
 
 UNIT = Unit("VELM1", Kind.PHOTOTRANSISTOR)
 
@@ -77,12 +81,13 @@ ONE_ROW = [
         {"h_fe_typ": "600", "light_spread": "1.25"},  # 150 % over 0.25 %
     ),
     (PHOTOTRANSISTOR, {"h_fe_max": ""}, {"light_spread": "1.25"}),
-    (PHOTOTRANSISTOR, {"c_be": ""}, {"c_be": "10 pF"}),
+    (PHOTOTRANSISTOR, {"c_be": ""}, {"c_be": "14 pF"}),
     (PHOTOTRANSISTOR, {"v_be": ""}, {"v_be": "0.65 V"}),
     (DARLINGTON, {"v_be": ""}, {"v_be": "1.3 V"}),
     (PHOTOTRANSISTOR, {"v_be_tc": ""}, {"v_be_tc": "-2 mV/K"}),
     (DARLINGTON, {"v_be_tc": ""}, {"v_be_tc": "-4 mV/K"}),
     (PHOTOTRANSISTOR, {"c_cb": ""}, {}),  # both switching rows are there: nobody asks
+    (PHOTOTRANSISTOR, {"sw_v_cc": ""}, {"sw_v_cc": "10 V"}),
     (PHOTOTRANSISTOR, {"sw_i_c": ""}, {"sw_i_c": "2 mA"}),
     (PHOTOTRANSISTOR, {"sw_r_l": ""}, {"sw_r_l": "100 Ω"}),
     (PHOTOTRANSISTOR, {"sw_t_r": ""}, {}),
@@ -118,6 +123,7 @@ ONE_ROW = [
 SWITCHING = [
     {"sat_t_s": "", "sat_t_off": "", "c_cb": ""},
     {"sw_t_r": "", "sw_t_f": ""},
+    {"sat_t_s": "0.1"},
 ]
 
 
@@ -229,123 +235,218 @@ def test_filled_wear_in_si(tmp_path):
 
 # ---- switching ------------------------------------------------------------------------------------------------------
 
-LN9 = math.log(9)
 FLAT = Curve((1e-5, 0.1), (1.0, 1.0))
-TYPICAL = TypicalUnit(ctr=1.5, curve=FLAT, h_fe=400.0)
+TYPICAL = TypicalUnit(ctr=1.5, curve=FLAT, h_fe=400.0, v_be=0.65, c_be=14e-12)
+TRANSIT, C_0, TAU_S = 4e-9, 12e-12, 9e-6
 STATED_C_CB = Filled(5e-12, None)
-PLAIN = PlainRow(t=2e-6 * LN9, i_c=0.002, r_l=100.0)
-# i_sat = 2.4 mA/1.5 = 1.6 mA, a tenth of i_f
-SATURATED = SaturatedRow(t_s=20e-6, t_off=20e-6 + 11e-6 * LN9, i_c=0.0024, i_f=0.016, r_l=1900.0)
 
 
-def test_both_rows_give_all_three_constants_and_nothing_is_assumed():
-    found = switching_constants(UNIT, TYPICAL, PLAIN, SATURATED, STATED_C_CB)
-    assert found.c_m == pytest.approx(9e-6 / 1800)
-    assert found.tau_0 == pytest.approx(1.5e-6)
-    assert found.tau_s == pytest.approx(20e-6 / math.log(10))
+def edges(typical, transit, c_0, load):
+    """Rise at the edge of saturation, fall, and the fall's first tenth [s], by the physics."""
+    transfer = Transfer(1.0, 1.0, 5e-3, typical.curve.x, typical.curve.y, (25.0,), (1.0,), 0.0)
+    base = Base(transit, c_0, typical.c_be, typical.v_be, typical.ctr / typical.h_fe)
+    edge, tenth = (
+        switching.steps(base, load, transfer, typical.ctr, cut) for cut in (switching.EDGE, switching.FIRST_TENTH)
+    )
+    lit = led_current_for(transfer, typical.ctr, 1.0, load.j_s)
+    times = switching.time_on(edge, lit), switching.time_off(edge, 0.0), switching.time_off(tenth, 0.0)
+    return tuple(map(float, times))
+
+
+def plain_of(typical=TYPICAL, transit=TRANSIT, c_0=C_0, rising=False, i_c=0.002, r_l=100.0):
+    """The row that a unit with these constants would show: its fall, or its rise, as the longer edge."""
+    rise, fall, _ = edges(typical, transit, c_0, Load(i_c, 10.0, i_c * r_l, r_l, 0.0, 25.0))
+    return PlainRow(rise, 0.9 * rise, i_c, r_l, 10.0) if rising else PlainRow(None, fall, i_c, r_l, 10.0)
+
+
+def saturated_of(typical=TYPICAL, transit=TRANSIT, c_0=C_0, tau_s=TAU_S, r_l=1900.0):
+    _, fall, tenth = edges(typical, transit, c_0, Load(4.8 / r_l, 5.0, 4.8, r_l, 0.0, 25.0))
+    t_s = tau_s * math.log(0.016 / typical.led_current_for(4.8 / r_l)) + tenth
+    return SaturatedRow(t_s, t_s + fall, 0.016, r_l, 5.0, 0.2)
+
+
+PLAIN, SATURATED = plain_of(), saturated_of()
+
+
+def fall_of(found, row, typical=TYPICAL):
+    """The fall of a row by the constants found."""
+    swing = row.i_c * row.r_l
+    load = Load(row.i_c, row.v_cc, swing, row.r_l, 0.0, 25.0)
+    return edges(typical, found.tau_0 / typical.h_fe, found.c_m / typical.h_fe, load)[1]
+
+
+@given(
+    transit=st.floats(2e-10, 1e-7),
+    c_0=st.floats(1e-12, 5e-11),
+    tau_s=st.floats(1e-7, 1e-4),
+    ctr=st.floats(0.4, 8.0),
+    h_fe=st.floats(100.0, 20000.0),
+    at_low=st.floats(0.3, 1.2),
+    at_high=st.floats(0.6, 1.5),
+    rising=st.booleans(),
+)
+def test_constants_come_back_from_the_rows_they_make(transit, c_0, tau_s, ctr, h_fe, at_low, at_high, rising):
+    """Whatever the unit, rows computed from its constants by the physics give the same constants again."""
+    typical = TypicalUnit(ctr, Curve((1e-4, 0.005, 0.05), (at_low, 1.0, at_high)), h_fe, 0.6, 10e-12)
+    plain, saturated = plain_of(typical, transit, c_0, rising), saturated_of(typical, transit, c_0, tau_s)
+    found = switching_constants(UNIT, typical, plain, saturated, STATED_C_CB)
+    assert (found.tau_0 / h_fe, found.c_m / h_fe) == (pytest.approx(transit, rel=1e-6), pytest.approx(c_0, rel=1e-6))
+    assert found.tau_s == pytest.approx(tau_s, rel=1e-4)
     assert found.assumed == ()
 
 
-def test_the_gain_of_each_row_is_that_at_its_current():
-    falling = Curve((1e-4, 0.001, 0.1), (0.5, 1.0, 0.8))
-    typical = TypicalUnit(ctr=1.0, curve=falling, h_fe=400.0)
-    i_plain, i_sat = falling.x_carrying(0.0002), falling.x_carrying(0.004)
-    g_plain, g_sat = falling.log_at(i_plain), falling.log_at(i_sat)
-    assert g_plain < 0.8 < g_sat < 1.0
-    plain = PlainRow(t=2e-6 * LN9 * g_plain, i_c=0.0002, r_l=100.0)
-    saturated = SaturatedRow(t_s=20e-6, t_off=20e-6 + 11e-6 * LN9 * g_sat, i_c=0.004, i_f=0.016, r_l=1900.0)
-    found = switching_constants(UNIT, typical, plain, saturated, STATED_C_CB)
-    assert (found.tau_0, found.c_m) == (pytest.approx(1.5e-6), pytest.approx(5e-9))
-    assert found.tau_s == pytest.approx(20e-6 / math.log(0.016 / i_sat))
+def test_the_longer_edge_counts():
+    rise, fall, _ = edges(TYPICAL, TRANSIT, C_0, Load(0.002, 10.0, 0.2, 100.0, 0.0, 25.0))
+    assert PlainRow(1.0, 2.0, 0.002, 100.0, 10.0).t == 2.0
+    for row in (PlainRow(0.5 * fall, fall, 0.002, 100.0, 10.0), PlainRow(rise, 0.5 * rise, 0.002, 100.0, 10.0)):
+        found = switching_constants(UNIT, TYPICAL, row, SATURATED, STATED_C_CB)
+        assert found.c_m / 400 == pytest.approx(C_0, rel=1e-6)
+    # the same edges the other way round are a slower unit's fall and a faster unit's rise
+    assert PlainRow(2.0, 1.0, 0.002, 100.0, 10.0).falls_slower is False
+    assert PlainRow(2.0, None, 0.002, 100.0, 10.0).falls_slower is False
+    assert PlainRow(None, 2.0, 0.002, 100.0, 10.0).falls_slower is True
 
 
-def test_the_longer_edge_counts_and_the_saturated_voltage_is_taken_off(tmp_path):
-    row = PHOTOTRANSISTOR | {"ctr_curve": "0.01:1 100:1", "sw_t_r": "4.394449", "sw_t_f": "1", "i_f_max": "100"}
-    saturated = {"sat_t_s": "20", "sat_t_off": "44.169470", "sat_v_cc": "5", "sat_i_f": "16", "sat_r_l": "2"}
-    transistor = only_coupler(tmp_path, row | saturated).transistor
-    assert transistor.c_m == pytest.approx(9e-6 / 1900, rel=1e-6)
-    assert transistor.tau_0 == pytest.approx(2e-6 - 100 * 9e-6 / 1900, rel=1e-6)
-    assert transistor.tau_s == pytest.approx(20e-6 / math.log(16 / (4.8 / 2 / 1.5)), rel=1e-6)  # 5 V less 0.2 V
-    darlington = only_coupler(tmp_path, DARLINGTON | {"ctr_curve": "0.01:1 100:1", "i_f_max": "100"}).transistor
-    assert darlington.tau_s == pytest.approx(60e-6 / math.log(10 / (4.2 / 2 / 12)), rel=1e-6)  # 5 V less 0.8 V
+def test_the_saturated_voltage_is_taken_off(tmp_path):
+    """5 V less 0.2 V, or 0.8 V of a darlington; storage ends in the first tenth of the recovery."""
+    kinds = ((PHOTOTRANSISTOR, 0.2, math.sqrt(0.9 * 2.5), 20e-6), (DARLINGTON, 0.8, 12.0, 60e-6))
+    for row, v_ce, ctr, t_s in kinds:
+        coupler = only_coupler(tmp_path, row | {"ctr_curve": "0.01:1 100:1", "i_f_max": "100"})
+        q = coupler.transistor
+        typical = TypicalUnit(ctr, FLAT, q.h_fe, q.v_be, q.c_be)
+        j = (5.0 - v_ce) / 2000.0
+        load = Load(j, 5.0, 5.0 - v_ce, 2000.0, 0.0, 25.0)
+        _, fall, tenth = edges(typical, q.tau_0 / q.h_fe, q.c_m / q.h_fe, load)
+        assert fall == pytest.approx((35e-6 - 20e-6) if v_ce == 0.2 else (300e-6 - 60e-6))
+        assert q.tau_s * math.log(0.010 / (j / ctr)) + tenth == pytest.approx(t_s)
+
+
+def test_the_supply_of_the_row_counts(tmp_path):
+    """At a higher supply the junction takes less charge, so that it must be larger for the same time."""
+    cells = {"sw_i_c": "2", "sw_r_l": "1000", "sat_r_l": "4.7"}
+    low, high = (only_coupler(tmp_path, PHOTOTRANSISTOR | cells, sw_v_cc=v).transistor for v in ("5", "20"))
+    assert low.tau_0 < high.tau_0
+
+
+# ---- one row --------------------------------------------------------------------------------------------------------
 
 
 def test_one_row_not_saturated_is_split_by_c_cb():
+    """c_cb as measured at 5 V: at 0 V it is larger by the junction law."""
     found = switching_constants(UNIT, TYPICAL, PLAIN, "", STATED_C_CB)
-    assert found.c_m == pytest.approx(400 * 5e-12)
-    assert found.tau_0 == pytest.approx(2e-6 - 100 * 400 * 5e-12)
-    assert found.tau_s == pytest.approx(10 * 2e-6)
+    assert found.c_m == pytest.approx(400 * 5e-12 * (1 + 5 / 0.7) ** 0.37)
+    assert fall_of(found, PLAIN) == pytest.approx(PLAIN.t)
+    assert found.tau_s == pytest.approx(10 * PLAIN.t / math.log(9))
+    shown = [schema().show(name, getattr(found, name)) for name in ("tau_0", "c_m", "tau_s")]
     assert [(item.parameter, item.value) for item in found.assumed] == [
-        ("tau_0", "1.8 µs"),
-        ("c_m", "2 nF"),
-        ("tau_s", "20 µs"),
+        ("tau_0", shown[0]),
+        ("c_m", shown[1]),
+        ("tau_s", shown[2]),
     ]
+
+
+def test_one_row_with_the_unit_s_own_capacitance_gives_its_transit_time():
+    at_5_v = C_0 * (1 + 5 / 0.7) ** -0.37
+    for plain, saturated in ((PLAIN, ""), (None, SATURATED)):
+        found = switching_constants(UNIT, TYPICAL, plain, saturated, Filled(at_5_v, None))
+        assert (found.tau_0, found.c_m) == (pytest.approx(400 * TRANSIT), pytest.approx(400 * C_0))
 
 
 def test_one_saturated_row_is_split_by_c_cb():
     found = switching_constants(UNIT, TYPICAL, None, SATURATED, STATED_C_CB)
-    assert found.c_m == pytest.approx(400 * 5e-12)
-    assert found.tau_0 == pytest.approx(11e-6 - 1900 * 400 * 5e-12)
-    assert found.tau_s == pytest.approx(20e-6 / math.log(10))
+    assert found.c_m == pytest.approx(400 * float(zero_bias(5e-12, 5.0)))
+    assert fall_of(found, SATURATED) == pytest.approx(SATURATED.t)
+    assert found.tau_s == pytest.approx(TAU_S, rel=0.01)  # less a first tenth that hardly differs
     assert [item.parameter for item in found.assumed] == ["tau_0", "c_m"]
 
 
 def test_c_cb_takes_no_more_than_nine_tenths_of_the_row():
+    """Of what the emitter junction leaves of it."""
     found = switching_constants(UNIT, TYPICAL, PLAIN, "", Filled(1e-9, None))
-    assert found.c_m == pytest.approx(0.9 * 2e-6 / 100)
-    assert found.tau_0 == pytest.approx(0.2e-6)
+    load = Load(0.002, 10.0, 0.2, 100.0, 0.0, 25.0)
+    rest, without = edges(TYPICAL, 0.0, 0.0, load)[1], edges(TYPICAL, found.tau_0 / 400, 0.0, load)[1]
+    assert fall_of(found, PLAIN) == pytest.approx(PLAIN.t)
+    assert without - rest == pytest.approx(0.1 * (PLAIN.t - rest))
+
+
+def test_a_row_that_the_emitter_junction_fills_errs_on_the_slow_side_and_says_so():
+    rest = edges(TYPICAL, 0.0, 0.0, Load(0.002, 10.0, 0.2, 100.0, 0.0, 25.0))[1]
+    quick = PlainRow(None, 1.05 * rest, 0.002, 100.0, 10.0)
+    found = switching_constants(UNIT, TYPICAL, quick, "", STATED_C_CB)
+    assert fall_of(found, quick) == pytest.approx(rest + 0.1 * quick.t)
+    assert min(found.tau_0, found.c_m) > 0
+    reason = "switching row: c_be alone takes nearly all of its time; so "
+    assert [item.parameter for item in found.assumed if item.rule.startswith(reason)] == ["tau_0", "c_m"]
 
 
 def test_an_assumed_c_cb_is_listed_where_it_is_used(tmp_path):
-    one_row = only_coupler(tmp_path, PHOTOTRANSISTOR, c_cb="", sat_t_s="", sat_t_off="")
+    one_row = only_coupler(tmp_path, PHOTOTRANSISTOR, c_cb="", sw_t_r="", sw_t_f="")
     assert assumed(one_row)["c_cb"] == "8 pF"
-    assert one_row.transistor.c_m == pytest.approx(400 * 8e-12)
+    assert one_row.transistor.c_m == pytest.approx(400 * float(zero_bias(8e-12, 5.0)))
+
+
+def test_a_row_beyond_the_curve_takes_its_last_ctr():
+    short, long = (replace(TYPICAL, curve=Curve((1e-5, end), (1.0, 1.0))) for end in (0.001, 0.1))
+    one, other = (switching_constants(UNIT, typical, PLAIN, "", STATED_C_CB) for typical in (short, long))
+    assert (one.tau_0, one.c_m) == (pytest.approx(other.tau_0), pytest.approx(other.c_m))
+
+
+# ---- rows that cannot be ---------------------------------------------------------------------------------------------
+
+SLOWER = "switching rows: the saturated one is not slower, though its load resistor is larger; so "
 
 
 @pytest.mark.parametrize(
     ("plain", "saturated", "reason"),
     [
+        (replace(PLAIN, t_f=12e-6), replace(SATURATED, t_off=SATURATED.t_s + 3e-6), SLOWER),
+        (plain_of(c_0=0.0), saturated_of(c_0=-1e-15), SLOWER),
         (
-            PlainRow(t=12e-6 * LN9, i_c=0.002, r_l=100.0),
-            SATURATED,
-            "switching rows: the saturated one is not slower, though its load resistor is larger; so ",
+            plain_of(transit=-0.1e-9),
+            saturated_of(transit=-0.1e-9),
+            "switching rows: they leave no transit time beside the junctions; so ",
         ),
-        (
-            PlainRow(t=11e-6 * LN9, i_c=0.002, r_l=100.0),  # just as fast
-            SaturatedRow(t_s=20e-6, t_off=20e-6 + 11e-6 * LN9, i_c=0.0024, i_f=0.016, r_l=1900.0),
-            "switching rows: the saturated one is not slower, though its load resistor is larger; so ",
-        ),
-        (
-            PlainRow(t=2e-6 * LN9, i_c=0.002, r_l=1000.0),
-            SATURATED,
-            "switching rows: they leave no time constant without load resistor; so ",
-        ),
-        (
-            PlainRow(t=2e-6 * LN9, i_c=0.002, r_l=1900.0),
-            SATURATED,
-            "switching rows: sat_r_l is not above sw_r_l; so ",
-        ),
+        (plain_of(r_l=1900.0), SATURATED, "switching rows: sat_r_l is not above sw_r_l; so "),
+        (plain_of(r_l=2500.0), SATURATED, "switching rows: sat_r_l is not above sw_r_l; so "),
     ],
 )
 def test_rows_that_contradict_each_other_fall_back_on_c_cb_and_say_so(plain, saturated, reason):
     found = switching_constants(UNIT, TYPICAL, plain, saturated, STATED_C_CB)
-    assert found.c_m == pytest.approx(min(2e-9, 0.9 * plain.t / LN9 / plain.r_l))
-    assert found.tau_0 == pytest.approx(plain.t / LN9 - plain.r_l * found.c_m)
-    assert found.tau_s == pytest.approx(20e-6 / math.log(10))  # storage is not in doubt
+    one = switching_constants(UNIT, TYPICAL, plain, "", STATED_C_CB)
+    assert (found.tau_0, found.c_m) == (one.tau_0, one.c_m)
+    assert found.tau_s == pytest.approx(TAU_S, rel=0.2)  # storage is not in doubt, its first tenth hardly matters
     assert [item.parameter for item in found.assumed] == ["tau_0", "c_m"]
     assert all(item.rule.startswith(reason) for item in found.assumed)
 
 
 def test_a_saturated_row_that_does_not_saturate_is_not_used_and_says_so():
-    weak = SaturatedRow(t_s=20e-6, t_off=40e-6, i_c=0.024, i_f=0.017, r_l=1900.0)  # load needs 16 mA of 17
+    weak = SaturatedRow(t_s=20e-6, t_off=40e-6, i_f=0.017, r_l=200.0, v_cc=5.0, v_ce=0.2)  # load needs 16 mA of 17
     found = switching_constants(UNIT, TYPICAL, PLAIN, weak, STATED_C_CB)
-    assert found.tau_s == pytest.approx(20e-6)
+    assert found.tau_s == pytest.approx(10 * PLAIN.t / math.log(9))
     reason = "saturated row: sat_i_f, 17 mA, hardly saturates the typical unit, whose load needs 16 mA; so "
     assert [item.parameter for item in found.assumed if item.rule.startswith(reason)] == ["tau_0", "c_m", "tau_s"]
     with pytest.raises(UnusableError, match="hardly saturates"):
         switching_constants(UNIT, TYPICAL, None, weak, STATED_C_CB)
-    enough = SaturatedRow(t_s=20e-6, t_off=40e-6, i_c=0.024, i_f=0.0177, r_l=1900.0)  # 10 % over 16 mA
-    assert switching_constants(UNIT, TYPICAL, PLAIN, enough, STATED_C_CB).assumed == ()
+    enough = switching_constants(UNIT, TYPICAL, PLAIN, replace(weak, i_f=0.0177), STATED_C_CB)  # 10 % over 16 mA
+    assert not any("hardly saturates" in item.rule for item in enough.assumed)
+
+
+def test_a_plain_row_that_its_supply_cannot_drive_is_not_used_and_says_so():
+    starved = replace(PLAIN, r_l=5000.0)
+    found = switching_constants(UNIT, TYPICAL, starved, SATURATED, STATED_C_CB)
+    alone = switching_constants(UNIT, TYPICAL, None, SATURATED, STATED_C_CB)
+    assert (found.tau_0, found.c_m, found.tau_s) == (alone.tau_0, alone.c_m, alone.tau_s)
+    reason = "switching row: sw_v_cc, 10 V, cannot drive sw_i_c, 2 mA, through sw_r_l"
+    assert all(item.rule.startswith(f"{reason}; so ") for item in found.assumed)
+    with pytest.raises(UnusableError, match=r"cannot drive sw_i_c.*saturated row: sat_i_f empty; there is no other"):
+        switching_constants(UNIT, TYPICAL, starved, "saturated row: sat_i_f empty", STATED_C_CB)
+
+
+def test_storage_within_the_first_tenth_is_taken_whole():
+    short = replace(SATURATED, t_s=1e-7, t_off=1e-7 + SATURATED.t)
+    found = switching_constants(UNIT, TYPICAL, PLAIN, short, STATED_C_CB)
+    assert found.tau_s == pytest.approx(1e-7 / math.log(0.016 / (4.8 / 1900 / 1.5)))
+    assert [item.parameter for item in found.assumed] == ["tau_s"]
 
 
 def test_a_saturated_row_with_a_gap_that_no_rule_fills_says_which(tmp_path):
@@ -358,25 +459,3 @@ def test_a_saturated_row_with_a_gap_that_no_rule_fills_says_which(tmp_path):
 def test_no_row_at_all_cannot_be_used():
     with pytest.raises(UnusableError, match="all empty; there is no other switching row"):
         switching_constants(UNIT, TYPICAL, None, "", STATED_C_CB)
-
-
-@given(
-    tau_0=st.floats(1e-8, 1e-5),
-    c_m=st.floats(1e-11, 1e-8),
-    tau_s=st.floats(1e-7, 1e-4),
-    ctr=st.floats(0.4, 8.0),
-    at_low=st.floats(0.3, 1.2),
-    at_high=st.floats(0.6, 1.5),
-)
-def test_constants_come_back_from_the_rows_they_make(tau_0, c_m, tau_s, ctr, at_low, at_high):
-    """Whatever the unit, rows computed from its constants by the physics give the same constants again."""
-    curve = Curve((1e-4, 0.005, 0.05), (at_low, 1.0, at_high))
-    typical = TypicalUnit(ctr, curve, 400.0)
-    i_plain, i_sat = (curve.x_carrying(i_c / ctr) for i_c in (0.001, 0.0024))
-    t = LN9 * curve.log_at(i_plain) * (tau_0 + 100 * c_m)
-    fall = LN9 * curve.log_at(i_sat) * (tau_0 + 1900 * c_m)
-    t_s = tau_s * math.log(0.016 / i_sat)
-    found = switching_constants(
-        UNIT, typical, PlainRow(t, 0.001, 100.0), SaturatedRow(t_s, t_s + fall, 0.0024, 0.016, 1900.0), STATED_C_CB
-    )
-    assert (found.tau_0, found.c_m, found.tau_s) == tuple(pytest.approx(x, rel=1e-3) for x in (tau_0, c_m, tau_s))

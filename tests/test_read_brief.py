@@ -171,7 +171,7 @@ class TestDefaults:
             OutputCircuit.EMITTER_LOAD, Span(5.0, 5.0), Span(0.8, 0.8), Span(2.0, 2.0), 0.0, 1e-6, 0.0, 15e-12
         )
         assert brief.environment.life == 10 * 8766.0
-        assert brief.limits == Limits(None, None, None, None, None, Isolation(), 1.0)
+        assert brief.limits == Limits(None, None, None, None, None, Isolation(), 1.3)
         assert brief.stock.drift == pytest.approx(100e-6, rel=1e-12)
         assert set(brief.stock.r_led.tolerance) == {0.01}
         assert set(brief.stock.r_led.power) == {0.1}

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import os
 from pathlib import Path
 
 import pytest
@@ -123,4 +122,4 @@ def test_a_name_that_leads_elsewhere(tmp_path):
 def test_a_relative_path(tmp_path, monkeypatch):
     monkeypatch.chdir(tmp_path)
     write_folder(Path("review"), FILES, force=False)
-    assert os.listdir(tmp_path) == ["review"]
+    assert [path.name for path in tmp_path.iterdir()] == ["review"]

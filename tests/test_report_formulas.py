@@ -108,7 +108,7 @@ ALSO = {
     "forward_voltage": lambda: {"n": LED.n},
     "acceleration_factor": lambda: {"n": 2.0},
     "base_charge": lambda: _junction_at(S["x"]),
-    "steps": lambda: _step_ends(),
+    "steps": lambda: _ends_of_step(0.1, 0.9),
     "crossing_on": lambda: {"t_on": value_of("tau*ln((n - i_a)/(n - i_b))")},
     "light_left": lambda: {"af": value_of(python_of("(i/20e-3)**2*exp(e_a/k_ev*(1/(85 + 273.15) - 1/(t + 273.15)))"))},
     "collector_current": lambda: {"g": float(relative_ctr(TRANSFER, S["i_eff"]))},
@@ -124,9 +124,9 @@ def _junction_at(x: float) -> dict[str, float]:
     return {"v_b": v_b, "q_rest": rest, "q_now": now}
 
 
-def _step_ends() -> dict[str, float]:
-    """Charges and LED currents at 10 and 90 % of the swing."""
-    ends = {"a": 0.1, "b": 0.9}
+def _ends_of_step(a: float, b: float) -> dict[str, float]:
+    """Charges and LED currents at two shares of the swing."""
+    ends = {"a": a, "b": b}
     charges = {f"q_{end}": float(base_charge(BASE, LOAD, x)) for end, x in ends.items()}
     return charges | {f"i_{end}": float(led_current_for(TRANSFER, 0.9, 1.0, x * LOAD.j_s)) for end, x in ends.items()}
 

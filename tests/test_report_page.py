@@ -9,6 +9,7 @@ import time
 from base64 import b64encode
 from dataclasses import asdict, replace
 from hashlib import sha256
+from itertools import pairwise
 
 import pytest
 import report_samples as samples
@@ -41,7 +42,7 @@ def test_structure(document):
         assert len(html.all(landmark)) == 1 or landmark == "title"
     levels = [int(node.name[1]) for node in html.all() if re.fullmatch("h[1-6]", node.name)]
     assert levels[0] == 1
-    assert all(after <= before + 1 for before, after in zip(levels, levels[1:], strict=False))
+    assert all(after <= before + 1 for before, after in pairwise(levels))
     identities = [node.attributes["id"] for node in html.all() if "id" in node.attributes]
     assert len(identities) == len(set(identities))
     targets = [node.attributes["href"] for node in html.all("a")]
@@ -144,7 +145,9 @@ def test_verdicts():
 
 
 def test_contradictions():
-    why = Why(Status.INFEASIBLE, (("delay", "ctr_margin"),), (Change("limits.delay", "s", 1e-6, 2e-6),), False, None, ())
+    why = Why(
+        Status.INFEASIBLE, (("delay", "ctr_margin"),), (Change("limits.delay", "s", 1e-6, 2e-6),), False, None, ()
+    )
     root = samples.read(page(replace(samples.nothing_found(), why=why)))
     section = root.one("section", aria_labelledby="why")
     assert section.one("li").text == "Delay, CTR margin"
@@ -174,7 +177,9 @@ def _hostile(document: Document) -> Document:
     checks = tuple(replace(check, corner=HOSTILE if check.corner else "") for check in document.review.checks)
     found = replace(document.review, design=design, checks=checks)
     walks = tuple(
-        replace(walk, points=tuple(replace(point, design=replace(point.design, coupler=HOSTILE)) for point in walk.points))
+        replace(
+            walk, points=tuple(replace(point, design=replace(point.design, coupler=HOSTILE)) for point in walk.points)
+        )
         for walk in document.walks
     )
     return replace(
@@ -183,7 +188,10 @@ def _hostile(document: Document) -> Document:
         coupler=replace(document.coupler, part=HOSTILE, maker=HOSTILE, sheet=HOSTILE),
         review=found,
         walks=walks,
-        front=replace(document.front, points=tuple(replace(p, review=found) if k == 1 else p for k, p in enumerate(document.front.points))),
+        front=replace(
+            document.front,
+            points=tuple(replace(p, review=found) if k == 1 else p for k, p in enumerate(document.front.points)),
+        ),
         ranking=replace(
             document.ranking,
             ranked=tuple(replace(one, coupler=replace(one.coupler, part=HOSTILE)) for one in document.ranking.ranked),
@@ -290,11 +298,17 @@ def test_largest_page_is_quick_and_small():
     table = InputFile("long.csv", b"x" * (page_module.QUOTED_MOST - 1))
     document = replace(samples.full(), walks=walks, table_file=table)
     page(samples.full())  # imports and templates are loaded once a process
+    assert len(page(document).encode()) < 3_000_000
+    # the best of a few tries: a machine that is busy with other things says nothing about the page
+    assert min(_seconds(document) for _ in range(4)) < 2.0
+
+
+def _seconds(document: Document) -> float:
+    """Time to build a page with no text remembered from before [s]."""
+    amount.cache_clear()
     started = time.process_time()
-    text = page(document)
-    spent = time.process_time() - started
-    assert len(text.encode()) < 3_000_000
-    assert spent < 2.0
+    page(document)
+    return time.process_time() - started
 
 
 def _long_walk(position: str, count: int) -> Walk:

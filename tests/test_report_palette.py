@@ -79,7 +79,9 @@ def test_curves_differ(theme, eye):
 
 
 def test_curves_differ_without_colour():
-    dashes = re.findall(r"\.plot \.series-(\d) \{[^}]*?(stroke-dasharray: [^;]+)?; ?(?:stroke-linecap[^}]*)?\}", PICTURES)
+    dashes = re.findall(
+        r"\.plot \.series-(\d) \{[^}]*?(stroke-dasharray: [^;]+)?; ?(?:stroke-linecap[^}]*)?\}", PICTURES
+    )
     patterns = [dash for _, dash in dashes]
     assert len(patterns) == 5
     assert len(set(patterns)) == 5
@@ -98,4 +100,4 @@ def test_text_is_never_faint():
     """Text takes a text colour; the faint one is for lines."""
     for css in (PICTURES, PAGE):
         for used in re.findall(r"(?<![\w-])(?:color|fill): var\(--([\w-]+)\)", css):
-            assert used in {*TEXTS, "panel", "series-1", "series-2"}
+            assert used in {*TEXTS, "paper", "panel", "series-1", "series-2"}

@@ -1,10 +1,11 @@
-"""The plots: that marks lie where their numbers say, that scales and ticks are round, that nothing is lost by thinning."""
+"""The plots: marks lie where their numbers say, scales have round ticks, nothing is lost by thinning."""
 
 from __future__ import annotations
 
 import math
 import re
 from dataclasses import asdict, replace
+from itertools import pairwise
 from xml.etree import ElementTree
 
 import numpy as np
@@ -97,7 +98,15 @@ def test_scale_over_values():
 
 @pytest.mark.parametrize(
     ("margin", "begin", "length"),
-    [(0.5, 0.2, 0.4), (1.0, 0.2, 0.8), (7.9, 0.2, 0.8), (0.0, 0.2, 0.0), (-0.125, 0.1, 0.1), (-3, 0, 0.2), (math.nan, 0, 0.2)],
+    [
+        (0.5, 0.2, 0.4),
+        (1.0, 0.2, 0.8),
+        (7.9, 0.2, 0.8),
+        (0.0, 0.2, 0.0),
+        (-0.125, 0.1, 0.1),
+        (-3, 0, 0.2),
+        (math.nan, 0, 0.2),
+    ],
 )
 def test_bar(margin, begin, length):
     """The limit stands at a fifth: room to its right, up to 100 %, what is missing to its left, up to 25 %."""
@@ -133,9 +142,7 @@ def dimensions(picture: str) -> dict[str, float]:
     """Each dimension's name and words' value, with its drawn length as a share of the picture's width."""
     spans = [node for node in nodes(picture, "line", "dimension") if node.attrib["y1"] == node.attrib["y2"]]
     named = [word for word in words(picture) if ": " in word]
-    return {
-        word: share(span.attrib["x2"]) - share(span.attrib["x1"]) for word, span in zip(named, spans, strict=True)
-    }
+    return {word: share(span.attrib["x2"]) - share(span.attrib["x1"]) for word, span in zip(named, spans, strict=True)}
 
 
 def test_times_are_drawn_to_scale():
@@ -282,7 +289,7 @@ def test_front():
     (ring,) = nodes(picture, "circle", "ring")
     assert (ring.attrib["cx"], ring.attrib["cy"]) == (dots[1].attrib["cx"], dots[1].attrib["cy"])
     stairs = curve(picture, "series-1")
-    assert all(a[0] == b[0] or a[1] == b[1] for a, b in zip(stairs, stairs[1:], strict=False))
+    assert all(a[0] == b[0] or a[1] == b[1] for a, b in pairwise(stairs))
     assert stairs[1][1] == stairs[0][1], "to the right of a design nothing better is known until the next"
     assert not nodes(front_plot(replace(front, complete=False), None), "polyline", "series-1")
     assert not nodes(front_plot(front, None), "circle", "ring")
@@ -297,7 +304,9 @@ def test_front_far_apart_is_logarithmic():
 
 
 def test_waveform():
-    wave = Waveform("A pulse", (0.0, 1.0, 2.0), (Trace("output", (3.0, 0.0, 3.0)),), (Level("V_IH", 2.0),), ((0.5, 1.5),))
+    wave = Waveform(
+        "A pulse", (0.0, 1.0, 2.0), (Trace("output", (3.0, 0.0, 3.0)),), (Level("V_IH", 2.0),), ((0.5, 1.5),)
+    )
     picture = waveform_plot(wave)
     points = curve(picture, "series-1")
     assert [x for x, _ in points] == pytest.approx([0, 500, 1000])
@@ -328,7 +337,9 @@ def test_simulated_pulses():
             assert row.simulated == getattr(pulse.times, name)
             assert row.beyond == (row.simulated > row.formula)
         assert view.wave.lit == ((0.0, float(pulse.run.stretches[1].t[0])),)
-        assert view.wave.traces[0].values[0] == pytest.approx(float(pulse.run.output(pulse.run.stretches[0].states[0, 1])))
+        assert view.wave.traces[0].values[0] == pytest.approx(
+            float(pulse.run.output(pulse.run.stretches[0].states[0, 1]))
+        )
         assert list(view.wave.time) == sorted(view.wave.time)
     refused = replace(simulation.pulses[0], run=None, times=None, reason="no")
     (view,) = pulse_views(document.brief, replace(simulation, pulses=(refused,)))

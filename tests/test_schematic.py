@@ -7,7 +7,7 @@ import subprocess
 import sys
 from collections.abc import Iterator
 from dataclasses import dataclass, field, replace
-from itertools import pairwise, product
+from itertools import product
 from xml.etree import ElementTree
 
 import numpy as np
@@ -232,7 +232,11 @@ def _places(root: ElementTree.Element) -> Iterator[Point]:
 
 
 def test_what_lights_the_led_is_said():
-    for drive, words in ((DriveCircuit.SOURCE, "high lights"), (DriveCircuit.SINK, "low lights"), (DriveCircuit.FIELD, "lit at")):
+    for drive, words in (
+        (DriveCircuit.SOURCE, "high lights"),
+        (DriveCircuit.SINK, "low lights"),
+        (DriveCircuit.FIELD, "lit at"),
+    ):
         svg, _ = draw(drive, OutputCircuit.PULL_UP, Kind.PHOTOTRANSISTOR, True, False, 1, False)
         assert words in svg
     assert "dark below 5 V" in svg
@@ -268,7 +272,9 @@ def test_described():
     root = ElementTree.fromstring(schematic_svg(brief, coupler, design))
     assert root.attrib["role"] == "img"
     told = root.find(f"{SVG}desc").text
-    assert told.startswith("INV-7, phototransistor: a driver pin that is high lights the LED; a pull-up load; LED resistor 470 Ω")
+    assert told.startswith(
+        "INV-7, phototransistor: a driver pin that is high lights the LED; a pull-up load; LED resistor 470 Ω"
+    )
 
 
 def test_drawing_does_not_load_matplotlib():
@@ -276,8 +282,8 @@ def test_drawing_does_not_load_matplotlib():
     code = """
 import sys
 {before}
-from optopick.report import schematic
-schematic._schemdraw()
+from optopick.report import sheet
+sheet.schemdraw()
 assert ("matplotlib" in sys.modules) is {kept}, sys.modules.get("matplotlib")
 import matplotlib
 """
@@ -290,9 +296,12 @@ import matplotlib
 
 def test_the_reader_of_circuits_sees_a_gap_and_a_crossing():
     """The test's own eyes: a gap of two pixels is no contact, and lines that cross without an end do not meet."""
-    wires = [((0.0, 0.0), (10.0, 0.0)), ((12.0, 0.0), (20.0, 0.0)), ((5.0, -5.0), (5.0, 5.0)), ((10.0, 0.0), (10.0, 9.0))]
+    wires = [
+        ((0.0, 0.0), (10.0, 0.0)),
+        ((12.0, 0.0), (20.0, 0.0)),
+        ((5.0, -5.0), (5.0, 5.0)),
+        ((10.0, 0.0), (10.0, 9.0)),
+    ]
     c = Circuit(wires=wires)
     assert c.net((0.0, 0.0)) == {0, 3}
     assert c.net((5.0, 5.0)) == {2}
-
-

@@ -28,8 +28,7 @@ from optopick.simulate.measure import pulse_times
 from optopick.simulate.transient import Circuit, Phase, run
 from tests.reference.devices import Device as Parameters
 from tests.reference.generate import devices_of
-from tests.reference.predict import base_of_rows, saturated_row, transfer_of
-from tests.reference.proposal import storage_constant
+from tests.reference.predict import C_BE, V_BE, constants_of_rows, transfer_of
 from tests.reference.record import RECORDS, Entry, read_record
 from tests.reference.sheet import V_CE_SAT_I_C, V_CE_SAT_I_F, Sheet
 from tests.reference.simulate import OFF_THRESHOLD, ON_THRESHOLD
@@ -61,21 +60,22 @@ def true_device(p: Parameters) -> Device:
 
 @cache
 def coupler_of(sheet: Sheet) -> Coupler:
-    """The coupler of a data sheet, its switching constants fitted to both switching rows."""
-    coupler, transfer, base = random_links.coupler(np.random.default_rng(1)), transfer_of(sheet), base_of_rows(sheet)
+    """The coupler of a data sheet, its switching constants by optopick's rules for both switching rows."""
+    coupler, constants = random_links.coupler(np.random.default_rng(1)), constants_of_rows(sheet)
     assert coupler.transistor is not None
     transistor = replace(
         coupler.transistor,
         h_fe=sheet.h_fe,
+        v_be=V_BE,
         v_ce_sat=sheet.v_ce_sat,
         sat_i_f=V_CE_SAT_I_F,
         sat_i_c=V_CE_SAT_I_C,
-        c_be=float(base.c_be),
-        tau_0=float(base.transit) * sheet.h_fe,
-        c_m=float(base.c_cb) * sheet.h_fe,
-        tau_s=storage_constant(base, saturated_row(sheet), transfer, sheet.ctr),
+        c_be=C_BE,
+        tau_0=constants.tau_0,
+        c_m=constants.c_m,
+        tau_s=constants.tau_s,
     )
-    return replace(coupler, transfer=transfer, transistor=transistor)
+    return replace(coupler, transfer=transfer_of(sheet), transistor=transistor)
 
 
 def device_of_rows(e: Entry, sheet: Sheet) -> Device:

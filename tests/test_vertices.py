@@ -16,7 +16,7 @@ import pytest
 import random_links
 from enumeration import resistor_ends, survey, temperatures
 from oracle_led import LedState, Worn
-from test_enumeration import field_drive, turning
+from test_enumeration import field_drive, kinked, turning
 
 from optopick.brief import Brief, Position, Span
 from optopick.coupler import Coupler
@@ -27,18 +27,16 @@ SAMPLES = 200
 EXACT = 1e-9
 SLACK = {
     **dict.fromkeys(("led_dark", "output_low", "output_high"), 1e-7),
-    "led_power": 2e-3,
-    "total_power": 2e-3,
-    **dict.fromkeys(("edge_off", "delay_off", "distortion"), 0.02),
-    **dict.fromkeys(("edge_time", "delay", "shortest_pulse"), 0.02),
+    **dict.fromkeys(("led_power", "total_power"), 1e-3),
+    **dict.fromkeys(("edge_off", "delay_off", "distortion", "edge_time", "delay", "shortest_pulse"), 2e-3),
 }
 """What a check's worst corner may miss of its limit, or a time of itself, where the extreme need not be at a corner.
 
 led_dark and levels: the program sends leakage through 1e12 ohm where there is no shunt, and loses a picoampere.
 led_power: a series resistor gives the most to an LED that takes half the voltage, which a 3.3 V drive may have between
-its ends. Times after the LED goes dark: the gain has a knee where the saturation current passes a point of the CTR
-curve, at whatever temperature, CTR or load that happens. Measured with 4000 points on each of 461 designs: 0.08 % of
-the power, 1.6 % of the off edge, 0.9 % of the distortion, 0.15 % of the off delay.
+its ends. Times after the LED goes dark: the gain has a knee where a level's current passes a point of the CTR curve, at
+whatever temperature, CTR or load that happens. Measured with 4000 points on each of 245 designs whose CTR bends over
+temperature only at tried temperatures: 0.09 % of the power, 0.05 % of the off edge, less of the rest.
 """
 
 
@@ -184,7 +182,7 @@ def link(seed: int) -> tuple[np.random.Generator, Brief, Coupler]:
     brief, coupler = random_links.brief(rng), random_links.coupler(rng)
     if seed % 7 == 6:
         brief = field_drive(rng, brief)
-    return rng, brief, turning(coupler) if seed % 4 == 3 else coupler
+    return rng, brief, (lambda c: c, lambda c: c, kinked, turning)[seed % 4](coupler)
 
 
 def compare(seed: int) -> tuple[bool, bool, bool, bool]:
@@ -194,6 +192,7 @@ def compare(seed: int) -> tuple[bool, bool, bool, bool]:
     reviewed = review(brief, coupler, design)
     with np.errstate(invalid="ignore", divide="ignore", over="ignore"):
         rooms, values = rooms_at(brief, coupler, design, inside(rng, brief, coupler, design))
+    # Where one end of a span does not saturate, the slowest on edge is between: at the unit that only just does.
     saturates = all(c.value >= 1.0 for c in checks_of(brief, coupler, design, "ctr_margin"))
     for check in reviewed.checks:
         slack = SLACK.get(check.name, EXACT) * max(1.0, abs(check.margin))

@@ -5,7 +5,7 @@ from __future__ import annotations
 import sys
 from collections.abc import Callable
 from pathlib import Path
-from typing import Any
+from typing import TYPE_CHECKING, Any, NoReturn
 
 import click
 
@@ -24,6 +24,9 @@ from optopick.cli.app import (
     time_option,
 )
 
+if TYPE_CHECKING:
+    from optopick.brief import Brief
+
 # Imports stand inside the commands: --help and input errors must not wait for the numerical libraries.
 # ruff: noqa: PLC0415
 
@@ -39,7 +42,8 @@ from optopick.cli.app import (
     default="coupler",
     help="What the next best must differ in: another coupler (default), or any value.",
 )
-def pick(brief: Path, as_json: bool, time_limit: float, count: int, differ: str) -> None:
+@click.option("--simulate", is_flag=True, help="Simulate the design too; one that breaks a limit is cut.")
+def pick(brief: Path, as_json: bool, time_limit: float, count: int, differ: str, simulate: bool) -> None:
     """Find the best design for BRIEF, prove it, and check it again.
 
     Example: optopick pick examples/fastest.toml --next 2
@@ -47,6 +51,9 @@ def pick(brief: Path, as_json: bool, time_limit: float, count: int, differ: str)
     from optopick.read_brief import read_brief
 
     read = read_brief(brief)
+
+    if simulate:
+        _pick_simulated(read, as_json, time_limit)
 
     from optopick.uses.pick import alternatives
 
@@ -62,6 +69,25 @@ def pick(brief: Path, as_json: bool, time_limit: float, count: int, differ: str)
         for place, result in enumerate(results[1:], 2):
             show(next_text(result, place))
     sys.exit(exit_code(results[0].status))
+
+
+def _pick_simulated(read: Brief, as_json: bool, time_limit: float) -> NoReturn:
+    """`pick --simulate`, to its end."""
+    from optopick.uses.simulated import pick_simulated
+
+    result, simulation, cut = pick_simulated(read, time_limit=time_limit, progress=progress())
+    if as_json:
+        from optopick.report.as_json import result_object, simulation_object
+
+        show_json(result_object(result) | {"simulation": simulation_object(simulation, cut)})
+    else:
+        from optopick.report.text import result_text
+        from optopick.report.text_simulated import simulation_text
+
+        show(result_text(result, read.title))
+        if simulation is not None:
+            show(simulation_text(simulation, cut))
+    sys.exit(exit_code(result.status))
 
 
 def _resistor(name: str, required: bool, text: str) -> Callable[[Any], Any]:

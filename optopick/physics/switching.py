@@ -150,11 +150,13 @@ def time_off(s: Steps, i_be: Real) -> Array:
 def edge_on(s: Steps, n: Real, i_sat: Real) -> Array:
     """10 to 90 % of the swing as the LED lights [s], `s` cut by EDGE: `time_on`.
 
-    Where the drive does not saturate the output, as long as at the edge of saturation. Infinite where n <= 0.
-    Broadcasts.
+    Where the drive does not saturate the output, i_sat/n times as long as at the edge of saturation: as long as of a
+    unit whose CTR lets this drive just saturate, so that no unit between two is slower than both. Infinite where
+    n <= 0. Broadcasts.
     """
     n = np.asarray(n, dtype=float)
-    return np.asarray(np.where(n > 0, time_on(s, np.maximum(n, i_sat)), np.inf))
+    enough = np.maximum(n, i_sat)
+    return np.asarray(np.where(n > 0, time_on(s, enough) * enough / np.where(n > 0, n, 1.0), np.inf))
 
 
 def charging(charge: Real, eta: Real, i_eff: Real, i_be: Real) -> Array:
@@ -192,8 +194,10 @@ def storage(tau_s: Real, i_eff: Real, i_be: Real, i_sat: Real, hold: Real = 1.0)
 
 
 def drive_for_edge_on(s: Steps, time: Real, i_sat: Real) -> Array:
-    """Least n [A] with edge_on <= time; 0 where the edge of saturation is fast enough. Broadcasts."""
-    return np.asarray(np.where(time_on(s, i_sat) <= time, 0.0, _least_drive(s, time, 0.0)))
+    """Least n [A] with edge_on <= time, below i_sat where the edge of saturation is fast enough. Broadcasts."""
+    slowest = time_on(s, i_sat)
+    share = np.where(np.isfinite(slowest), slowest, np.inf) / np.asarray(time, dtype=float)
+    return np.asarray(np.where(share <= 1.0, i_sat * share * SAFE, _least_drive(s, time, 0.0)))
 
 
 def drive_for_crossing_on(s: Steps, time: Real) -> Array:

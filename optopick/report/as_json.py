@@ -10,6 +10,7 @@ from typing import Any
 
 from optopick.answers import Checked, Front, Nearest, Ranked, Ranking, Share, Sweep, Why, Yield
 from optopick.result import Check, Design, Objective, Result, Review
+from optopick.simulate.design import Simulation
 
 
 def dumps(value: object) -> str:
@@ -152,3 +153,20 @@ def sweep_object(sweep: Sweep) -> dict[str, object]:
 def yield_object(drawn: Yield) -> dict[str, object]:
     """The object that `yield --json` prints."""
     return {"samples": drawn.count, "good": drawn.good, "checks": [asdict(passing) for passing in drawn.checks]}
+
+
+def simulation_object(simulation: Simulation | None, cut: int) -> dict[str, object] | None:
+    """What `pick --simulate --json` adds: times of the formulas (guard included) and simulated, by corner."""
+    if simulation is None:
+        return None
+    pulses = [
+        {
+            "corner": pulse.corner.words,
+            "worst_for": list(pulse.worst_for),
+            "formula": {name: simulation.guard * value for name, value in asdict(pulse.by_formula).items()},
+            "simulated": None if pulse.times is None else asdict(pulse.times),
+            "reason": pulse.reason,
+        }
+        for pulse in simulation.pulses
+    ]
+    return {"refuted": cut, "reason": simulation.reason, "pulses": pulses}

@@ -41,7 +41,14 @@ def _rows(reels: Iterable[list[Placed]]) -> Iterator[tuple[object, ...]]:
     for reel in reels:
         one = reel[0]
         positions = " ".join(part.position for part in reel)
-        yield sum(part.pieces for part in reel), ohms_words(one.ohms), _tolerance(one), _rating(one), positions, _price(one.price)
+        yield (
+            sum(part.pieces for part in reel),
+            ohms_words(one.ohms),
+            _tolerance(one),
+            _rating(one),
+            positions,
+            _price(one.price),
+        )
 
 
 def _tolerance(one: Placed) -> str:

@@ -29,7 +29,9 @@ class InputFile:
 
     @property
     def text(self) -> str:
-        """The content as text; bytes that are no UTF-8 show as replacement characters."""
+        """The content as text; bytes that are no UTF-8 show as replacement characters, other files by their size."""
+        if b"\0" in self.content:  # a spreadsheet or Parquet table
+            return f"A file of {len(self.content)} bytes that are not text."
         return self.content.decode("utf-8", errors="replace").removeprefix("\ufeff")
 
 

@@ -55,8 +55,9 @@ def margin_bar(check: Check) -> Markup:
 
 
 def room_bar(share: Share) -> Markup:
-    """The room of a check in a margin budget: filled as far as it holds at the worst corner, framed as far as it would
-    with everything nominal; hidden like `margin_bar`.
+    """The room of a check in a margin budget, hidden like `margin_bar`.
+
+    Filled as far as it reaches at the worst corner, framed as far as it would with everything nominal.
     """
     begin, length = bar_span(share.worst)
     nominal = sum(bar_span(share.nominal))

@@ -55,7 +55,9 @@ SYMBOLS = {"r_led": "R_LED", "r_load": "R_load", "r_be": "R_BE", "r_shunt": "R_s
 def resistors_words(design: Design) -> str:
     """The resistors of a design in one line, which breaks between them and not within."""
     given = ((name, getattr(design, name)) for name in POSITIONS)
-    placed = [f"{SYMBOLS[name]} {value_words(ohms, pieces_of(design, name))}" for name, ohms in given if ohms is not None]
+    placed = [
+        f"{SYMBOLS[name]} {value_words(ohms, pieces_of(design, name))}" for name, ohms in given if ohms is not None
+    ]
     placed += ["reverse diode"] if design.reverse_diode else []
     return ", ".join(words.replace(" ", "\u00a0") for words in placed)
 

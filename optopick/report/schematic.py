@@ -1,32 +1,23 @@
 """The circuit of a design as it is configured, drawn to be read in light and dark, on paper and on a telephone.
 
-schemdraw draws the symbols at places given here in the drawing's own units, which are CSS pixels; colours, line widths
-and all text are added here. Resistors are the rectangles of IEC 60617.
+Places are in the drawing's own units, which are CSS pixels. Resistors are the rectangles of IEC 60617.
 """
 
 from __future__ import annotations
 
-import re
-import sys
-from collections.abc import Callable, Iterator, Sequence
-from contextlib import contextmanager
-from functools import cache
-from importlib import import_module
+from collections.abc import Callable, Iterator
 from itertools import pairwise
 from typing import Any
-from xml.etree import ElementTree
 
 from markupsafe import Markup
 
 from optopick.brief import Brief, DriveCircuit, OutputCircuit, Span
 from optopick.coupler import Coupler, Kind
 from optopick.report.placed import Placed, placed_resistors
-from optopick.report.svg import Point, element, picture, short, text
+from optopick.report.sheet import Sheet, pixels
+from optopick.report.svg import Point, element, picture, text
 from optopick.report.words import amount
 from optopick.result import Design
-
-UNIT = 36.0
-"""Pixels to one unit of schemdraw: half an inch at 72 to the inch."""
 
 WIDTH, HEIGHT = 560.0, 452.0
 SHUNT_ROOM, DIODE_ROOM = 24.0, 66.0
@@ -41,58 +32,10 @@ RAIL, RETURN = 74.0, 346.0
 PACKAGE = (128.0, 188.0, 276.0, 96.0)
 """Left, top, width and height of the coupler's outline."""
 
-_NUMBER = re.compile(r"-?\d+\.?\d*(?:e-?\d+)?")
-_FILLS = {"fill:none": "outline", "fill:white": "hollow"}
-_SHAPES = {"path", "polygon", "polyline", "circle", "ellipse", "rect"}
-
-
-class _Sheet:
-    """Collects symbols and wires from schemdraw, and text of our own."""
-
-    def __init__(self) -> None:
-        self.symbols, drawing = _schemdraw()
-        self.drawing: Any = drawing(canvas="svg", show=False)
-        self.words: list[Markup] = []
-        self.outlines: list[Markup] = []
-
-    def part(self, symbol: Any, begin: Point, end: Point) -> None:  # noqa: ANN401 - schemdraw's own element
-        """A part with two ends."""
-        self.drawing.add(symbol.at(_units(begin)).to(_units(end)))
-
-    def put(self, symbol: Any, at: Point) -> Any:  # noqa: ANN401 - schemdraw's own element
-        """A part at one point, unturned."""
-        return self.drawing.add(symbol.right().at(_units(at)))
-
-    def wire(self, *points: Point) -> None:
-        """A line through points."""
-        for begin, end in pairwise(points):
-            self.part(self.symbols.Line(), begin, end)
-
-    def triangle(self, tip: Point, length: float, half: float) -> None:
-        """A stage that passes a signal on, to the right: a triangle with its tip at a point."""
-        (x, y), back = tip, tip[0] - length
-        corners = ((back, y - half), (back, y + half), (x, y))
-        places = " ".join(f"{short(across)},{short(down)}" for across, down in corners)
-        self.outlines.append(element("polygon", points=places, class_="outline"))
-
-    def joint(self, *points: Point) -> None:
-        """Dots where wires meet."""
-        for point in points:
-            self.put(self.symbols.Dot(radius=0.085), point)
-
-    def resistor(self, begin: Point, end: Point) -> None:
-        """A resistor between two points."""
-        self.part(self.symbols.ResistorIEC(), begin, end)
-
-    def say(self, at: Point, *lines: str | Markup, class_: str = "", anchor: str = "start") -> None:
-        """Lines of text below each other; the first is a symbol's name where it is Markup."""
-        for k, line in enumerate(lines):
-            self.words.append(text((at[0], at[1] + 19 * k), line, class_, anchor))
-
 
 def schematic_svg(brief: Brief, coupler: Coupler, design: Design) -> str:
     """The circuit with the chosen values: drive, LED side, barrier, output side, as this brief configures them."""
-    sheet = _Sheet()
+    sheet = Sheet()
     placed = {one.position: one for one in placed_resistors(brief, design)}
     _DRIVES[brief.drive.circuit](sheet, brief)
     _led_side(sheet, placed, design)
@@ -103,7 +46,7 @@ def schematic_svg(brief: Brief, coupler: Coupler, design: Design) -> str:
         side = _pulled_up if brief.output.circuit is OutputCircuit.PULL_UP else _emitter_load
         side(sheet, brief, placed)
     left = (SHUNT_ROOM + DIODE_ROOM * design.reverse_diode) if "r_shunt" in placed else 0.0
-    shapes = Markup("").join((*_shapes(sheet.drawing.get_imagedata("svg")), *sheet.outlines))
+    shapes = sheet.shapes()
     return picture(
         "Schematic",
         _described(brief, coupler, placed),
@@ -113,42 +56,6 @@ def schematic_svg(brief: Brief, coupler: Coupler, design: Design) -> str:
         viewBox=f"{-left:g} 0 {WIDTH + left:g} {HEIGHT:g}",
         class_="schematic",
     )
-
-
-def _units(point: Point) -> tuple[float, float]:
-    return point[0] / UNIT, -point[1] / UNIT
-
-
-@cache
-def _schemdraw() -> tuple[Any, Any]:
-    """Schemdraw's symbols and its Drawing."""
-    with _without("matplotlib"):
-        package = import_module("schemdraw")
-        return import_module("schemdraw.elements"), package.Drawing
-
-
-@contextmanager
-def _without(name: str) -> Iterator[None]:
-    """Keep a package from being imported meanwhile: schemdraw would take two seconds to load matplotlib for nothing."""
-    loaded = name in sys.modules
-    if not loaded:
-        sys.modules[name] = None  # type: ignore[assignment]  # the documented way to make an import fail
-    try:
-        yield
-    finally:
-        if not loaded:
-            del sys.modules[name]
-
-
-def _shapes(data: bytes) -> Iterator[Markup]:
-    """Schemdraw's shapes without their styles: outlines, filled and hollow ones told apart by class."""
-    for node in ElementTree.fromstring(data).iter():
-        name = node.tag.rpartition("}")[2]
-        if name in _SHAPES:
-            style = node.attrib.pop("style", "")
-            kind = next((kind for fill, kind in _FILLS.items() if fill in style), "filled")
-            places = {key: _NUMBER.sub(lambda found: short(float(found[0])), value) for key, value in node.attrib.items()}
-            yield element(name, class_=kind, **places)
 
 
 def _name(symbol: str) -> Markup:
@@ -166,7 +73,7 @@ def _value_lines(one: Placed) -> tuple[Markup, str, str]:
     return _name(one.symbol), one.words, ", ".join(part for part in rated if part)
 
 
-def _resistor_words(sheet: _Sheet, at: Point, one: Placed, anchor: str = "start") -> None:
+def _resistor_words(sheet: Sheet, at: Point, one: Placed, anchor: str = "start") -> None:
     name, value, rated = _value_lines(one)
     sheet.say(at, name, class_="name", anchor=anchor)
     sheet.say((at[0], at[1] + 20), value, class_="value", anchor=anchor)
@@ -185,7 +92,7 @@ def _span_words(span: Span, unit: str) -> str:
 # ---- the drive --------------------------------------------------------------------------------------------------
 
 
-def _source(sheet: _Sheet, brief: Brief) -> None:
+def _source(sheet: Sheet, brief: Brief) -> None:
     _driver_pin(sheet, (66.0, RAIL))
     sheet.say((8, RAIL - 46), "driver pin,", "high lights the LED", class_="small")
     sheet.say((8, RAIL + 34), _span_words(brief.drive.supply, "V"), class_="small")
@@ -193,7 +100,7 @@ def _source(sheet: _Sheet, brief: Brief) -> None:
     sheet.put(sheet.symbols.Ground(), (LED_X, RETURN))
 
 
-def _sink(sheet: _Sheet, brief: Brief) -> None:
+def _sink(sheet: Sheet, brief: Brief) -> None:
     sheet.put(sheet.symbols.Vdd(), (66.0, RAIL))
     sheet.say((8, RAIL - 50), "drive supply", _span_words(brief.drive.supply, "V"), class_="small")
     sheet.wire((LED_X, INNER_BOTTOM), (LED_X, RETURN), (66.0, RETURN))
@@ -201,7 +108,7 @@ def _sink(sheet: _Sheet, brief: Brief) -> None:
     sheet.say((8, RETURN + 34), "driver pin,", "low lights the LED", class_="small")
 
 
-def _field(sheet: _Sheet, brief: Brief) -> None:
+def _field(sheet: Sheet, brief: Brief) -> None:
     for y, sign in ((RAIL, "+"), (RETURN, "−")):
         sheet.put(sheet.symbols.Dot(open=True, radius=0.13), (66.0, y))
         sheet.say((44, y + 6), sign, class_="name", anchor="middle")
@@ -211,21 +118,21 @@ def _field(sheet: _Sheet, brief: Brief) -> None:
     sheet.wire((LED_X, INNER_BOTTOM), (LED_X, RETURN), (66.0, RETURN))
 
 
-def _driver_pin(sheet: _Sheet, at: Point) -> None:
+def _driver_pin(sheet: Sheet, at: Point) -> None:
     """A driver as a triangle whose tip is the pin."""
     x, y = at
     sheet.triangle(at, 30, 17)
     sheet.wire((x - 44, y), (x - 30, y))
 
 
-_DRIVES: dict[DriveCircuit, Callable[[_Sheet, Brief], None]] = {
+_DRIVES: dict[DriveCircuit, Callable[[Sheet, Brief], None]] = {
     DriveCircuit.SOURCE: _source,
     DriveCircuit.SINK: _sink,
     DriveCircuit.FIELD: _field,
 }
 
 
-def _led_side(sheet: _Sheet, placed: dict[str, Placed], design: Design) -> None:
+def _led_side(sheet: Sheet, placed: dict[str, Placed], design: Design) -> None:
     """The LED and its resistors: further ones in series lie in the wire from the drive."""
     further = min(design.pieces, MOST_DRAWN) - 1
     joints = [66.0 + k * (LED_X - 66.0) / max(further, 1) for k in range(max(further, 1) + 1)]
@@ -241,10 +148,15 @@ def _led_side(sheet: _Sheet, placed: dict[str, Placed], design: Design) -> None:
     if design.reverse_diode:
         x = -26.0 if "r_shunt" in placed else 108.0
         _across(sheet, x, sheet.symbols.Diode().scale(1.2), upward=True)
-        sheet.say((x - 16, MIDDLE - 6), *(("diode",) if "r_shunt" in placed else ("reverse", "diode")), class_="small", anchor="end")
+        sheet.say(
+            (x - 16, MIDDLE - 6),
+            *(("diode",) if "r_shunt" in placed else ("reverse", "diode")),
+            class_="small",
+            anchor="end",
+        )
 
 
-def _across(sheet: _Sheet, x: float, symbol: Any, *, upward: bool = False) -> None:  # noqa: ANN401 - schemdraw's own element
+def _across(sheet: Sheet, x: float, symbol: Any, *, upward: bool = False) -> None:  # noqa: ANN401 - schemdraw's own element
     """A part from one end of the LED to the other."""
     top, bottom = INNER_TOP - 24, INNER_BOTTOM + 24
     sheet.wire((LED_X, top), (x, top))
@@ -275,31 +187,27 @@ def _barrier(brief: Brief, coupler: Coupler) -> Iterator[Markup]:
 # ---- the output -------------------------------------------------------------------------------------------------
 
 
-def _transistor(sheet: _Sheet, coupler: Coupler) -> None:
+def _transistor(sheet: Sheet, coupler: Coupler) -> None:
     """A transistor, or two with their collectors joined; the base's wire only where it is brought out."""
     scale = 1.3
     if coupler.kind is Kind.DARLINGTON:
         first = sheet.put(sheet.symbols.BjtNpn().scale(0.95), (BASE_X + 12, MIDDLE - 16))
         second = sheet.put(sheet.symbols.BjtNpn().scale(scale), (OUT_X - 35.2, MIDDLE + 8))
-        base, inner = _pixels(first.emitter), _pixels(second.base)
+        base, inner = pixels(first.emitter), pixels(second.base)
         sheet.wire(base, (base[0], inner[1]), inner)
-        sheet.wire(_pixels(first.collector), (_pixels(first.collector)[0], INNER_TOP + 10), (OUT_X, INNER_TOP + 10))
+        sheet.wire(pixels(first.collector), (pixels(first.collector)[0], INNER_TOP + 10), (OUT_X, INNER_TOP + 10))
         sheet.joint((OUT_X, INNER_TOP + 10))
-        start = _pixels(first.base)
+        start = pixels(first.base)
     else:
         second = sheet.put(sheet.symbols.BjtNpn().scale(scale), (OUT_X - 35.2, MIDDLE))
-        start = _pixels(second.base)
-    sheet.wire(_pixels(second.collector), (OUT_X, INNER_TOP))
-    sheet.wire(_pixels(second.emitter), (OUT_X, INNER_BOTTOM))
+        start = pixels(second.base)
+    sheet.wire(pixels(second.collector), (OUT_X, INNER_TOP))
+    sheet.wire(pixels(second.emitter), (OUT_X, INNER_BOTTOM))
     if coupler.base_pin:
         sheet.wire(start, (BASE_X, start[1]), (BASE_X, INNER_BOTTOM + 10))
 
 
-def _pixels(point: Sequence[float]) -> Point:
-    return point[0] * UNIT, -point[1] * UNIT
-
-
-def _supply(sheet: _Sheet, brief: Brief, at: Point, side: int = 1) -> None:
+def _supply(sheet: Sheet, brief: Brief, at: Point, side: int = 1) -> None:
     """The output's supply, its words to the right (1) or to the left (-1)."""
     anchor = "start" if side > 0 else "end"
     sheet.put(sheet.symbols.Vdd(), at)
@@ -307,7 +215,7 @@ def _supply(sheet: _Sheet, brief: Brief, at: Point, side: int = 1) -> None:
     sheet.say((at[0] + 16 * side, at[1] + 6), _span_words(brief.output.supply, "V"), class_="small", anchor=anchor)
 
 
-def _receiver(sheet: _Sheet, brief: Brief, at: Point) -> None:
+def _receiver(sheet: Sheet, brief: Brief, at: Point) -> None:
     """The wire to the receiver, and its thresholds."""
     x, y = WIDTH - 52, at[1]
     sheet.joint(at)
@@ -325,7 +233,7 @@ def _threshold_words(span: Span) -> str:
     return f"{low} V" if low == high else f"{low} to {high} V"
 
 
-def _base_resistor(sheet: _Sheet, placed: dict[str, Placed], y: float) -> None:
+def _base_resistor(sheet: Sheet, placed: dict[str, Placed], y: float) -> None:
     if "r_be" not in placed:
         return
     sheet.wire((BASE_X, INNER_BOTTOM + 10), (BASE_X, y))
@@ -334,7 +242,7 @@ def _base_resistor(sheet: _Sheet, placed: dict[str, Placed], y: float) -> None:
     _resistor_words(sheet, (OUT_X - 18, y + 26), placed["r_be"], "end")
 
 
-def _pulled_up(sheet: _Sheet, brief: Brief, placed: dict[str, Placed]) -> None:
+def _pulled_up(sheet: Sheet, brief: Brief, placed: dict[str, Placed]) -> None:
     _supply(sheet, brief, (OUT_X, 46.0))
     sheet.resistor((OUT_X, 46.0), (OUT_X, 146.0))
     _resistor_words(sheet, (OUT_X + 18, 86.0), placed["r_load"])
@@ -345,7 +253,7 @@ def _pulled_up(sheet: _Sheet, brief: Brief, placed: dict[str, Placed]) -> None:
     sheet.put(sheet.symbols.GroundSignal(), (OUT_X, RETURN))
 
 
-def _emitter_load(sheet: _Sheet, brief: Brief, placed: dict[str, Placed]) -> None:
+def _emitter_load(sheet: Sheet, brief: Brief, placed: dict[str, Placed]) -> None:
     _supply(sheet, brief, (OUT_X, 118.0))
     sheet.wire((OUT_X, 118.0), (OUT_X, INNER_TOP))
     sheet.wire((OUT_X, INNER_BOTTOM), (OUT_X, 332.0))
@@ -356,7 +264,7 @@ def _emitter_load(sheet: _Sheet, brief: Brief, placed: dict[str, Placed]) -> Non
     sheet.put(sheet.symbols.GroundSignal(), (OUT_X, 412.0))
 
 
-def _logic_side(sheet: _Sheet, brief: Brief, placed: dict[str, Placed]) -> None:
+def _logic_side(sheet: Sheet, brief: Brief, placed: dict[str, Placed]) -> None:
     """A logic output with an open collector: amplifier, supply pin, pull-up, receiver."""
     left, right, x = BASE_X + 20, BASE_X + 74, OUT_X + 36
     sheet.triangle((right, MIDDLE), right - left, 28)

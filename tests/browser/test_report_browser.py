@@ -17,10 +17,10 @@ import pytest
 
 sys.path.insert(0, str(Path(__file__).parents[1]))
 
-import report_samples as samples  # noqa: E402
+import report_samples as samples
 
-from optopick.report.page import page  # noqa: E402
-from optopick.report.words import amount, standing  # noqa: E402
+from optopick.report.page import page
+from optopick.report.words import amount, standing
 
 CHROMIUM = os.environ.get("CHROMIUM") or shutil.which("chromium") or shutil.which("chromium-browser")
 if CHROMIUM is None:
@@ -39,7 +39,12 @@ FLAGS = [
 ]
 WIDTHS = (390, 820, 1280)
 AXE = (Path(axe_package.__file__).parent / "axe.min.js").read_text(encoding="utf-8")
-DOCUMENTS = {"full": samples.full, "plain": samples.plain, "given": samples.given, "nothing found": samples.nothing_found}
+DOCUMENTS = {
+    "full": samples.full,
+    "plain": samples.plain,
+    "given": samples.given,
+    "nothing found": samples.nothing_found,
+}
 
 
 @pytest.fixture(scope="session")
@@ -173,7 +178,8 @@ def test_accessible(browser, files, name, scheme, width):
 def test_axe_sees_faults(browser, tmp_path):
     """The test's own eyes: grey on grey and an image without words are found."""
     path = tmp_path / "faulty.html"
-    path.write_text('<!DOCTYPE html><html lang="en"><title>x</title><p style="color:#999;background:#bbb">grey on grey</p><img src="data:,">')
+    faults = '<p style="color:#999;background:#bbb">grey on grey</p><img src="data:,">'
+    path.write_text(f'<!DOCTYPE html><html lang="en"><title>x</title>{faults}')
     with Shown(browser, path) as shown:
         found = {violation.partition(":")[0] for violation in violations(shown)}
     assert {"color-contrast", "image-alt"} <= found
@@ -292,7 +298,7 @@ def pdf_words(path: Path) -> list[str]:
     return run.stdout.split("<page ")[1:]
 
 
-@pytest.mark.skipif(shutil.which("pdftotext") is None, reason="pdftotext is not installed (apt-get install poppler-utils)")
+@pytest.mark.skipif(shutil.which("pdftotext") is None, reason="pdftotext is missing (Debian: poppler-utils)")
 @pytest.mark.parametrize(("paper", "width"), [("A4", 595), ("Letter", 612)])
 def test_print_is_not_cut(show, tmp_path, paper, width):
     """Every word lies on its page within the margins; the brief is printed in full, the controls are not."""

@@ -7,6 +7,7 @@ TLP785 (read), the rest is only there to make the row complete and does not ente
 """
 
 import math
+from itertools import pairwise
 
 import pytest
 
@@ -92,21 +93,28 @@ def test_the_rising_row_comes_back_where_it_is_the_longer(tmp_path):
 
 
 def test_the_constants_of_a_flat_ctr_curve_by_hand(tmp_path):
-    """One step from 10 to 90 % instead of three: charge over LED current is nearly constant along a flat curve."""
+    """Charge between four levels from 10 to 90 %, each 9^(1/3) times the last, over the change of LED current."""
     transistor = resolve(tmp_path, ctr_curve="0.01:1 50:1").transistor
-    eta = CTR / transistor.h_fe
     transit, c_0 = transistor.tau_0 / transistor.h_fe, transistor.c_m / transistor.h_fe
 
     def junction(v):
         return c_0 * 0.7 / 0.63 * ((1 + v / 0.7) ** 0.63 - 1)
 
-    def tau(j, v_cc, swing):
-        v_b = [0.65 + 0.025693 * math.log(x * j / 2e-3) for x in (0.1, 0.9)]
-        taken = junction(v_cc - 0.1 * swing - v_b[0]) - junction(v_cc - 0.9 * swing - v_b[1])
-        return (transit * 0.8 * j + 14e-12 * (v_b[1] - v_b[0]) + taken) / (eta * 0.8 * j / CTR)
+    def charge(x, j, v_cc, swing):
+        v_b = 0.65 + 0.025693 * math.log(x * j / 2e-3)
+        return transit * x * j + 14e-12 * v_b + junction(v_cc) - junction(v_cc - x * swing - v_b)
 
-    assert tau(2e-3, 10.0, 0.2) * math.log(9) == pytest.approx(3e-6, rel=0.02)
-    assert tau(4.8 / 1900, 5.0, 4.8) * math.log(9) == pytest.approx(15e-6, rel=0.12)
+    def fall_by_hand(j, v_cc, swing):
+        levels = [0.1 * 9 ** (k / 3) for k in range(4)]
+        eta = CTR / transistor.h_fe
+        taus = (
+            (charge(b, j, v_cc, swing) - charge(a, j, v_cc, swing)) / (eta * (b - a) * j / CTR)
+            for a, b in pairwise(levels)
+        )
+        return sum(taus) * math.log(9) / 3
+
+    assert fall_by_hand(2e-3, 10.0, 0.2) == pytest.approx(3e-6, rel=1e-4)
+    assert fall_by_hand(4.8 / 1900, 5.0, 4.8) == pytest.approx(15e-6, rel=1e-4)
 
 
 def test_the_figures_that_the_rules_quote_from_this_sheet(tmp_path):

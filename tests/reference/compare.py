@@ -98,11 +98,12 @@ def product_ratios() -> dict[str, Ratios]:
 def summary() -> list[str]:
     """Lines of the table in README.md."""
     found = product_ratios()
-    lines = ["| record | quantity | median | 5 % | 95 % | least | most | within 25 % |", "|---|---|---|---|---|---|---|---|"]
+    head = ("record", "quantity", "median", "5 %", "95 %", "least", "most", "within 25 %")
+    lines = [f"| {' | '.join(head)} |", "|---" * len(head) + "|"]
     for name, r in found.items():
         lines += [f"| {name} | {' | '.join(line.split())} |" for line in table(r)]
-    least = f"{guard(found.values()):.3f}"
-    return [*lines, "", f"Guard: all but 1 in 500 of the simulated edges and delays last at most {least} times the predicted."]
+    least = f"{guard(found.values()):.3f} times the predicted"
+    return [*lines, "", f"Guard: all but 1 in 500 of the simulated edges and delays last at most {least}."]
 
 
 HEAD = f"  {'':10} {'median':>7} {'5 %':>7} {'95 %':>7} {'least':>7} {'most':>7} {'in 25 %':>8}"

@@ -8,7 +8,7 @@ from pathlib import Path
 import numpy as np
 import pytest
 
-from optopick.keys import sections
+from optopick.keys import brief_sections
 from optopick.physics import switching
 from optopick.physics.charge import Base, Load
 from optopick.physics.transfer import led_current_for
@@ -50,7 +50,7 @@ def test_every_circuit_is_compared_once() -> None:
 
 @pytest.mark.parametrize("sheet", SHEETS, ids=lambda s: s.name)
 def test_constants_give_the_rows_back(sheet: Sheet) -> None:
-    """Both rows by the physics from the constants; of the plain row alone at least that row, nothing to fall back on."""
+    """Both rows by the physics from the constants, nothing to fall back on; of the plain row alone that row."""
     transfer, plain, saturated = transfer_of(sheet), plain_row(sheet), saturated_row(sheet)
     both, alone = constants_of_rows(sheet), constants_of_plain_row(sheet)
     assert both.assumed == ()
@@ -96,7 +96,8 @@ def test_the_default_guard_covers_all_but_one_in_five_hundred() -> None:
 
 
 def default_guard() -> float:
-    return next(float(key.default) for section in sections() for key in section.keys if key.name == "timing_guard")
+    keys = (key for section in brief_sections() for key in section.keys)
+    return float(next(key.default for key in keys if key.path == "limits.timing_guard"))
 
 
 def test_the_table_of_the_readme_is_that_of_the_records() -> None:
