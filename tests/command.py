@@ -12,8 +12,11 @@ import struct
 import subprocess
 import sys
 import termios
+from collections.abc import Iterator
 from dataclasses import dataclass
 from pathlib import Path
+
+import click
 
 from optopick.cli import main
 
@@ -65,3 +68,12 @@ def run_at_terminal(columns: int, *arguments: str | Path, **environment: str) ->
     assert process.returncode in (0, 1), errors
     assert b"Traceback" not in errors, errors.decode()
     return shown.decode().replace("\r\n", "\n")
+
+
+def commands_of(group: click.Group, before: str = "") -> Iterator[tuple[str, click.Command]]:
+    """Every command with its name as typed, those of groups too."""
+    for name, command in group.commands.items():
+        if isinstance(command, click.Group):
+            yield from commands_of(command, f"{before}{name} ")
+        else:
+            yield f"{before}{name}", command

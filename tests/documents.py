@@ -6,8 +6,7 @@ In a document, a block
     $ optopick pick examples/fastest.toml | head -n 20
     ```
 
-is followed by what the command prints; a command alone on its line may be cut by `| head -n N` or `| tail -n N`. The
-table of keys stands between the lines `<!-- keys -->` and `<!-- end of keys -->`.
+is followed by what the command prints; `_filtered` says what may stand after a `|`. The table of keys stands between the lines `<!-- keys -->` and `<!-- end of keys -->`.
 """
 
 from __future__ import annotations
@@ -61,11 +60,29 @@ def printed_by(command: str) -> str:
         lines = run(*words[1:]).out.splitlines()
     finally:
         os.chdir(before)
-    for cut in pipeline[1:]:
-        name, option, count = shlex.split(cut)
-        assert (name, option) in (("head", "-n"), ("tail", "-n")), command
-        lines = lines[: int(count)] if name == "head" else lines[-int(count) :]
+    assert lines, f"{command} prints nothing"
+    for filter_ in pipeline[1:]:
+        lines = _filtered(lines, shlex.split(filter_))
     return "".join(f"{line.rstrip()}\n" for line in lines)
+
+
+def _filtered(lines: list[str], words: list[str]) -> list[str]:
+    """What a filter leaves: `head -n N`, `tail -n N`, `sed '/^TEXT/,$d'`, `grep -A N '^TEXT'`."""
+    match words:
+        case ["head", "-n", count]:
+            return lines[: int(count)]
+        case ["tail", "-n", count]:
+            return lines[-int(count) :]
+        case ["sed", cut] if found := re.fullmatch(r"/\^(\w+)/,\$d", cut):
+            return lines[: _first(lines, found.group(1))]
+        case ["grep", "-A", count, pattern]:
+            at = _first(lines, pattern.removeprefix("^"))
+            return lines[at : at + 1 + int(count)]
+    raise AssertionError(f"no filter that documents may use: {shlex.join(words)}")
+
+
+def _first(lines: list[str], start: str) -> int:
+    return next(k for k, line in enumerate(lines) if line.startswith(start))
 
 
 def steady(output: str) -> str:

@@ -45,7 +45,9 @@ def coupler(rng: np.random.Generator, part: str = "RND-1") -> Coupler:
         kind=Kind.PHOTOTRANSISTOR,
         base_pin=bool(rng.random() < 0.6),
         channels=1,
-        led=Led(v_f - 0.1, v_f, v_f + 0.2, 10e-3, 2.0, 3.0, -1.5e-3, Rating(60e-3, 60, 1e-3), Rating(0.1, 60, 1.5e-3), 5.0),
+        led=Led(
+            v_f - 0.1, v_f, v_f + 0.2, 10e-3, 2.0, 3.0, -1.5e-3, Rating(60e-3, 60, 1e-3), Rating(0.1, 60, 1.5e-3), 5.0
+        ),
         p_out=Rating(0.15, 25, 1.5e-3),
         p_total=Rating(0.2, 25, 2e-3),
         barrier=Barrier(5000.0, 600.0, 7e-3, "invented"),
@@ -102,7 +104,9 @@ def brief(rng: np.random.Generator, series: str = "E12", circuit: OutputCircuit 
     base = position(series, 47e3, 1e6, absent=bool(rng.random() < 0.5)) if rng.random() < 0.7 else None
     return Brief(
         title="random",
-        signal=Signal(shortest_pulse=float(np.exp(rng.uniform(np.log(60e-6), np.log(3e-3)))), lit=float(rng.uniform(0.1, 0.9))),
+        signal=Signal(
+            shortest_pulse=float(np.exp(rng.uniform(np.log(60e-6), np.log(3e-3)))), lit=float(rng.uniform(0.1, 0.9))
+        ),
         drive=Drive(
             circuit=DriveCircuit.SOURCE,
             supply=Span(v_drive * 0.95, v_drive * 1.05),
@@ -120,7 +124,9 @@ def brief(rng: np.random.Generator, series: str = "E12", circuit: OutputCircuit 
             input_current_low=float(rng.choice([0, 100e-6])),
             capacitance=float(rng.choice([10e-12, 50e-12])),
         ),
-        environment=Environment(Span(float(rng.choice([-40, -20, 0])), float(rng.choice([50, 70, 85]))), life=10 * 8766.0),
+        environment=Environment(
+            Span(float(rng.choice([-40, -20, 0])), float(rng.choice([50, 70, 85]))), life=10 * 8766.0
+        ),
         limits=Limits(
             ctr_margin=maybe(0.7, 1.05, 1.6),
             edge_time=maybe(0.3, 8e-6, 200e-6),

@@ -164,8 +164,8 @@ class TestSheet:
         row[header.index("ctr_max")] = "=2*90"
         number = header.index("ctr_max") + 1
         assert mistakes_of(saved(tmp_path, [header, row], "xlsx")) == [
-            f'table.xlsx sheet "Parts" row 2, cell {number}: found a formula without a stored value; expected its value: '
-            "open the file in the spreadsheet and save it again"
+            f'table.xlsx sheet "Parts" row 2, cell {number}: found a formula without a stored value; '
+            "expected its value: open the file in the spreadsheet and save it again"
         ]
 
     def test_an_error_of_the_spreadsheet_is_not_an_empty_cell(self, tmp_path):

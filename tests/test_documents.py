@@ -7,9 +7,9 @@ import subprocess
 
 import click
 import pytest
-from command import ROOT
+from cli_links import CHECK, FIELDS, RESULT
+from command import ROOT, commands_of
 from documents import DOCUMENTS, KEYS, keys_table, printed_by, shown_in, steady
-from test_cli import CHECK, FIELDS, RESULT
 
 from optopick.cli import main
 
@@ -30,7 +30,7 @@ def test_the_readme_shows_the_program():
 
 
 def test_every_command_and_option_is_documented():
-    for name, command in main.commands.items():
+    for name, command in commands_of(main):
         assert f"optopick {name} " in README or f"`{name}`" in README, name
         for parameter in command.params:
             if isinstance(parameter, click.Option) and "--help" not in parameter.opts:

@@ -179,6 +179,13 @@ def test_fine_series(seed, goal):
     assert agree(brief, [random_links.coupler(rng)])
 
 
+def easy(brief: Brief) -> Brief:
+    """The same link with limits that more designs hold."""
+    limits = replace(brief.limits, ctr_margin=1.05, edge_time=1e-3, delay=2e-3, distortion=2e-3, power=1.0)
+    drive = replace(brief.drive, max_current=None, off_leakage=1e-6)
+    return replace(brief, limits=limits, drive=drive, signal=replace(brief.signal, shortest_pulse=3e-3))
+
+
 @pytest.mark.parametrize("seed", range(22))
 def test_every_design_check_by_check(seed):
     """Not just the best: every design of a small grid has the same checks with the same room, and the same goals."""
@@ -186,6 +193,8 @@ def test_every_design_check_by_check(seed):
     brief, coupler = random_links.brief(rng, "E3", list(OutputCircuit)[seed % 2]), random_links.coupler(rng)
     brief = field_drive(rng, brief) if seed % 5 == 4 else brief
     brief = shortened(rng, brief, (3, 3, 2, 1))
+    if seed % 4 > 1:
+        brief = easy(brief)
     coupler = (lambda c: c, kinked, turning)[seed % 3](coupler)
     grid = feasible_grid(brief, coupler)
     for k in range(len(grid.r_led)):

@@ -125,7 +125,7 @@ def test_every_kind_specific_check_has_words():
 
 @pytest.mark.parametrize("seed", range(12))
 def test_no_kind_answers_for_another_whatever_the_design(seed):
-    """Random designs, most of them failing: still only the checks that apply, each once, and all with the limits stated."""
+    """Random designs, most of them failing: still only the checks that apply, each once, and those of every limit."""
     rng = np.random.default_rng(seed)
     brief = random_links.brief(rng, circuit=OutputCircuit.PULL_UP)
     brief = replace(brief, limits=replace(brief.limits, ctr_margin=1.2, edge_time=1e-4, delay=1e-4))
@@ -158,7 +158,9 @@ def test_the_model_has_no_row_of_another_kind(part):
 
 def test_nobody_is_rejected_for_what_does_not_apply():
     foreign = {Kind.LOGIC: TRANSISTOR | {"r_be_power"}, Kind.DARLINGTON: LOGIC, Kind.PHOTOTRANSISTOR: LOGIC}
-    told = [(demo()[one.part].kind, one.reason) for name in WINNERS for one in ranking(name).rejected if one.part in MIXED]
+    told = [
+        (demo()[one.part].kind, one.reason) for name in WINNERS for one in ranking(name).rejected if one.part in MIXED
+    ]
     assert {kind for kind, _ in told} == set(Kind)
     for kind, reason in told:
         assert not [name for name in foreign[kind] if check_label(name) in reason], reason

@@ -25,8 +25,8 @@ LAYERS: tuple[tuple[str, ...], ...] = (
     ("physics",),
     (
         *("keys", "stock", "key_values", "read_keys", "brief_rules", "brief_stock", "read_brief", "brief_schema"),
-        *("coupler_columns", "coupler_curves", "coupler_files", "coupler_cells", "gaps", "gaps_switching", "coupler_rows"),
-        *("coupler_sheets", "read_couplers", "switching_rows", "switching_fit"),
+        *("coupler_columns", "coupler_curves", "coupler_files", "coupler_cells", "gaps", "gaps_switching"),
+        *("coupler_rows", "coupler_sheets", "read_couplers", "switching_rows", "switching_fit"),
         *("corners", "result", "answers", "cautions"),
     ),
     ("model", "recheck", "simulate"),

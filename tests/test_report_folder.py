@@ -7,7 +7,7 @@ from pathlib import Path
 import pytest
 
 from optopick.errors import InputError
-from optopick.report.folder import write_folder
+from optopick.report.folder import REPORT_FILES, refuse_occupied, write_folder
 
 FILES = {"report.html": "<p>Ω</p>", "bom.csv": b"a,b\n"}
 
@@ -48,6 +48,14 @@ def test_existing_folder_is_refused(tmp_path):
     assert (target / "report.html").read_text() == "changed"
 
 
+def test_refusal_before_any_work(tmp_path):
+    """What is there already is refused before the solving, unless it may be replaced."""
+    refuse_occupied(tmp_path / "new", force=False)
+    refuse_occupied(tmp_path, force=True)
+    with pytest.raises(InputError, match="something that is there already"):
+        refuse_occupied(tmp_path, force=False)
+
+
 def test_force_replaces_an_earlier_report(tmp_path):
     target = tmp_path / "review"
     write_folder(target, {**FILES, "report.html": "old"}, force=False)
@@ -64,6 +72,14 @@ def test_force_never_removes_what_is_not_a_report_s(tmp_path):
     (target / "more.txt").write_text("mine")
     assert refusal(target, force=True).startswith('"more.txt" and 1 more')
     assert (target / "notes.txt").read_text() == "mine"
+
+
+def test_force_replaces_a_report_that_had_more_files(tmp_path):
+    """A brief that has become infeasible writes fewer files; nothing of the earlier answer stays."""
+    target = tmp_path / "review"
+    write_folder(target, dict.fromkeys(REPORT_FILES, "old"), force=False)
+    write_folder(target, {"review.html": "new"}, force=True)
+    assert contents(target) == {"review.html": b"new"}
 
 
 def test_a_folder_by_a_report_s_name_is_not_a_report(tmp_path):

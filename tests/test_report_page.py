@@ -17,7 +17,8 @@ import report_samples as samples
 from optopick.answers import Change, Why
 from optopick.report import page as page_module
 from optopick.report.document import Document, InputFile, Walk
-from optopick.report.labels import POSITIONS, check_label
+from optopick.report.explorer import walk_view
+from optopick.report.labels import CHECKS, POSITIONS, check_label
 from optopick.report.page import page
 from optopick.report.placed import placed_resistors
 from optopick.report.words import amount, limit_words, room_words, standing
@@ -259,6 +260,43 @@ def test_explorer_data_are_the_reviews():
                 assert words == [*told, check.corner]
                 assert (state == "fails") == (not check.passed)
                 assert 0 <= begin <= begin + length <= 100.1
+
+
+def test_explorer_s_cursor_is_where_the_plot_has_the_value():
+    """The places for the cursor are those of the plot's own points; an empty position has none."""
+    document = samples.full()
+    root = samples.read(page(document))
+    data = json.loads(root.one("script", type="application/json").children[0])
+    for shown, walk in zip(data["walks"][:2], document.walks[:2], strict=True):
+        figure = root.one("div", data_walk=shown["id"])
+        line = figure.all("polyline")[0].attributes["points"].split()
+        across = [float(pair.split(",")[0]) / 10 for pair in line]
+        places = [place for place in shown["cursors"] if place is not None]
+        assert places[: len(across)] == pytest.approx(across, abs=0.01)
+        assert figure.one("line", class_="cursor").attributes["x1"] == f"{shown['cursors'][walk.chosen]:g}%"
+        assert (shown["cursors"][-1] is None) == (walk.position == "r_be")
+
+
+def test_sweep_plot_shows_the_tightest_checks_that_move():
+    document = samples.full()
+    plot = walk_view(document.walks[0]).plot
+    shown = [node.text for node in samples.read(plot).all("text") if node.text in CHECKS.values()]
+    rooms = {
+        check.name: [next(c.margin for c in point.checks if c.name == check.name) for point in document.walks[0].points]
+        for check in document.walks[0].points[0].checks
+    }
+    moving = sorted((min(room), name) for name, room in rooms.items() if max(room) - min(room) > 0.005)
+    assert shown == [CHECKS[name] for _, name in moving[:5]]
+    assert 2 < len(shown) < len(rooms)
+
+
+def test_a_walk_finds_the_design():
+    """A walk that does not say where the design is shows it all the same, if it is there."""
+    document = samples.full()
+    walks = (replace(document.walks[0], chosen=None), document.walks[2])
+    root = samples.read(page(replace(document, walks=walks)))
+    data = json.loads(root.one("script", type="application/json").children[0])
+    assert [walk["chosen"] for walk in data["walks"]] == [2, None]
 
 
 def test_explorer_s_plain_table():

@@ -184,6 +184,20 @@ def test_output_crosses_the_threshold_at_the_delay(falls):
 
 
 @pytest.mark.parametrize("falls", [True, False])
+def test_edges_span_10_to_90_percent(falls):
+    """An edge's dimension begins and ends where the drawn output has made 10 and 90 % of its way."""
+    for picture in timing_pictures(TIMING, Swing(falls, 0.7, 0.5)):
+        spans = [node for node in nodes(picture, "line", "dimension") if node.attrib["y1"] == node.attrib["y2"]]
+        points = curve(picture, "series-1")
+        across, made = (
+            [x / 1000 for x, _ in points],
+            [(y - points[0][1]) / (points[-1][1] - points[0][1]) for _, y in points],
+        )
+        for end, way in (("x1", 0.1), ("x2", 0.9)):
+            assert np.interp(share(spans[1].attrib[end]), across, made) == pytest.approx(way, abs=3e-3)
+
+
+@pytest.mark.parametrize("falls", [True, False])
 def test_output_moves_the_way_the_circuit_does(falls):
     lights, dark = timing_pictures(TIMING, Swing(falls=falls, on=0.7, off=0.5))
     down_on = curve(lights, "series-1")[-1][1] > curve(lights, "series-1")[0][1]

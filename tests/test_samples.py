@@ -2,9 +2,9 @@
 
 from __future__ import annotations
 
-import random_links
 import numpy as np
 import pytest
+import random_links
 
 from optopick.recheck import review
 from optopick.result import Design
@@ -35,7 +35,9 @@ def test_no_sample_fails_what_holds_at_the_worst_corner(seed):
     for passing in drawn.checks:
         check = reviewed[passing.check]
         if check.passed:
-            assert passing.passed == drawn.count, f"{passing.check}: worst corner {check.margin}, sample {passing.least}"
+            assert passing.passed == drawn.count, (
+                f"{passing.check}: worst corner {check.margin}, sample {passing.least}"
+            )
         if np.isfinite(check.margin):
             assert passing.least >= check.margin - 1e-6 * max(1.0, abs(check.margin)), passing.check
 

@@ -17,6 +17,7 @@ import report_samples as samples
 from optopick.brief import DriveCircuit, OutputCircuit
 from optopick.coupler import Kind, Logic
 from optopick.report.schematic import schematic_svg
+from optopick.report.styles import standalone
 from optopick.result import Design
 
 Point = tuple[float, float]
@@ -265,6 +266,17 @@ def test_colours_are_left_to_the_page():
     """No colour and no width in the drawing itself: classes, so that light and dark differ."""
     svg, _ = draw(*next(cases()))
     assert not re.search(r"stroke[:=]|fill[:=]|#[0-9a-f]{3}|rgb|black", svg)
+
+
+def test_a_file_of_its_own():
+    """With the styles in it the drawing is the same, and the colours are those of the palette."""
+    svg, _ = draw(*next(cases()))
+    alone = ElementTree.fromstring(standalone(svg))
+    (style,) = alone.iter(f"{SVG}style")
+    assert "--series-2: #" in style.text
+    assert ".schematic .outline { fill: none" in style.text
+    alone.remove(style)
+    assert ElementTree.tostring(alone) == ElementTree.tostring(ElementTree.fromstring(svg))
 
 
 def test_described():

@@ -9,13 +9,21 @@ from pathlib import Path
 
 from optopick.errors import InputError, Mistake
 
+REPORT_FILES = frozenset(
+    {
+        *("review.html", "design.json", "bom.csv", "schematic.svg", "link.cir"),
+        *("sweep.svg", "sweep.png", "front.svg", "front.png"),
+    }
+)
+"""Every name a report may write. An earlier one may have had more of them than the next: it is still a report."""
+
 
 def write_folder(target: Path, files: Mapping[str, bytes | str], force: bool) -> None:
     """Write `files` (names without folders, text as UTF-8) into the new folder `target`.
 
     They are written beside it first and moved in one step, so that nobody meets half a report. An existing folder is
-    refused; with `force` it is replaced, but only where it holds nothing but files of these names. Raises InputError
-    where that, or the disk, forbids it; ValueError for a name that is not a plain file name.
+    refused; with `force` it is replaced, but only where it holds nothing but files of these names or of REPORT_FILES.
+    Raises InputError where that, or the disk, forbids it; ValueError for a name that is not a plain file name.
     """
     _check_names(files)
     target = Path(os.path.abspath(target))  # noqa: PTH100 - resolve() would follow a link that stands for the target
@@ -52,7 +60,8 @@ def _occupied(target: Path, files: Mapping[str, bytes | str], force: bool) -> bo
         raise InputError([Mistake(str(target), "something that is no folder", "a new folder")])
     if not force:
         raise InputError([Mistake(str(target), "a folder that is there already", "a new folder, or --force")])
-    foreign = sorted(entry.name for entry in target.iterdir() if entry.name not in files or entry.is_dir())
+    ours = REPORT_FILES | set(files)
+    foreign = sorted(entry.name for entry in target.iterdir() if entry.name not in ours or entry.is_dir())
     if foreign:
         others = f" and {len(foreign) - 1} more" if len(foreign) > 1 else ""
         expected = "a folder with nothing in it but an earlier report"

@@ -6,10 +6,9 @@ import json
 import math
 from base64 import b64encode
 from collections.abc import Iterator
-from dataclasses import asdict, dataclass
+from dataclasses import asdict, dataclass, replace
 from functools import cache
 from hashlib import sha256
-from importlib import resources
 from typing import Any
 
 from jinja2 import Environment, PackageLoader, StrictUndefined
@@ -18,13 +17,14 @@ from markupsafe import Markup
 from optopick.answers import Front, Share
 from optopick.coupler import Coupler
 from optopick.report.brief_words import requirement_parts
-from optopick.report.document import Document, InputFile
+from optopick.report.document import Document, InputFile, Walk
 from optopick.report.explorer import explorer_data, walk_view
 from optopick.report.formulas import formulas_for
 from optopick.report.labels import TIMES, check_label
 from optopick.report.pictures import front_plot, goal_unit, margin_bar, room_bar, state_of, waveform_plot
 from optopick.report.placed import placed_resistors, resistors_words
 from optopick.report.schematic import schematic_svg
+from optopick.report.styles import page_styles, template_text
 from optopick.report.svg import element
 from optopick.report.timing_picture import swing_of, timing_pictures
 from optopick.report.waveforms import pattern_wave, pulse_views
@@ -91,10 +91,6 @@ def _environment() -> Environment:
     return environment
 
 
-def _template(name: str) -> str:
-    return resources.files("optopick.report").joinpath("templates", name).read_text(encoding="utf-8")
-
-
 def _number(value: float, unit: str) -> Markup:
     """A value for people that carries its exact figure in SI for programs."""
     return element("data", amount(value, unit), value=repr(float(value)))
@@ -117,17 +113,12 @@ def _eaten_words(share: Share) -> str:
     return ", ".join(f"{cause} {_share_words(cost)}" for cause, cost in costs if cost > LEAST_EATEN)
 
 
-def styles() -> str:
-    """The style sheet of the page and of the pictures in it."""
-    return "\n".join(_template(name) for name in ("palette.css", "page.css", "pictures.css"))
-
-
 def _always(document: Document) -> dict[str, Any]:
     """What every page shows."""
     told, not_chosen = set_aside(document.ranking.rejected if document.ranking else document.rejected)
     return {
         "document": document,
-        "styles": Markup(styles()),
+        "styles": Markup(page_styles()),
         "sections": tuple(_sections(document)),
         "verdict": verdict(document.status, document.objectives, document.review),
         "requirement": requirement_parts(document.brief),
@@ -211,16 +202,25 @@ def _goal_words(document: Document) -> str:
 
 
 def _explorer(document: Document) -> dict[str, Any]:
-    script = _template("explorer.js").strip()
-    data = json.dumps(explorer_data(document.walks), ensure_ascii=False, separators=(",", ":"), allow_nan=False)
+    script = template_text("explorer.js").strip()
+    walks = tuple(_found(walk, document.review) for walk in document.walks)
+    data = json.dumps(explorer_data(walks), ensure_ascii=False, separators=(",", ":"), allow_nan=False)
     # inside a script element only these could end it or begin a comment
     data = data.replace("<", "\\u003c").replace(">", "\\u003e").replace("&", "\\u0026")
     return {
-        "walks": tuple(walk_view(walk) for walk in document.walks),
+        "walks": tuple(walk_view(walk) for walk in walks),
         "explorer_json": Markup(data),
         "script": Markup(script),
         "script_checksum": f"sha256-{b64encode(sha256(script.encode()).digest()).decode()}",
     }
+
+
+def _found(walk: Walk, review: Review | None) -> Walk:
+    """A walk that says where the document's design is, if it is there and the walk does not say."""
+    designs = [point.design for point in walk.points]
+    if walk.chosen is not None or review is None or review.design not in designs:
+        return walk
+    return replace(walk, chosen=designs.index(review.design))
 
 
 def _files(document: Document) -> tuple[tuple[InputFile, str, bool, str], ...]:

@@ -22,13 +22,13 @@ import numpy as np
 
 sys.path.insert(0, str(Path(__file__).parents[1]))
 
-import random_links  # noqa: E402 - beside the tests, which are no package
+import random_links  # beside the tests, which are no package
 
-from optopick.answers import Ranking  # noqa: E402
-from optopick.brief import Brief, GoalName, OutputCircuit  # noqa: E402
-from optopick.coupler import Coupler, Kind  # noqa: E402
-from optopick.uses.rank import rank  # noqa: E402
-from optopick.uses.workers import Processes  # noqa: E402
+from optopick.answers import Ranking
+from optopick.brief import Brief, GoalName, OutputCircuit
+from optopick.coupler import Coupler, Kind
+from optopick.uses.rank import rank
+from optopick.uses.workers import Processes
 
 Item = TypeVar("Item")
 Answer = TypeVar("Answer")

@@ -1,0 +1,112 @@
+"""What reports say of a result, word by word."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import replace
+
+import pytest
+import report_samples as samples
+
+from optopick.brief import DriveCircuit, Limits
+from optopick.report.brief_words import requirement_parts
+from optopick.report.words import (
+    limit_words,
+    ohms_words,
+    proof_words,
+    room_words,
+    set_aside,
+    standing,
+    tightest,
+    verdict,
+)
+from optopick.result import NOT_CHOSEN, Check, Proof, Rejected, Status
+
+
+@pytest.mark.parametrize(
+    ("value", "sense", "words"),
+    [
+        (0.5, "<=", "50 %"),
+        (0.95, "<=", "5.0 %"),
+        (1.0, "<=", "0.0 %"),
+        (1.05, "<=", "fails -5.0 %"),
+        (3.0, "<=", "fails -200 %"),
+        (3.0, ">=", "200 %"),
+        (0.4, ">=", "fails -60 %"),
+        (math.nan, ">=", "fails"),
+    ],
+)
+def test_room(value, sense, words):
+    check = Check("delay", value, 1.0, sense, "s", "")
+    assert room_words(check) == words
+    assert limit_words(check) == f"{'≤' if sense == '<=' else '≥'} 1 s"
+
+
+def test_ohms():
+    assert ohms_words(4700.0) == "4.7 kΩ"
+    assert ohms_words(None) == "none"
+
+
+def test_standing():
+    """The check with the least room is named; one without a number is worse than any."""
+    good, tight, bad = (
+        Check(name, value, 1.0, "<=", "s", "") for name, value in (("a", 0.1), ("b_c", 0.9), ("d", 1.5))
+    )
+    review = samples.reviewed()
+    assert standing(replace(review, checks=(good, tight))) == "all checks hold; tightest: b c 10.0 %"
+    assert standing(replace(review, checks=(good, bad))) == "1 of 2 checks fails; worst: d fails -50 %"
+    assert standing(replace(review, checks=(bad, bad, good))).startswith("2 of 3 checks fail; ")
+    lost = replace(good, value=math.nan)
+    assert tightest(replace(review, checks=(bad, lost))) is lost
+
+
+def test_verdict_of_a_given_design():
+    review = samples.reviewed()
+    held = replace(review, checks=(Check("a", 0.1, 1.0, "<=", "s", ""),))
+    assert verdict(None, (), held) == "Every check of the given design holds."
+    assert verdict(Status.UNKNOWN, (), None) == "Out of time: no design found, and none ruled out."
+
+
+def test_proof():
+    proof = Proof(1_234_567, 3, 20, 1.234, "a solver")
+    assert proof_words(Status.OPTIMAL, proof) == (
+        "Of 1,234,567 combinations in stock no other does better; re-checked from the physics at every corner "
+        "(3 solver calls, 20 settled by ranges alone, 1.2 s; a solver)."
+    )
+    assert "none holds every limit" in proof_words(Status.INFEASIBLE, proof)
+    assert "not proved best" in proof_words(Status.FEASIBLE, proof)
+    assert "1.2 s" not in proof_words(Status.OPTIMAL, proof, timed=False)
+
+
+def test_set_aside():
+    told = Rejected("A", "too slow")
+    assert set_aside((told, Rejected("B", NOT_CHOSEN), Rejected("C", NOT_CHOSEN))) == ((told,), 2)
+
+
+def test_requirement():
+    """Each limit that the brief states is a row with its own value, and none else."""
+    brief, _, _ = samples.link()
+    limits = Limits(1.3, 1e-6, 2e-6, 3e-6, 4e-3, brief.limits.isolation, 1.5)
+    parts = {part.name: dict(part.rows) for part in requirement_parts(replace(brief, limits=limits))}
+    assert parts["Limits"] == {
+        "CTR margin": "≥ 1.3",
+        "Edge time": "≤ 1 µs",
+        "Delay": "≤ 2 µs",
+        "Pulse distortion": "≤ 3 µs",
+        "Average power": "≤ 4 mW",
+        "Guard on computed times": "× 1.5",
+    }
+    assert parts["Signal"]["LED lit"].endswith("% of the time")
+    assert parts["Drive"]["Drive voltage"] == "4.75 V to 5.25 V"
+    assert parts["Stock"]["Base-emitter resistor"] == "E6, may stay empty"
+    bare = replace(brief, limits=Limits(None, None, None, None, None, brief.limits.isolation, 1.0))
+    assert dict(requirement_parts(bare)[4].rows) == {"Guard on computed times": "× 1"}
+
+
+def test_requirement_of_a_field_input():
+    brief, _, _ = samples.link()
+    field = replace(brief.drive, circuit=DriveCircuit.FIELD, off_voltage=5.0, off_current=1.5e-3, on_current_min=2e-3)
+    rows = dict(requirement_parts(replace(brief, drive=replace(field, reverse=30.0)))[1].rows)
+    assert rows["Must be dark below"] == "5 V, and at 1.5 mA"
+    assert rows["Input draws at least"] == "2 mA"
+    assert rows["Reverse voltage"] == "30 V"
