@@ -6,7 +6,8 @@ In a document, a block
     $ optopick pick examples/fastest.toml | head -n 20
     ```
 
-is followed by what the command prints; `_filtered` says what may stand after a `|`. The table of keys stands between the lines `<!-- keys -->` and `<!-- end of keys -->`.
+is followed by what the command prints; `_filtered` says what may stand after a `|`. The table of keys stands between
+the lines `<!-- keys -->` and `<!-- end of keys -->`.
 """
 
 from __future__ import annotations

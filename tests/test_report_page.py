@@ -14,7 +14,7 @@ from itertools import pairwise
 import pytest
 import report_samples as samples
 
-from optopick.answers import Change, Why
+from optopick.answers import Change, Share, Why
 from optopick.report import page as page_module
 from optopick.report.document import Document, InputFile, Walk
 from optopick.report.explorer import walk_view
@@ -143,6 +143,43 @@ def test_verdicts():
     assert f"{len(found.failing)} of {len(found.checks)} checks of the given design fail." in page(samples.given())
     late = page(replace(samples.plain(), status=Status.FEASIBLE))
     assert "best found in the time given; no design has delay below 31.3 µs and no design has power" in late
+
+
+def test_trade_off():
+    """Every point of the front with its two goals; the document's design and the knee are named."""
+    document = samples.full()
+    section = samples.read(page(document)).one("section", aria_labelledby="tradeoff")
+    rows = section.all("tr")[1:]
+    assert len(rows) == len(document.front.points)
+    for k, (row, point) in enumerate(zip(rows, document.front.points, strict=True)):
+        assert [float(node.attributes["value"]) for node in row.all("data")] == [point.first, point.second]
+        assert ("(this design)" in row.text) == (point.review.design == document.review.design) == (k == 1)
+        assert ("(knee)" in row.text) == (k == document.front.knee)
+    elsewhere = replace(document, front=replace(document.front, points=document.front.points[:1], knee=None))
+    assert "(this design)" not in samples.read(page(elsewhere)).one("section", aria_labelledby="tradeoff").text
+
+
+def test_ranking():
+    document = samples.full()
+    section = samples.read(page(document)).one("section", aria_labelledby="couplers")
+    ranked, rejected = section.all("table")
+    (row,) = ranked.all("tr")[1:]
+    one = document.ranking.ranked[0]
+    assert row.all("th")[0].text == one.coupler.part
+    values = [float(node.attributes["value"]) for node in row.all("data")]
+    assert values == [one.objective.value, one.second.value]
+    assert [cell.text for cell in rejected.all("tr")[1].children] == ["INV-8", "working 300 below 600"]
+    assert "1 more of the table is not among the couplers" in page(samples.plain())
+
+
+def test_budget():
+    """The hungriest cause first, small ones unsaid, a room that is no number as a dash."""
+    costs = {"CTR bin": 0.02, "ageing": 0.5, "resistors": 1e-5}
+    shares = (Share("delay", 0.25, 0.8, costs), Share("creepage", math.nan, math.nan, {"CTR bin": math.nan}))
+    section = samples.read(page(replace(samples.plain(), budget=shares))).one("section", aria_labelledby="budget")
+    first, second = ([cell.text for cell in row.children] for row in section.all("tr")[1:])
+    assert first == ["Delay", "25 %", "", "80 %", "ageing 50 %, CTR bin 2 %"]
+    assert second == ["Creepage", "–", "", "–", "nothing"]
 
 
 def test_contradictions():

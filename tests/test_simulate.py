@@ -255,6 +255,14 @@ def test_charge_and_energy_add_up(seed):
         assert found.energy < 1e-3
 
 
+def test_charge_and_energy_add_up_with_an_early_effect():
+    """Its transit charge depends on both junctions: the one term that tables never reach."""
+    for device in (replace(plain_device(), v_af=20.0), replace(DEVICE, v_af=20.0)):
+        found = balance(run(device, Circuit(True, 24.0, 1000.0, math.inf, 1e-9), (Phase(0.2), Phase(0.0)), 0.0))
+        assert found.charge < 1e-3
+        assert found.energy < 1e-3
+
+
 def test_a_balance_would_show_a_wrong_term():
     made = simulate_pulse(BRIEF, COUPLER, TYPICAL)
     for name, factor in (("tau_f", 1.2), ("tau_r", 1.05), ("eta", 1.0), ("i_s", 1.05)):

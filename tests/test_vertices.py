@@ -192,8 +192,8 @@ def compare(seed: int) -> tuple[bool, bool, bool, bool]:
     reviewed = review(brief, coupler, design)
     with np.errstate(invalid="ignore", divide="ignore", over="ignore"):
         rooms, values = rooms_at(brief, coupler, design, inside(rng, brief, coupler, design))
-    # Where one end of a span does not saturate, the slowest on edge is between: at the unit that only just does.
-    saturates = all(c.value >= 1.0 for c in checks_of(brief, coupler, design, "ctr_margin"))
+    # Far from saturation the slowest on edge may lie between: 10 % seen at a CTR margin of 0.4, which holds no level.
+    saturates = all(c.value >= 0.7 for c in checks_of(brief, coupler, design, "ctr_margin"))
     for check in reviewed.checks:
         slack = SLACK.get(check.name, EXACT) * max(1.0, abs(check.margin))
         if check.name != "edge_time" or saturates:
