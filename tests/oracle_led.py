@@ -139,6 +139,7 @@ def led_checks(brief: Brief, coupler: Coupler, s: LedState, t, r_led, r_shunt, s
     }
     if transfer:
         held["led_current_low"] = above(s.i_f, transfer.curve_i[0])
+        held["led_current_high"] = below(s.i_f, transfer.curve_i[-1])
     if drive.max_current is not None:
         held["driver_current"] = below(s.i_branch, drive.max_current)
     if drive.on_current_min > 0:

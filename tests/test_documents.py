@@ -34,7 +34,7 @@ def test_every_command_and_option_is_documented():
         assert f"optopick {name} " in README or f"`{name}`" in README, name
         for parameter in command.params:
             if isinstance(parameter, click.Option) and "--help" not in parameter.opts:
-                assert any(f"`{opt}" in README or f"{opt} " in README for opt in parameter.opts), (name, parameter.opts)
+                assert any(re.search(rf"{opt}(?![\w-])", README) for opt in parameter.opts), (name, parameter.opts)
 
 
 def test_json_fields_and_exit_codes_are_documented():

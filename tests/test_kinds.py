@@ -40,7 +40,14 @@ MIXED = (
 )
 """Four of each kind from the demo table, the winners among them."""
 
-TRANSISTOR = {"led_current_low", "deliverable_current", "ctr_margin", "collector_voltage", "collector_current"}
+TRANSISTOR = {
+    "led_current_low",
+    "led_current_high",
+    "deliverable_current",
+    "ctr_margin",
+    "collector_voltage",
+    "collector_current",
+}
 LOGIC = {"switching_current", "sink_current", "supply_low", "supply_high"}
 EITHER = {"led_dark", "output_low", "output_high", "output_power", "total_power", "r_load_power", "led_current"}
 """Checks of one kind of output alone, and some that every kind has."""

@@ -119,6 +119,9 @@ def test_margin_bar_is_drawn_as_it_stands():
         assert state_of(check) == state
         (bar,) = nodes(margin_bar(check), "rect", state)
         assert (share(bar.attrib["x"]), share(bar.attrib["width"])) == pytest.approx(bar_span(check.margin))
+        (track,), (limit,) = nodes(margin_bar(check), "rect", "track"), nodes(margin_bar(check), "line", "limit")
+        assert (share(track.attrib["x"]), share(track.attrib["width"])) == pytest.approx((0.2, 0.8))
+        assert share(limit.attrib["x1"]) == pytest.approx(0.2)
 
 
 def test_room_bar():

@@ -8,7 +8,7 @@ from dataclasses import replace
 import pytest
 import report_samples as samples
 
-from optopick.brief import DriveCircuit, Limits
+from optopick.brief import DriveCircuit, Limits, Signal
 from optopick.report.brief_words import requirement_parts
 from optopick.report.words import (
     limit_words,
@@ -96,7 +96,8 @@ def test_requirement():
         "Average power": "≤ 4 mW",
         "Guard on computed times": "× 1.5",
     }
-    assert parts["Signal"]["LED lit"].endswith("% of the time")
+    signal = replace(brief, signal=Signal(52e-6, 0.4))
+    assert requirement_parts(signal)[0].rows == (("Shortest pulse", "52 µs"), ("LED lit", "40 % of the time"))
     assert parts["Drive"]["Drive voltage"] == "4.75 V to 5.25 V"
     assert parts["Stock"]["Base-emitter resistor"] == "E6, may stay empty"
     bare = replace(brief, limits=Limits(None, None, None, None, None, brief.limits.isolation, 1.0))

@@ -9,6 +9,7 @@ from dataclasses import replace
 import numpy as np
 import pytest
 import random_links
+from scipy.optimize import brentq
 
 from optopick.brief import OutputCircuit
 from optopick.coupler import Kind
@@ -34,7 +35,7 @@ from optopick.simulate.device import Device, device_at, reverse_transit
 from optopick.simulate.gain import gain_law
 from optopick.simulate.junction import Junction
 from optopick.simulate.measure import pulse_times
-from optopick.simulate.transient import TOLERANCE, Circuit, Phase, at_rest, photocurrent, run
+from optopick.simulate.transient import TOLERANCE, Circuit, Phase, at_rest, charges_of, photocurrent, run
 
 V_T = 0.025692579
 RNG = np.random.default_rng(5)
@@ -121,11 +122,28 @@ def test_device_saturates_where_the_table_says():
     assert v_ce == pytest.approx(TRANSISTOR.v_ce_sat, abs=5e-3)
 
 
+@pytest.mark.parametrize("t", [-20.0, 25.0, 85.0])
+def test_device_takes_the_tables_base_voltage_at_two_milliamperes(t):
+    d = device_at(COUPLER, replace(TYPICAL, t=t))
+    i_f = brentq(lambda i: collector_current_of(d, i) - 2e-3, 1e-4, 30e-3)
+    v_be, _ = at_rest(d, Circuit(True, 5.0, 1.0, math.inf, 0.0), photocurrent(d, i_f))
+    assert v_be == pytest.approx(TRANSISTOR.v_be + TRANSISTOR.v_be_tc * (t - 25.0), abs=2e-4)
+
+
 def test_device_leaks_what_the_table_says():
     for t in (TRANSISTOR.t_1, 60.0, TRANSISTOR.t_2):
         d = device_at(COUPLER, replace(TYPICAL, t=t, dark=1.0))
         wanted = dark_current(TRANSISTOR.i_ceo_1, TRANSISTOR.t_1, TRANSISTOR.i_ceo_2, TRANSISTOR.t_2, t)
         assert collector_current_of(d, 0.0, r=1000.0) == pytest.approx(float(wanted) + d.i_cbo, rel=0.01)
+
+
+def test_charge_deep_in_saturation_is_the_storage_constant_times_base_current():
+    d = plain_device(tau_f=1e-6, tau_s=10e-6)
+    circuit = Circuit(True, 1000.0, 100e3, math.inf, 0.0)
+    light = (2e-3, 2.2e-3)
+    stored = [sum(charges_of(d)(*at_rest(d, circuit, i))) for i in light]
+    # the light's own current takes some of the load's place, and of its charge: up to tau_f over tau_s
+    assert (stored[1] - stored[0]) / (light[1] - light[0]) == pytest.approx(10e-6, rel=0.11)
 
 
 # ---- times against formulas -----------------------------------------------------------------------------------------

@@ -104,7 +104,7 @@ def candidates(brief: Brief, coupler: Coupler) -> Candidates:
     if transfer is None or transistor is None:
         raise ValueError(f"{coupler.part} has no transistor output")
     c = corner_list(brief, transfer, transistor)
-    led = led_candidates(brief, coupler, transfer.curve_i[0], DARK_FRACTION * transfer.i_ref)
+    led = led_candidates(brief, coupler, DARK_FRACTION * transfer.i_ref)
     i_off = led.i_off[c.t_index]
     g_off = relative_ctr(transfer, np.clip(i_off, transfer.curve_i[0], transfer.curve_i[-1]))
     t = np.unique(c.t[:, 0])

@@ -77,14 +77,17 @@ class _Solved:
     i_off: Array
 
 
-def led_candidates(brief: Brief, coupler: Coupler, i_low: float, i_dark: float) -> LedCandidates:
-    """Evaluate every branch; `i_low`: least LED current allowed [A]; `i_dark`: LED counts as dark below [A]."""
+def led_candidates(brief: Brief, coupler: Coupler, i_dark: float) -> LedCandidates:
+    """Evaluate every branch; `i_dark`: LED counts as dark below [A]. Where there is a CTR curve it is not left."""
     branches = _branches(brief.stock.r_led, brief.stock.r_shunt)
     solved = _solve(brief, coupler, branches)
     i_max, lit = _high(solved.i), brief.signal.lit
     hottest = float(solved.t.max())
     keep = _masks(brief, coupler, branches, solved)
-    keep["led_current_low"] = np.asarray((solved.i.min(axis=(0, 1)) >= i_low).all(axis=0))
+    if coupler.transfer is not None:
+        first, last = coupler.transfer.curve_i[0], coupler.transfer.curve_i[-1]
+        keep["led_current_low"] = np.asarray((solved.i.min(axis=(0, 1)) >= first).all(axis=0))
+        keep["led_current_high"] = np.asarray((i_max <= last).all(axis=0))
     keep["led_dark"] = np.asarray((_high(solved.i_off) <= i_dark).all(axis=0))
     return LedCandidates(
         r_led=branches.series.values,

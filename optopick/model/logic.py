@@ -49,10 +49,9 @@ class LogicModel:
         """The model of a coupler over all that the brief stocks."""
         if coupler.logic is None:
             raise ValueError(f"{coupler.part} has no logic output")
-        led = led_candidates(brief, coupler, 0.0, coupler.logic.i_f_off)
+        led = led_candidates(brief, coupler, coupler.logic.i_f_off)
         weakest = led.i_min * np.minimum(led.light, 1.0)
-        keep = {name: mask for name, mask in led.keep.items() if name != "led_current_low"}
-        keep["switching_current"] = np.asarray((weakest >= coupler.logic.i_f_on).all(axis=0))
+        keep = led.keep | {"switching_current": np.asarray((weakest >= coupler.logic.i_f_on).all(axis=0))}
         t = np.asarray(temperatures(brief.environment, coupler.transfer).values)
         return cls(replace(led, keep=keep), _pulls(brief, coupler, coupler.logic, t), derated(coupler.p_total, t))
 

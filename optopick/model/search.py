@@ -101,6 +101,8 @@ class _Search:
         self.boxes = [self.box] if self.box else []
         solved = False
         while self.boxes:
+            if self.clock.out:
+                return Found(choice, value, self._bound_by_ranges(value))
             box = narrowed(self.boxes.pop(), self.better_than(value))
             if box is None:
                 continue

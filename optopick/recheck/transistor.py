@@ -102,6 +102,7 @@ def static_checks(brief: Brief, coupler: Coupler, box: Vertices, branch: LedBran
     drive = collector_current(transfer, box.ctr, s.h, s.i_eff - s.i_be)
     checks = [
         Measured("led_current_low", branch.i_f, transfer.curve_i[0], ">=", "A"),
+        Measured("led_current_high", branch.i_f, transfer.curve_i[-1], "<=", "A"),
         Measured("led_dark", branch.i_off, DARK_FRACTION * transfer.i_ref, "<=", "A"),
         Measured("deliverable_current", s.j_s, most, "<=", "A"),
     ]
@@ -133,6 +134,7 @@ def _v_ce(coupler: Coupler, box: Vertices, s: Stage, drive: Array) -> Array:
     if np.any(weak):
         mask = np.broadcast_to(weak, found.shape)
         found[mask] = _bisected(transistor, sheet, s.i_input, *(part[mask] for part in wide))
+    found[np.isnan(wide[0])] = np.nan  # beyond the CTR curve nothing is known
     return found
 
 

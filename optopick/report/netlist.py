@@ -138,6 +138,7 @@ def _led_side(s: Scene) -> Iterator[str]:
         yield "* the diode antiparallel to the LED carries nothing here and is left out"
     yield "Dled anode cathode led"
     yield "Vsense cathode 0 0"
+    # TEMP and TNOM are the corner's, so that no simulator moves parameters by rules of its own
     n_v_t = led.n * _thermal(c.t)
     at_ref = c.v_f + led.v_f_tc * (c.t - 25.0) - led.r_s * led.i_ref
     yield f".model led D(IS={_num(led.i_ref * math.exp(-at_ref / n_v_t))} N={_num(led.n)} RS={_num(led.r_s)})"
@@ -151,6 +152,7 @@ def _drive_levels(led: Led, c: Corner) -> tuple[float, float]:
     """Voltage at the LED resistor while dark, the one that leaves the LED its off current, and while lit [V]."""
     if c.i_off <= LEAST_LED_CURRENT:
         return 0.0, c.drive - c.drop
+    # a leaking driver as a voltage: the LED's current in the dark is then the one optopick simulates with
     v_f = float(forward_voltage(led, c.v_f, c.i_off, c.t))
     return v_f + c.r_led * float(branch_current(c.i_off, v_f, c.r_shunt)), c.drive - c.drop
 
@@ -196,6 +198,7 @@ def _base_source(d: Device, emitter: str) -> Iterator[str]:
         z = f"(({v}-({_num((knot - ln_i_s) * d.v_t)}))/{_num(width * d.v_t)})"
         terms.append(f"+({_num(bend * width)})*(max({z},0)+ln(1+exp(-abs({z}))))")
     at_rest = math.exp(law.at(ln_i_s)[0])
+    # max and abs in place of a plain ln(1 + exp(z)), which overflows at a simulator's trial points
     yield f"Bbase base {emitter} I=exp(min({terms[0]}"
     for term in terms[1:]:
         yield f"+ {term}"
@@ -220,6 +223,7 @@ def _analysis(s: Scene) -> Iterator[str]:
     shortest = min(t for t in times if t > 0)
     step = max(min(shortest, total) / FINENESS, total / MOST_STEPS)
     yield ""
+    # GMIN: the usual 1e-12 would feed an open base more than its own leakage
     yield f".options TEMP={_num(s.corner.t)} TNOM={_num(s.corner.t)}"
     yield ".options RELTOL=1e-5 ABSTOL=1e-14 VNTOL=1e-7 CHGTOL=1e-17 GMIN=1e-18"
     yield f".tran {_num(step)} {_num(total)} 0 {_num(step)}"
@@ -244,6 +248,7 @@ def _measurements(s: Scene) -> Iterator[str]:
         "delay_on": (lights, f"V(out) VAL={_num(to_on)} {there}=1"),
         "delay_off": (darkens, f"V(out) VAL={_num(to_off)} {back}=1"),
     }
+    # numbers, as not every simulator takes a measured level into another measurement
     for name, time in vars(pulse_times(s.run, (v_il, v_ih))).items():
         trigger, target = wanted[name]
         if math.isfinite(time) and time > 0:

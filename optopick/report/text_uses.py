@@ -191,7 +191,7 @@ def sweep_text(sweep: Sweep, title: str) -> RenderableType:
         "CTR margin",
         "power",
     ):
-        table.add_column(heading, justify="right", no_wrap=True)
+        table.add_column(heading, justify="right")
     table.add_column("fails", ratio=1)
     for step in sweep.steps:
         timing, typical = step.worst.timing, step.typical.timing
@@ -199,11 +199,11 @@ def sweep_text(sweep: Sweep, title: str) -> RenderableType:
         marked = "chosen" if step.ohms == sweep.chosen else ""
         failing = ", ".join(check_label(check.name) for check in step.worst.failing)
         table.add_row(
-            "none" if step.ohms is None else format_resistor(step.ohms),
+            "none" if step.ohms is None else unbroken(format_resistor(step.ohms)),
             *(short(value) for value in (timing.edge_on, timing.edge_off, timing.delay_on, timing.delay_off)),
             short(max(typical.edge_on, typical.edge_off)),
             f"{margins[0].value:.3g}" if margins else "–",
-            format_quantity(step.worst.power.worst, "W", 3),
+            unbroken(format_quantity(step.worst.power.worst, "W", 3)),
             failing or marked,
             style="bold" if marked else "",
         )
@@ -212,8 +212,13 @@ def sweep_text(sweep: Sweep, title: str) -> RenderableType:
 
 
 def short(seconds: float) -> str:
-    """A time with three digits."""
-    return format_quantity(seconds, "s", 3)
+    """A time with three digits, not to be broken."""
+    return unbroken(format_quantity(seconds, "s", 3))
+
+
+def unbroken(text: str) -> str:
+    """A quantity that stays on one line in a narrow column."""
+    return text.replace(" ", "\u00a0")
 
 
 def yield_text(drawn: Yield, title: str) -> RenderableType:

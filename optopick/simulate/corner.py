@@ -73,8 +73,10 @@ class PulseTimes:
 def closed_form(brief: Brief, coupler: Coupler, corner: Corner) -> PulseTimes:
     """The times by the formulas that designs are chosen and checked with, at one corner, without guard."""
     box, branch = _as_vertex(coupler, corner)
-    found = times(brief, coupler, box, stage(brief, coupler, box, branch))
-    return PulseTimes(**{name: float(getattr(found, name)) for name in TIMES})
+    # a supply below the output's own voltage has no times: not a number there, endless here
+    with np.errstate(invalid="ignore"):
+        found = times(brief, coupler, box, stage(brief, coupler, box, branch))
+    return PulseTimes(**{name: float(np.nan_to_num(getattr(found, name), nan=np.inf, posinf=np.inf)) for name in TIMES})
 
 
 def threshold_pair(brief: Brief, corner: Corner) -> tuple[float, float]:
@@ -110,6 +112,7 @@ def _corner_at(box: Vertices, branch: LedBranch, value: Array, dark: float) -> C
     def at(array: Array) -> float:
         return float(array[tuple(0 if size == 1 else k for k, size in zip(index, array.shape, strict=True))])
 
+    # an axis that the value does not depend on has length one there: its first end stands for it
     names = [f.name for f in fields(Vertices) if f.name != "words"]
     with np.errstate(invalid="ignore"):
         words = box.corner(value, flat)

@@ -85,6 +85,7 @@ def simulate_all(brief: Brief, coupler: Coupler, design: Design) -> Simulation:
         transistor_parts(coupler)
     except NotSimulatedError as error:
         return Simulation(design, guard, (), str(error))
+    # one vertex is often the worst for several times: simulated once, named for all of them
     corners: dict[Corner, list[str]] = {typical_corner(brief, coupler, design): []}
     for name, corner in worst_corners(brief, coupler, design).items():
         same = next((c for c in corners if _same(c, corner)), corner)
@@ -129,6 +130,7 @@ def simulate_pattern(brief: Brief, coupler: Coupler, corner: Corner, bits: str =
     """
     _check_light(coupler, corner)
     bit = brief.signal.shortest_pulse
+    # the last bit is held, so that its edge still arrives
     phases = [Phase(corner.i_f if lit else corner.i_off, count * bit) for lit, count in _runs(bits + bits[-1:] * 2)]
     made = run(device_at(coupler, corner), circuit_at(brief, corner), phases, corner.i_off)
     return Pattern(corner, bits, bit, made, boundaries(made, threshold_pair(brief, corner)))

@@ -86,6 +86,7 @@ def device_at(coupler: Coupler, corner: Corner) -> Device:
     """
     transfer, transistor = transistor_parts(coupler)
     junctions = 2.0 if coupler.kind is Kind.DARLINGTON else 1.0
+    # two junctions in a row: the same current takes twice the voltage
     v_t = junctions * float(thermal_voltage(corner.t))
     ctr_mid = math.sqrt(transfer.ctr_min * transfer.ctr_max)
     eta = ctr_mid / transistor.h_fe * float(light_factor(transfer, corner.t)) * corner.light
@@ -117,6 +118,7 @@ def gain_of_curve(part: str, transfer: Transfer, carried: float, eta: float) -> 
     where the curve leaves no gain or does not rise.
     """
     i = np.asarray(transfer.curve_i)
+    # what a sheet calls collector current has the light's own current in it
     drawn, light = carried * np.asarray(transfer.curve_g) * i, eta * i
     if np.any(drawn <= LEAST_GAIN * light):
         raise NotSimulatedError(f"{part}: on its CTR curve the current gain falls to {np.min(drawn / light):.2g}")

@@ -63,6 +63,7 @@ def _falling_back(stretch: Stretch, level: float) -> float:
 
 def crossing(stretch: Stretch, level: float, falling: bool) -> float:
     """Time from the start of a stretch until v_ce is at or beyond `level` [V] [s]; infinite where it never is."""
+    # within a step the output is taken to move one way: the solver's steps are far shorter than an edge
     v = stretch.states[:, 1]
     beyond = np.flatnonzero(v <= level if falling else v >= level)
     if beyond.size == 0:
@@ -179,6 +180,7 @@ def _account(run: Run, stretch: Stretch) -> Account:
     d, c = run.device, run.circuit
     into_base, charge_out, heat = _flowed(run, stretch)
     stored, gained = _stored(run, stretch)
+    # by the solution, not by the states: the last state of a settled phase is moved to where it heads
     first, last = (float(stretch.solution(t)[1]) for t in (stretch.t[0], stretch.t[-1]))
     before, after = (float(v) for v in run.output(np.array([first, last])))
     node = c.c_load * (last - first)
@@ -198,6 +200,7 @@ def _flowed(run: Run, stretch: Stretch) -> tuple[float, float, float]:
     rows = []
     for v_be, v_ce in stretch.solution(at).T:
         f, v_bc = flows(v_be, v_ce), v_be - v_ce + d.v_off
+        # the light's source works against v_bc: it takes power while the junction is reversed, gives some in saturation
         in_transistor = f.transport * (v_ce - d.v_off) + f.base * v_be + (f.reverse - stretch.i_photo) * v_bc
         heat = in_transistor + f.leak * v_be + f.load * (c.v_cc - v_ce)
         rows.append((stretch.i_photo - f.base - f.reverse - f.leak, f.load, heat))

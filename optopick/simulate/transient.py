@@ -138,6 +138,7 @@ def circuit_at(brief: Brief, corner: Corner) -> Circuit:
 
 def flows_of(d: Device, c: Circuit) -> Callable[[float, float], Flows]:
     """Currents and capacitances as a function of v_be and v_ce [V]."""
+    # bound once: this runs a thousand times a pulse
     ln_i_s, exp, law = math.log(d.i_s), math.exp, d.gain.at
     at_rest = exp(law(ln_i_s)[0])
     per_v_af, per_r_be = 1.0 / d.v_af, 1.0 / c.r_be
@@ -149,7 +150,7 @@ def flows_of(d: Device, c: Circuit) -> Callable[[float, float], Flows]:
         early = 1.0 - v_bc * per_v_af
         return Flows(
             transport=(i_f - i_r) * early,
-            # less what the law gives at 0 V, as a junction must carry nothing there
+            # less what the law gives at 0 V, where a junction must carry nothing: an open base would never rest
             base=exp(min(law(ln_f)[0], MOST_LN)) - at_rest,
             reverse=(i_r - d.i_s) / d.beta_r,
             leak=v_be * per_r_be,
@@ -172,6 +173,7 @@ def slopes_of(d: Device, c: Circuit, i_photo: float) -> Callable[[float, Array],
     flows, c_l = flows_of(d, c), c.c_load
 
     def slopes(_: float, state: Array) -> Array:
+        # plain floats: numpy's would double the time of everything below
         f = flows(*state.tolist())
         base, node = surplus(f, i_photo)
         a, b, x = f.c_be, f.c_bc, f.c_x
@@ -227,6 +229,7 @@ def run(d: Device, c: Circuit, phases: Sequence[Phase], before: float, tolerance
     """
     state, t = at_rest(d, c, photocurrent(d, before)), 0.0
     stretches = []
+    # each phase is started anew: no step of the solver spans a step of the light
     for phase in phases:
         stretch = _stretch(d, c, phase, state, t, tolerance)
         stretches.append(stretch)
@@ -257,6 +260,7 @@ def _stretch(d: Device, c: Circuit, phase: Phase, start: tuple[float, float], t:
 
 def _settling(d: Device, start: tuple[float, float], end: tuple[float, float]) -> Callable[[Array], bool]:
     near, base_near = SETTLED * abs(end[1] - start[1]), SETTLED_BASE * d.v_t
+    # in the dark an open base loses its last charge over ages, long after the output has come to rest
     lit = end[0] > start[0]
 
     def settled(state: Array) -> bool:

@@ -179,6 +179,8 @@ def over_all(
     for entry in sorted(entries, key=lambda entry: floors.get(entry.coupler.part, 0.0)):
         if floors.get(entry.coupler.part, 0.0) >= found.value * (1 - STEP):
             continue
+        if clock.out and found.choice is not None:
+            break
         look = first_look(entry.model, goal, ask, found.value, left_out[entry.coupler.part])
         floors[entry.coupler.part] = max(floors.get(entry.coupler.part, 0.0), look.bound)
         if look.choice is not None:
@@ -222,7 +224,7 @@ def design_of(brief: Brief, entry: Entry, choice: Choice) -> Design:
         r_be=base if np.isfinite(base) else None,
         r_shunt=shunt if np.isfinite(shunt) else None,
         pieces=pieces,
-        reverse_diode=brief.drive.reverse > entry.coupler.led.v_r_max,
+        reverse_diode=brief.drive.reverse_diode and brief.drive.reverse > entry.coupler.led.v_r_max,
     )
 
 

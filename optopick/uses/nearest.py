@@ -10,7 +10,7 @@ from optopick.answers import Nearest
 from optopick.brief import Brief, Position, Stock
 from optopick.coupler import Coupler
 from optopick.recheck.vertices import rating_of
-from optopick.result import Design
+from optopick.result import Design, Result, Review
 from optopick.uses.pick import pick
 
 PLACES = ("r_led", "r_load", "r_be", "r_shunt", "coupler")
@@ -35,9 +35,25 @@ def _changed(brief: Brief, design: Design, couplers: Sequence[Coupler], count: i
             continue
         fixed = replace(brief, stock=_stock(brief, design, places))
         own = [coupler for coupler in couplers if ("coupler" in places) != (coupler.part == design.coupler)]
+        if "r_be" not in places:
+            own = [coupler for coupler in own if _base_stays(brief, design, coupler)]
         result = pick(fixed, couplers=own)
         if result.review is not None:
-            yield Nearest(places, result)
+            yield Nearest(places, result if "r_led" in places else _in_pieces(result, result.review, design))
+
+
+def _base_stays(brief: Brief, design: Design, coupler: Coupler) -> bool:
+    """Whether a coupler leaves the base position as the design has it, within the brief's stock."""
+    if design.r_be is not None:
+        return coupler.base_pin
+    stock = brief.stock.r_be
+    return coupler.part == design.coupler or not coupler.base_pin or stock is None or stock.absent
+
+
+def _in_pieces(result: Result, review: Review, design: Design) -> Result:
+    """The result with the LED resistor in the design's own pieces, which `_held` made one of."""
+    own = replace(review.design, r_led=design.r_led, pieces=design.pieces)
+    return replace(result, review=replace(review, design=own))
 
 
 def _stock(brief: Brief, design: Design, places: Sequence[str]) -> Stock:
@@ -48,9 +64,9 @@ def _stock(brief: Brief, design: Design, places: Sequence[str]) -> Stock:
 
 
 def _held(brief: Brief, name: str, value: float | None, pieces: int) -> Position | None:
-    """A position with one value; None where the design leaves it empty."""
+    """A position with one value, its pieces taken for one; None where the design leaves it empty."""
     if value is None:
         return None
     tolerance, power, voltage = rating_of(brief, name, value)
-    count = pieces if name == "r_led" else 1
-    return Position((value,), (tolerance,), (power,), (voltage,), (None,), False, "as designed", count)
+    n = pieces if name == "r_led" else 1
+    return Position((value * n,), (tolerance,), (power * n,), (voltage * n,), (None,), False, "as designed")

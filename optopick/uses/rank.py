@@ -90,8 +90,8 @@ def rejection(brief: Brief, entry: Entry) -> str:
     alone = [said for name in limits_of(brief) if (said := _without(brief, entry, frozenset({name})))]
     if alone:
         return "; or ".join(alone)
-    named = _standing(brief, entry)
-    return "no single limit: " + ", ".join(check_label(name) for name in named) + " together"
+    named = [check_label(name) for name in _standing(brief, entry)]
+    return named[0] if len(named) == 1 else "no single limit: " + ", ".join(named) + " together"
 
 
 def _without(brief: Brief, entry: Entry, names: frozenset[str]) -> str:

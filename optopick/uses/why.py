@@ -32,14 +32,17 @@ GOAL_OF = {
     "power": GoalName.POWER,
 }
 
-HALVINGS = 12
-"""Halvings of the way to the least change of a limit, where no goal gives it exactly."""
+HALVINGS, NEAR = 40, 0.01
+"""Halvings at the most of the way to the least change of a limit, where no goal gives it exactly, and the share of that
+change at which they end."""
 
 ROOM = 1e-6
 """Share that a limit is set above the least value of its goal, for rounding."""
 
-ALWAYS = ("led_current", "led_power", "led_current_low", "led_dark", "output_low", "output_high", "shortest_pulse")
+ALWAYS = ("led_current", "led_power", "led_dark", "output_low", "output_high", "shortest_pulse")
 BY_KIND = (
+    "led_current_low",
+    "led_current_high",
     "deliverable_current",
     "collector_current",
     "collector_voltage",
@@ -167,11 +170,13 @@ def _by_goal(world: _World, brief: Brief, limit: Limit) -> float | None:
 
 
 def _by_halving(world: _World, brief: Brief, limit: Limit) -> float | None:
-    """The value nearest to the present one at which a design exists, to a thousandth of the way; None if none does."""
+    """The value nearest to the present one at which a design exists, to a hundredth of the way; None if none does."""
     if not world.feasible(limit.moved(brief, limit.far)):
         return None
     fails, holds = limit.value, limit.far
     for _ in range(HALVINGS):
+        if abs(holds - fails) <= NEAR * abs(holds - limit.value):
+            break
         middle = _between(fails, holds)
         if world.feasible(limit.moved(brief, middle)):
             holds = middle

@@ -132,6 +132,7 @@ OVERFLOWING = """() => {
 def test_no_overflow(show, name, width):
     """No element reaches beyond the window's sides, and the page cannot be scrolled sideways."""
     with show(name, width=width) as shown:
+        shown.page.evaluate("for (const one of document.querySelectorAll('details')) one.open = true")
         assert shown.page.evaluate("document.documentElement.scrollWidth") == width
         assert shown.page.evaluate(OVERFLOWING) == []
 
