@@ -59,7 +59,10 @@ def result(found: Review | None, status: Status = Status.OPTIMAL) -> Result:
     return Result(status, first, second, found, assumed if found else (), rejected, proof, ("Take care.",))
 
 
-FILES = (InputFile("link.toml", b"title = 'Invented link'\n"), InputFile("table.csv", b"part,kind\nINV-7," + b"x" * 200 + b"\n"))
+FILES = (
+    InputFile("link.toml", b"title = 'Invented link'\n"),
+    InputFile("table.csv", b"part,kind\nINV-7," + b"x" * 200 + b"\n"),
+)
 
 
 @cache
