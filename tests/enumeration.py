@@ -1,8 +1,8 @@
 """Full enumeration: every combination in stock at every vertex of the uncertainty box, without model or solver.
 
 The yardstick for the optimiser. Formulas come from `oracle_led`, `oracle_output` and `oracle_times`; here are the
-loops. Axes of the arrays: ends of r_load, ends of r_be, rows of light, combinations; the remaining vertices
-(temperature, CTR, light of the LED, output supply) are looped over.
+loops. Axes of the arrays: CTR and light of the unit, ends of r_load, ends of r_be, rows of light, combinations; the
+remaining vertices (temperature, output supply) are looped over.
 
 `every_vertex`: all values of light that the LED's side can have go into the output's formulas. Without it only the
 least and the largest at each temperature do, and V_CE(on) is compared with its limit instead of being solved for; a
@@ -121,7 +121,7 @@ def survey(brief: Brief, coupler: Coupler, every_vertex: bool = False, failing: 
     failing = failing or every_vertex
     alive = [np.arange(n) if failing else holding(rooms, n) for rooms, n in sides]
     index = np.stack([a.ravel() for a in np.meshgrid(*alive, indexing="ij")])
-    step = max(1, CHUNK // (4 * led.rows))
+    step = max(1, CHUNK // (16 * led.rows))
     trials = [
         Trial(brief, coupler, led, load, base, index[:, k : k + step], every_vertex, failing)
         for k in range(0, max(1, index.shape[1]), step)
@@ -173,13 +173,17 @@ def resistor_ends(values: np.ndarray, tolerance: np.ndarray, drift: float, t: fl
 
 
 def lots(brief: Brief, coupler: Coupler) -> Iterator[out.Lot]:
-    """Every vertex that no resistor and no LED changes, the likeliest trouble first."""
+    """Every vertex that no resistor and no LED changes; CTR and light vary along an axis before all others."""
     spread = coupler.transistor.light_spread
-    ctr = (coupler.transfer.ctr_min, coupler.transfer.ctr_max)
-    for t, v_cc, r, s in product(
-        temperatures(brief, coupler.transfer)[::-1], ends(brief.output.supply)[::-1], ctr, (1.0 / spread, spread)
-    ):
-        yield out.lot(brief, coupler, *(np.float64(x) for x in (t, r, s, v_cc)))
+    ends_ = product((coupler.transfer.ctr_min, coupler.transfer.ctr_max), (1.0 / spread, spread))
+    ctr, light = (np.array(c).reshape(-1, 1, 1, 1, 1) for c in zip(*ends_, strict=True))
+    for t, v_cc in product(temperatures(brief, coupler.transfer)[::-1], ends(brief.output.supply)[::-1]):
+        yield out.lot(brief, coupler, np.float64(t), ctr, light, np.float64(v_cc))
+
+
+def over(values: np.ndarray) -> np.ndarray:
+    """The largest over all axes but the last."""
+    return values.max(axis=tuple(range(values.ndim - 1)))
 
 
 def worst_of(rooms: dict[str, np.ndarray], held: dict[str, Held], n: int) -> None:
@@ -286,9 +290,9 @@ def loads(brief: Brief, coupler: Coupler) -> Loads:
     for x in lots(brief, coupler):
         t, ends_ = float(x.t), at[float(x.t)]
         worst_of(found.rooms, out.load_checks(brief, coupler, x, ends_, Worn(power, voltage)), len(r))
-        found.heat[t] = np.maximum(found.heat[t], out.output_heat(brief, x, ends_).max(axis=0))
+        found.heat[t] = np.maximum(found.heat[t], over(out.output_heat(brief, x, ends_)))
         path = brief.signal.lit * x.v_cc * out.load_of(brief, coupler, x, ends_)
-        found.power = np.maximum(found.power, path.max(axis=0))
+        found.power = np.maximum(found.power, over(path))
     return found
 
 
@@ -386,5 +390,5 @@ class Trial:
         held, goals = oracle_times.timing_checks(self.brief, times)
         worst_of(self.rooms, held, len(i))
         for name, goal in goals.items():
-            most = goal.max(axis=(0, 1, 2))
+            most = over(goal)
             self.goals[name] = np.maximum(self.goals[name], most) if name in self.goals else most

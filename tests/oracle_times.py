@@ -102,7 +102,8 @@ def swing(brief: Brief, coupler: Coupler, x: Lot, r_load) -> Swing:
     reach, kept = np.clip(on, 1.0001 * STARTED, 0.9999), np.clip(1.0 - off, 1e-4, 0.9999)
     ladders = [*ladder(0.1, 0.9, STEPS), *ladder(STARTED, reach, STEPS), *ladder(kept, 1.0, STEPS), 0.9, 1.0]
     shares = np.stack(np.broadcast_arrays(*ladders))
-    shares = shares.reshape(len(shares), *(1,) * (np.ndim(r_load) + 1 - shares.ndim), *shares.shape[1:])
+    axes = max(np.ndim(r_load), np.ndim(x.eta)) + 1
+    shares = shares.reshape(len(shares), *(1,) * (axes - shares.ndim), *shares.shape[1:])
     every, node = levels(brief, coupler, x, r_load, shares), r_load * brief.output.capacitance
     k = STEPS + 1
     cuts = (slice(0, k), slice(k, 2 * k), slice(2 * k, 3 * k), slice(3 * k, None))

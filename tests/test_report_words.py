@@ -34,6 +34,7 @@ from optopick.result import NOT_CHOSEN, Check, Proof, Rejected, Status
         (3.0, ">=", "200 %"),
         (0.4, ">=", "fails -60 %"),
         (math.nan, ">=", "fails"),
+        (math.inf, "<=", "fails"),
     ],
 )
 def test_room(value, sense, words):

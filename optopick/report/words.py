@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Sequence
 from functools import lru_cache
 
@@ -27,7 +28,7 @@ def limit_words(check: Check) -> str:
 
 def room_words(check: Check) -> str:
     """The room left over the limit, or that the check fails and by how much."""
-    if check.margin != check.margin:
+    if math.isnan(check.margin) or check.margin == -math.inf:
         return "fails"
     shown = f"{100 * check.margin:.0f} %" if abs(check.margin) >= TIGHT else f"{100 * check.margin:.1f} %"
     return shown if check.passed else f"fails {shown}"
@@ -80,7 +81,7 @@ def proof_words(status: Status, proof: Proof, *, timed: bool = True) -> str:
 
 def tightest(review: Review) -> Check:
     """The check with the least room; one whose margin is not a number counts as having none."""
-    return min(review.checks, key=lambda check: check.margin if check.margin == check.margin else float("-inf"))
+    return min(review.checks, key=lambda check: -math.inf if math.isnan(check.margin) else check.margin)
 
 
 def standing(review: Review) -> str:
