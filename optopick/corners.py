@@ -2,7 +2,7 @@
 
 A corner assigns one end of its range to everything uncertain: temperature, age, lot (CTR and light), LED forward
 voltage, supplies, driver drop, resistor values. Temperature is tried at the coldest, 25 degC, the hottest, and where
-the CTR curve turns in between. Each `Axis` is one uncertain quantity with its trial values, and the words for them.
+the CTR curve bends in between. Each `Axis` is one uncertain quantity with its trial values, and the words for them.
 """
 
 from __future__ import annotations
@@ -15,6 +15,9 @@ from optopick.brief import Brief, Environment, Span
 from optopick.coupler import Coupler, Transfer
 from optopick.physics.types import Array
 
+STRAIGHT = 1e-6
+"""Change of slope, as a share of the steepest, below which a curve does not bend."""
+
 
 @dataclass(frozen=True)
 class Axis:
@@ -26,18 +29,19 @@ class Axis:
 
 
 def temperatures(environment: Environment, transfer: Transfer | None) -> Axis:
-    """Coldest, 25 degC, hottest, and the inner turning points of the CTR curve over temperature [degC]."""
+    """Coldest, 25 degC, hottest, and the every bend of the CTR curve over temperature between [degC]."""
     low, high = environment.temperature.low, environment.temperature.high
-    inner = {25.0} | set(_turning_points(transfer) if transfer else ())
+    inner = {25.0} | set(_bends(transfer) if transfer else ())
     values = sorted({low, high} | {t for t in inner if low < t < high})
     words = {low: f"coldest ({low:g} °C)", high: f"hottest ({high:g} °C)"}
     return Axis("temperature", tuple(values), tuple(words.get(t, f"{t:g} °C") for t in values))
 
 
-def _turning_points(transfer: Transfer) -> list[float]:
-    h, t = np.asarray(transfer.curve_h), transfer.curve_t
-    steps = np.sign(np.diff(h))
-    return [t[k + 1] for k in range(len(steps) - 1) if steps[k] != steps[k + 1]]
+def _bends(transfer: Transfer) -> list[float]:
+    """Points of the curve where its slope changes, its ends among them: beyond those it is flat."""
+    slopes = np.concatenate(([0.0], np.diff(transfer.curve_h) / np.diff(transfer.curve_t), [0.0]))
+    changes = np.abs(np.diff(slopes)) > STRAIGHT * np.abs(slopes).max()
+    return [t for t, bent in zip(transfer.curve_t, changes, strict=True) if bent]
 
 
 AGES = Axis("age", (0.0, 1.0), ("new", "end of life"))

@@ -34,8 +34,9 @@ from optopick.toml_text import parse_toml, read_text
 _UNTITLED = "Untitled link"
 
 
-def read_brief(path: Path) -> Brief:
+def read_brief(path: Path | str) -> Brief:
     """Read the brief at `path`. Raises InputError with every mistake in it."""
+    path = Path(path)
     return brief_from_text(read_text(path, "a brief in TOML"), path)
 
 

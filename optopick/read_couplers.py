@@ -37,12 +37,13 @@ class CouplerTable:
     path: Path
 
 
-def read_couplers(path: Path) -> CouplerTable:
+def read_couplers(path: Path | str) -> CouplerTable:
     """Read the coupler table at `path`, fill its gaps by rule and set aside the rows that keep one.
 
     Raises InputError with every mistake of the file: unreadable, an unknown or repeated column, a cell that is not
     what its column asks for or lies outside its range, figures of one row in the wrong order, a part and bin twice.
     """
+    path = Path(path)
     rows = read_rows(path)
     outcomes = [_outcome(row, bin_) for row, bin_ in zip(rows, bins_of(rows), strict=True)]
     return CouplerTable(

@@ -151,15 +151,10 @@ def holding(rooms: dict[str, np.ndarray], n: int) -> np.ndarray:
 
 
 def temperatures(brief: Brief, transfer: Transfer | None) -> list[float]:
-    """Coldest, 25 degC, hottest, and where the CTR curve turns between them."""
+    """Coldest, 25 degC, hottest, and every point of the CTR curve between them."""
     low, high = brief.environment.temperature.low, brief.environment.temperature.high
-    turns = turning_points(transfer) if transfer else []
-    return sorted({low, high, *(t for t in (25.0, *turns) if low < t < high)})
-
-
-def turning_points(transfer: Transfer) -> list[float]:
-    signs = np.sign(np.diff(transfer.curve_h))
-    return [t for t, a, b in zip(transfer.curve_t[1:-1], signs[:-1], signs[1:], strict=True) if a != b]
+    points = transfer.curve_t if transfer else ()
+    return sorted({low, high, *(t for t in (25.0, *points) if low < t < high)})
 
 
 def ends(span: Span) -> list[float]:
@@ -247,7 +242,7 @@ def led_branches(brief: Brief, coupler: Coupler, every_vertex: bool) -> Branches
         shunts[0],
         rooms,
         light={t: thin(np.concatenate([s.i_f, s.i_f * left])) for t, s in states.items()},
-        off={t: thin(np.broadcast_to(s.i_off, s.i_f.shape)) for t, s in states.items()},
+        off={t: thin(np.concatenate([np.broadcast_to(s.i_off, s.i_f.shape)] * 2)) for t, s in states.items()},
         heat={t: (s.i_f * s.v_f).max(axis=0) for t, s in states.items()},
         power=brief.signal.lit * power,
     )
@@ -384,9 +379,9 @@ class Trial:
         worst_of(self.rooms, held, len(i))
 
     def _timing(self, x: out.Lot, i: np.ndarray, j: np.ndarray, m: np.ndarray) -> None:
-        light, _, _, r_be = self._ends(x, i, j, m)
+        light, off, _, r_be = self._ends(x, i, j, m)
         swing = oracle_times.swing(self.brief, self.coupler, x, self.load.ends[float(x.t)][:, None, None, :]).taken(j)
-        times = oracle_times.times(self.coupler, x, swing, light, r_be)
+        times = oracle_times.times(self.coupler, x, swing, light, off, r_be)
         held, goals = oracle_times.timing_checks(self.brief, times)
         worst_of(self.rooms, held, len(i))
         for name, goal in goals.items():

@@ -85,7 +85,7 @@ def _staircases(model: LinkModel, ask: Ask) -> Iterator[tuple[str, Rows]]:
     every = [np.array(axis) for axis in zip(*product(*(range(n) for n in model.sizes)), strict=True)]
     scores = model.scores(*every)
     seen: set[str] = set()
-    for goal in (GoalName.DELAY, GoalName.DISTORTION):
+    for goal in (GoalName.EDGE_TIME, GoalName.DELAY, GoalName.DISTORTION):
         sharp = Ask().limited(goal, float(np.median(scores.of(goal))))
         for choice in zip(*(axis.tolist() for axis in every), strict=True):
             cuts = model.cuts(sharp, *choice)

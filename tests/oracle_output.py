@@ -11,7 +11,7 @@ import numpy as np
 from oracle_led import K_OVER_Q, KELVIN, Held, Worn, above, below, chip_share, rating
 
 from optopick.brief import Brief, OutputCircuit
-from optopick.coupler import Coupler, Transfer
+from optopick.coupler import Coupler, Kind, Transfer
 
 HELD_OFF = 0.4
 
@@ -136,19 +136,28 @@ def sheet_overdrive(coupler: Coupler) -> float:
     return float(carried(transfer, transfer.ctr_min, 1.0, np.float64(transistor.sat_i_f))) / transistor.sat_i_c
 
 
+def ebers_moll(h_fe, beta_r: float, overdrive):
+    """exp of V_CE of a saturated transistor over kT/q."""
+    forced = h_fe / overdrive
+    return (1.0 + (1.0 + forced) / beta_r) / (1.0 - forced / h_fe)
+
+
+def floor_of(coupler: Coupler, j_s) -> np.ndarray:
+    """The sheet's V_CE(sat); beyond its current all that its junctions do not explain grows like a resistor's."""
+    x, k = coupler.transistor, sheet_overdrive(coupler)
+    explained = x.v_be / 2 if coupler.kind is Kind.DARLINGTON else 0.0
+    if k > 1:
+        explained += K_OVER_Q * (25.0 + KELVIN) * np.log(ebers_moll(x.h_fe, x.beta_r, k))
+    ohms = max(x.v_ce_sat - explained, 0.0) / x.sat_i_c
+    return x.v_ce_sat + ohms * np.maximum(j_s - x.sat_i_c, 0.0)
+
+
 def saturated(coupler: Coupler, x: Lot, j_s, overdrive) -> np.ndarray:
     """V_CE of the Ebers-Moll equations at an overdrive, anchored at the sheet's point and never below it."""
-    beta_r = coupler.transistor.beta_r
-
-    def shape(k):
-        forced = x.h_fe / k
-        return (1.0 + (1.0 + forced) / beta_r) / (1.0 - forced / x.h_fe)
-
-    held = overdrive > 1
-    k = np.where(held, overdrive, 2.0)
-    rise = K_OVER_Q * (x.t + KELVIN) * np.log(shape(k) / shape(sheet_overdrive(coupler)))
-    floor = coupler.transistor.v_ce_sat * np.maximum(1.0, j_s / coupler.transistor.sat_i_c)
-    return np.where(held, floor + np.maximum(rise, 0.0), np.inf)
+    beta_r, held = coupler.transistor.beta_r, overdrive > 1
+    shapes = [ebers_moll(x.h_fe, beta_r, k) for k in (np.where(held, overdrive, 2.0), sheet_overdrive(coupler))]
+    rise = K_OVER_Q * (x.t + KELVIN) * np.log(shapes[0] / shapes[1])
+    return np.where(held, floor_of(coupler, j_s) + np.maximum(rise, 0.0), np.inf)
 
 
 def v_ce_bisected(brief: Brief, coupler: Coupler, x: Lot, j, r_load, steps: int = 44) -> np.ndarray:
@@ -175,15 +184,26 @@ def level_on(brief: Brief, coupler: Coupler, x: Lot, j, r_load, exact: bool) -> 
     return name, below(v, most) if pulled_up(brief) else above(x.v_cc - v, x.v_ih + noise)
 
 
-def leakage(coupler: Coupler, x: Lot, i_off, r_be) -> np.ndarray:
-    """Collector current with the LED off: dark current, and the light that is left."""
-    transfer, transistor = coupler.transfer, coupler.transistor
+def open_base(coupler: Coupler, x: Lot) -> np.ndarray:
+    """Dark current with nothing at the base."""
+    transistor = coupler.transistor
     rate = np.log(transistor.i_ceo_2 / transistor.i_ceo_1) / (transistor.t_2 - transistor.t_1)
-    open_base = transistor.i_ceo_1 * np.exp(rate * (x.t - transistor.t_1))
-    collector_base = open_base * mean_ctr(transfer) * x.light / (x.ctr * transistor.h_fe)
-    dark = np.where(collector_base * r_be < HELD_OFF, collector_base, open_base)
+    return transistor.i_ceo_1 * np.exp(rate * (x.t - transistor.t_1))
+
+
+def dark_as_light(coupler: Coupler, x: Lot) -> np.ndarray:
+    """LED current that would do to this unit what its dark current does."""
+    return needed(coupler.transfer, x.ctr, x.h, open_base(coupler, x))
+
+
+def leakage(coupler: Coupler, x: Lot, i_off, r_be) -> np.ndarray:
+    """Collector current with the LED off: dark current, and what the light that is left adds to it."""
+    transfer, alone = coupler.transfer, open_base(coupler, x)
+    base_leak = x.eta * dark_as_light(coupler, x)
+    dark = np.where(base_leak * r_be < HELD_OFF, base_leak, alone)
     g = relative(transfer, np.clip(i_off, transfer.curve_i[0], transfer.curve_i[-1]))
-    return dark + x.ctr * x.h * g * i_off
+    together = carried(transfer, x.ctr, x.h, np.minimum(i_off + dark_as_light(coupler, x), transfer.curve_i[-1]))
+    return dark + np.maximum(x.ctr * x.h * g * i_off, together - alone)
 
 
 def level_off(brief: Brief, coupler: Coupler, x: Lot, i_off, r_load, r_be) -> tuple[str, Held]:

@@ -11,7 +11,7 @@ from typing import NamedTuple
 
 import numpy as np
 from oracle_led import K_OVER_Q, KELVIN, Held, below
-from oracle_output import Lot, base_taken, load_of, needed, pulled_up
+from oracle_output import Lot, base_taken, dark_as_light, load_of, needed, pulled_up
 
 from optopick.brief import Brief
 from optopick.coupler import Coupler
@@ -33,18 +33,21 @@ class Way(NamedTuple):
 
 
 class Swing(NamedTuple):
-    """What the load brings to the times: ways of the edge, up to the threshold on, down to the threshold off, and down
-    by the first tenth; base charge when the output starts [C]; base voltage over V_BE in saturation [1]; LED current in
+    """What the load brings to the times: ways of the edge, up to the later and the earlier threshold, down to the later
+    and the earlier threshold, and down by the first tenth; base charge when the output starts [C]; base voltage over V_BE in saturation [1]; LED current in
     saturation [A]; what the node's capacitance adds on the way to the threshold [A s2]."""
 
     edge: Way
     on: Way
+    on_soon: Way
     off: Way
+    off_soon: Way
     tenth: Way
     started: np.ndarray
     hold: np.ndarray
     i_sat: np.ndarray
     lag: np.ndarray
+    lag_soon: np.ndarray
 
     def taken(self, index: np.ndarray) -> Swing:
         """For some of the loads, on the last axis; what does not depend on the load stays."""
@@ -99,22 +102,25 @@ def swing(brief: Brief, coupler: Coupler, x: Lot, r_load) -> Swing:
     """All ways of a load at once."""
     transistor = coupler.transistor
     on, off = fractions(brief, coupler, x)
-    reach, kept = np.clip(on, 1.0001 * STARTED, 0.9999), np.clip(1.0 - off, 1e-4, 0.9999)
-    ladders = [*ladder(0.1, 0.9, STEPS), *ladder(STARTED, reach, STEPS), *ladder(kept, 1.0, STEPS), 0.9, 1.0]
+    reach, soon = (np.clip(share, 1.0001 * STARTED, 0.9999) for share in (on, 1.0 - off))
+    kept, kept_soon = (np.clip(share, 1e-4, 0.9999) for share in (1.0 - off, on))
+    ways = [(0.1, 0.9), (STARTED, reach), (STARTED, soon), (kept, 1.0), (kept_soon, 1.0)]
+    ladders = [share for first, last in ways for share in ladder(first, last, STEPS)] + [0.9, 1.0]
     shares = np.stack(np.broadcast_arrays(*ladders))
     axes = max(np.ndim(r_load), np.ndim(x.eta)) + 1
     shares = shares.reshape(len(shares), *(1,) * (axes - shares.ndim), *shares.shape[1:])
     every, node = levels(brief, coupler, x, r_load, shares), r_load * brief.output.capacitance
     k = STEPS + 1
-    cuts = (slice(0, k), slice(k, 2 * k), slice(2 * k, 3 * k), slice(3 * k, None))
-    ways = [way(coupler, x, Levels(*(part[cut] for part in every)), node) for cut in cuts]
-    extra = brief.output.capacitance * (x.v_cc - transistor.v_ce_sat) * (reach - STARTED)
+    cuts = [slice(n * k, (n + 1) * k) for n in range(len(ways))] + [slice(len(ways) * k, None)]
+    stepped = [way(coupler, x, Levels(*(part[cut] for part in every)), node) for cut in cuts]
+    per_share = brief.output.capacitance * (x.v_cc - transistor.v_ce_sat) * transistor.tau_0 / transistor.h_fe / x.eta
     return Swing(
-        *ways,
+        *stepped,
         started=every.charge[k],
         hold=every.v_base[-1] / x.v_be,
         i_sat=np.minimum(every.i[-1], coupler.transfer.curve_i[-1]),
-        lag=transistor.tau_0 / transistor.h_fe * extra / x.eta,
+        lag=per_share * (reach - STARTED),
+        lag_soon=per_share * (soon - STARTED),
     )
 
 
@@ -132,26 +138,45 @@ def fractions(brief: Brief, coupler: Coupler, x: Lot) -> tuple[np.ndarray, np.nd
 
 
 class Times(NamedTuple):
-    """Times [s], without guard."""
+    """Times [s], without guard. skew: by how much one edge is seen later than the other."""
 
     edge_on: np.ndarray
     edge_off: np.ndarray
     storage: np.ndarray
     delay_on: np.ndarray
     delay_off: np.ndarray
+    skew: np.ndarray
 
 
-def times(coupler: Coupler, x: Lot, s: Swing, i_eff, r_be) -> Times:
-    b = base_taken(x, r_be)
+def times(coupler: Coupler, x: Lot, s: Swing, i_eff, i_off, r_be) -> Times:
+    """i_off: LED current left in the dark."""
+    b, rest = base_taken(x, r_be), i_off + dark_as_light(coupler, x)
     n = i_eff - b
-    held = coupler.transistor.tau_s * np.log(np.maximum(i_eff / (s.i_sat + s.hold * b), 1.0))
+    held = saturated_for(coupler, s, i_eff, s.hold * b - rest)
     enough = np.maximum(n, s.i_sat)
+    charge, to_late = start(x, s.started, i_eff, r_be), to_threshold(s.on, s.lag, n)
+    to_soon = to_threshold(s.on_soon, s.lag_soon, n)
+    off = held + fall(s.off, b, rest)
+    off_soon = saturated_for(coupler, s, i_eff, s.hold * b) + fall(s.off_soon, b, 0.0)
+    on_soon = to_soon + np.where(np.isinf(charge), np.inf, np.where(s.hold * b < rest, 0.0, charge))
+    skews = [
+        np.where(np.isinf(a) & np.isinf(c), np.inf, a - c) for a, c in ((off, on_soon), (charge + to_late, off_soon))
+    ]
     return Times(
         edge_on=np.where(n > 0, climb(s.edge, enough) * enough / np.where(n > 0, n, 1.0), np.inf),
-        edge_off=fall(s.edge, b),
-        storage=held + fall(s.tenth, b),
-        delay_on=start(x, s.started, i_eff, r_be) + to_threshold(s, n),
-        delay_off=held + fall(s.off, b),
+        edge_off=slide(s.edge, (0.1, 0.9, STEPS), b, rest),
+        storage=held + slide(s.tenth, (0.9, 1.0, 1), b, rest),
+        delay_on=charge + to_late,
+        delay_off=off,
+        skew=np.maximum(*skews),
+    )
+
+
+def saturated_for(coupler: Coupler, s: Swing, i_eff, pull) -> np.ndarray:
+    """Time until the charge that a saturated base holds too much is gone, the base losing `pull` more than it gets."""
+    left = s.i_sat + pull
+    return np.where(
+        left > 0, coupler.transistor.tau_s * np.log(np.maximum(i_eff / np.where(left > 0, left, 1), 1)), np.inf
     )
 
 
@@ -160,16 +185,39 @@ def climb(w: Way, n) -> np.ndarray:
     return np.where(n > w.high[-1], (w.tau * np.log((n - w.low) / (n - w.high))).sum(axis=0), np.inf)
 
 
-def fall(w: Way, b) -> np.ndarray:
-    """Time down all steps, heading for minus what the base resistor draws; none faster than the output node."""
-    pull = w.hold * b
-    return np.maximum(w.tau * np.log((w.high + pull) / (w.low + pull)), w.node).sum(axis=0)
+def fall(w: Way, b, rest) -> np.ndarray:
+    """Time down all steps, heading for what is left less what the base resistor draws: endless if that is above the
+    lowest. None faster than the output node."""
+    goal = rest - w.hold * b
+    there = w.low > goal
+    ratio = np.where(there, w.high - goal, 1.0) / np.where(there, w.low - goal, 1.0)
+    return np.where(there, np.maximum(w.tau * np.log(ratio), w.node), np.inf).sum(axis=0)
 
 
-def to_threshold(s: Swing, n) -> np.ndarray:
+def slide(w: Way, cut: tuple[float, float, int], b, rest) -> np.ndarray:
+    """Time down all steps where the levels count from the state of rest.
+
+    What is left beyond the base resistor's draw keeps a share of the load's current; the LED current over a share of
+    the load's is taken as one power law between the lowest and the highest level, for what moving the levels changes.
+    """
+    first, last, count = cut
+    x = np.array(ladder(first, last, count)).reshape(-1, *(1,) * (w.low.ndim - 1))
+    power = np.log(w.high[-1] / w.low[0]) / np.log(last / first)
+    goal = rest - w.hold * b
+    at_full = w.high[-1] / last**power
+    # the lowest base voltage takes least
+    kept = np.power(np.clip((rest - w.hold[0] * b) / at_full, 0.0, 1 - 1e-6), 1 / power)
+    up = np.power(kept + (1 - kept) * x[1:], power) - np.power(kept, power)
+    down = np.power(kept + (1 - kept) * x[:-1], power) - np.power(kept, power)
+    longer = np.maximum(up / down / np.power(x[1:] / x[:-1], power), 1.0)
+    pull = np.maximum(-goal, 0.0)
+    return np.maximum(w.tau * np.log(longer * (w.high + pull) / (w.low + pull)), w.node).sum(axis=0)
+
+
+def to_threshold(w: Way, lag, n) -> np.ndarray:
     """The node's capacitance draws charge in proportion to speed: the time is the root of t^2 - t0*t - lag/n = 0."""
-    alone = climb(s.on, n)
-    more = s.lag / np.maximum(n, s.on.high[-1])
+    alone = climb(w, n)
+    more = lag / np.maximum(n, w.high[-1])
     return (alone + np.sqrt(alone * alone + 4 * more)) / 2
 
 
@@ -183,11 +231,10 @@ def start(x: Lot, charge, i_eff, r_be) -> np.ndarray:
 def timing_checks(brief: Brief, x: Times) -> tuple[dict[str, Held], dict[str, np.ndarray]]:
     """The checks on times, and the three goals that are times; guard included."""
     guard, limits = brief.limits.timing_guard, brief.limits
-    skew = np.abs(x.delay_off - x.delay_on)
     goals = {
         "edge time": guard * np.maximum(x.edge_on, x.edge_off),
         "delay": guard * np.maximum(x.delay_on, x.delay_off),
-        "distortion": guard * np.where(np.isnan(skew), np.inf, skew),
+        "distortion": guard * x.skew,
     }
     held = {"shortest_pulse": below(goals["delay"], brief.signal.shortest_pulse)}
     for name, limit in (("edge_time", limits.edge_time), ("delay", limits.delay), ("distortion", limits.distortion)):

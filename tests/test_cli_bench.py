@@ -5,8 +5,10 @@ from __future__ import annotations
 import csv
 import io
 import json
+import re
+from xml.etree import ElementTree
 
-from cli_links import RESULT, SOUND, TINY, UNSOUND, impossible, json_of
+from cli_links import RESULT, SOUND, TINY, UNSOUND, changed, impossible, json_of
 from command import run
 
 
@@ -23,6 +25,11 @@ class TestBench:
             assert step["worst"]["design"]["r_led"] == step["ohms"]
             margins += [check["value"] for check in step["worst"]["checks"] if check["name"] == "ctr_margin"]
         assert margins == sorted(margins, reverse=True)
+
+    def test_sweep_tries_the_empty_position_last(self):
+        found = json_of(run("sweep", TINY, *SOUND, "--position", "r_be", "--json"))
+        assert [step["ohms"] for step in found["steps"]] == [220e3, 470e3, None]
+        assert [step["worst"]["design"]["r_be"] for step in found["steps"]] == [220e3, 470e3, None]
 
     def test_sweep_of_the_best_design(self):
         best = json_of(run("pick", TINY, "--json"))
@@ -83,6 +90,22 @@ class TestFiles:
         assert (folder / "review.html").read_text(encoding="utf-8") == "changed by hand"
         assert run("report", TINY, "-o", folder, "--force").code == 0
         assert "changed by hand" not in (folder / "review.html").read_text(encoding="utf-8")
+
+    def test_schematic_carries_its_style(self, tmp_path):
+        """Opened on its own, every class that the drawing uses has a rule, and every colour a value."""
+        assert run("report", TINY, "-o", tmp_path / "review").code == 0
+        root = ElementTree.fromstring((tmp_path / "review" / "schematic.svg").read_bytes())
+        (style,) = root.iter("{http://www.w3.org/2000/svg}style")
+        used = {name for node in root.iter() for name in node.get("class", "").split()} - {"wires"}
+        assert used >= {"schematic", "outline", "barrier", "package"}
+        assert {name for name in used if not re.search(rf"\.{name}\b", style.text)} == set()
+        assert set(re.findall(r"var\((--[\w-]+)\)", style.text)) <= set(re.findall(r"(--[\w-]+):", style.text))
+
+    def test_a_load_of_one_value_leaves_the_led_resistor_to_move_along(self, tmp_path):
+        brief = changed(tmp_path, ('["2k2", "4k7", "10k"]', '["10k"]'))
+        assert run("report", brief, "-o", tmp_path / "review").code == 0
+        page = (tmp_path / "review" / "review.html").read_text(encoding="utf-8")
+        assert re.findall(r'<details open class="walk" data-walk="([\w-]+)"', page) == ["r-led", "r-be", "front"]
 
     def test_report_of_the_impossible(self, tmp_path):
         assert run("report", impossible(tmp_path), "-o", tmp_path / "review").code == 3

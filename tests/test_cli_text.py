@@ -10,7 +10,7 @@ import pytest
 from cli_links import SOUND, TINY, UNSOUND, json_of
 from command import ESCAPE, ROOT, run, run_at_terminal
 
-from optopick.report.text import amount
+from optopick.report.words import amount
 
 
 class TestPlainText:

@@ -6,10 +6,15 @@ import json
 import os
 import subprocess
 import sys
+from dataclasses import replace
 
 import pytest
 from command import ROOT, run
 from fine_link import fine_link
+from test_enumeration import case
+
+from optopick.result import Proof, Status
+from optopick.uses.pick import pick
 
 CASES = ("examples/shortlist.toml", "examples/battery.toml", "tests/golden/tiny.toml")
 
@@ -46,6 +51,20 @@ def test_on_a_fine_series(tmp_path):
     first = steady(run("pick", brief, "--json").out)
     assert first["status"] == "optimal"
     assert steady(in_another_process("7", "pick", brief, "--json")) == first
+
+
+@pytest.mark.parametrize("seed", [42, 43, 50, 59])
+def test_when_the_solver_decides(seed):
+    """Links that ranges alone do not settle."""
+    brief, couplers = case(seed)
+    one, other = (pick(brief, couplers=couplers) for _ in range(2))
+    assert one.status is Status.OPTIMAL
+    assert one.proof.solves > 0
+    assert replace(one, proof=clockless(one.proof)) == replace(other, proof=clockless(other.proof))
+
+
+def clockless(proof: Proof) -> Proof:
+    return replace(proof, seconds=0.0)
 
 
 @pytest.mark.parametrize("workers", ["1", "2"])

@@ -34,6 +34,7 @@ class Link:
     r_be: np.ndarray | float = 1e6
     left: np.ndarray | float = 1.0
     ctr: np.ndarray | float = 1.0
+    i_rest: np.ndarray | float = 0.0
 
     @property
     def i_eff(self):
@@ -74,12 +75,12 @@ class Link:
 
     @property
     def edge_off(self):
-        return switching.time_off(self.swing.edge, self.i_be)
+        return switching.edge_off(self.swing.edge, switching.EDGE, self.i_be, self.i_rest)
 
     @property
     def storage(self):
         tau_s, s = self.coupler.transistor.tau_s, self.swing
-        return switching.storage(tau_s, self.i_eff, self.i_be, s.i_sat, s.hold)
+        return switching.storage(tau_s, self.i_eff, self.i_be, s.i_sat, s.hold, self.i_rest)
 
     @property
     def delay_on(self):
@@ -87,7 +88,16 @@ class Link:
 
     @property
     def delay_off(self):
-        return switching.delay_off(self.swing, self.coupler.transistor.tau_s, self.i_eff, self.i_be)
+        return switching.delay_off(self.swing, self.coupler.transistor.tau_s, self.i_eff, self.i_be, self.i_rest)
+
+    @property
+    def late_off(self):
+        tau_s = self.coupler.transistor.tau_s
+        return switching.late_off(self.swing, tau_s, self.eta, self.i_eff, self.i_be, self.i_rest)
+
+    @property
+    def late_on(self):
+        return switching.late_on(self.swing, self.coupler.transistor.tau_s, self.eta, self.i_eff, self.i_be)
 
 
 SWEEPS = {
@@ -96,15 +106,18 @@ SWEEPS = {
     "r_be": np.geomspace(680e3, 10e6, 40),
     "left": np.linspace(0.6, 1.0, 40),
     "ctr": np.linspace(0.9, 3.0, 40),
+    "i_rest": np.linspace(0.0, 20e-6, 40),
 }
 
 RISES = [
     *(("margin", name) for name in ("r_load", "r_be", "left", "ctr")),
     *(("edge_on", name) for name in ("r_led",)),
     *(("edge_off", name) for name in ("r_be", "ctr")),
-    *(("storage", name) for name in ("r_load", "r_be", "left", "ctr")),
+    *(("storage", name) for name in ("r_load", "r_be", "left", "ctr", "i_rest")),
     *(("delay_on", name) for name in ("r_led",)),
-    *(("delay_off", name) for name in ("r_be", "left", "ctr")),
+    *(("delay_off", name) for name in ("r_be", "left", "ctr", "i_rest")),
+    *(("late_off", name) for name in ("r_be", "left", "ctr", "i_rest")),
+    *(("late_on", name) for name in ("r_led",)),
 ]
 FALLS = [
     *(("margin", name) for name in ("r_led",)),
@@ -112,6 +125,8 @@ FALLS = [
     *(("storage", name) for name in ("r_led",)),
     *(("delay_on", name) for name in ("r_be", "left", "ctr")),
     *(("delay_off", name) for name in ("r_led",)),
+    *(("late_off", name) for name in ("r_led",)),
+    *(("late_on", name) for name in ("r_be", "left", "ctr")),
     *(("i_sat", name) for name in ("r_load", "ctr")),
     *(("i_be", name) for name in ("r_be",)),
 ]
@@ -218,8 +233,8 @@ def test_levels():
     assert falls(load_current(5.0, np.linspace(0, 4, 20), 1e3))
     assert falls(load_current(5.0, 0.2, SWEEPS["r_load"]))
     assert rises(dark_current(50e-9, 25.0, 20e-6, 100.0, np.linspace(-40, 110, 40)))
-    held = dark_current_held(20e-6, 100.0, np.geomspace(1e4, 1e8, 40))
-    assert set(held) == {20e-6 / 100.0, 20e-6}
+    held = dark_current_held(20e-6, 0.2e-6, np.geomspace(1e4, 1e8, 40))
+    assert set(held) == {0.2e-6, 20e-6}
     assert np.all(np.diff(held) >= 0)
 
 

@@ -70,8 +70,8 @@ def field_drive(rng: np.random.Generator, brief: Brief) -> Brief:
 
 
 def turning(coupler: Coupler) -> Coupler:
-    """The same coupler with CTR highest between room temperature and the hottest."""
-    return over_temperature(coupler, (-40.0, 25.0, 45.0, 100.0), (0.8, 1.0, 1.06, 0.65))
+    """The same coupler with CTR highest between room temperature and the hottest, and a bend where it falls."""
+    return over_temperature(coupler, (-40.0, 25.0, 45.0, 60.0, 100.0), (0.8, 1.0, 1.06, 1.0, 0.65))
 
 
 def kinked(coupler: Coupler) -> Coupler:
@@ -231,3 +231,18 @@ def test_extremes_of_light_say_as_much_as_all_of_it(seed):
     assert [whole.winner(k) for k in np.flatnonzero(held)] == [short.winner(k) for k in np.flatnonzero(kept)]
     for name, goal in whole.goals.items():
         assert short.goals[name][kept] == pytest.approx(goal[held], rel=1e-12)
+
+
+@pytest.mark.parametrize("seed", [29, 44, 47, 50, 54])
+def test_what_is_given_stays_within_the_first_goals_own_limit(seed):
+    """With more given than the brief's own limit on the first goal leaves, the limit decides."""
+    brief, couplers = case(seed)
+    free = enumerate_best(brief, couplers)
+    assert free.status == "feasible"
+    name = brief.goal.minimize.name.lower()
+    brief = replace(
+        brief, limits=replace(brief.limits, **{name: 1.02 * free.first}), goal=replace(brief.goal, give=1.0)
+    )
+    expected, found = enumerate_best(brief, couplers), optopick.pick(brief, couplers=couplers)
+    assert found.status is Status.OPTIMAL
+    assert found.second.value == pytest.approx(expected.second, rel=1e-6)

@@ -24,6 +24,7 @@ FAMILIES = {
     "storage",
     "power",
     "least_power",
+    "staircase_edge_off",
     "staircase_delay_on",
     "staircase_delay_off",
     "staircase_late_on",

@@ -20,8 +20,8 @@ def test_dark_current_passes_both_points():
 
 
 def test_a_base_resistor_holds_the_leakage_down_until_it_carries_too_much():
-    """20 uA at a gain of 100 is 0.2 uA of base leakage: 1 Mohm takes 0.2 V of it, 2 Mohm just 0.4 V."""
-    found = dark_current_held(20e-6, 100.0, np.array([1e6, 1.999e6, 2.001e6, np.inf]))
+    """Of 0.2 uA into the base 1 Mohm takes 0.2 V of it, 2 Mohm just 0.4 V."""
+    found = dark_current_held(20e-6, 0.2e-6, np.array([1e6, 1.999e6, 2.001e6, np.inf]))
     assert found == pytest.approx([0.2e-6, 0.2e-6, 20e-6, 20e-6], rel=1e-12)
 
 
@@ -62,7 +62,7 @@ def test_light_left_repeats_the_loss():
 def test_everything_broadcasts():
     t, i = np.linspace(-40, 100, 5).reshape(5, 1), np.array([1e-3, 1e-2, 5e-2])
     assert light_left(WEAR, i, t, 1e5, 0.5).shape == (5, 3)
-    assert dark_current_held(dark_current(50e-9, 25, 1e-5, 100, t), 1e2, i * 1e8).shape == (5, 3)
+    assert dark_current_held(dark_current(50e-9, 25, 1e-5, 100, t), 1e-7, i * 1e8).shape == (5, 3)
     assert output_dissipation(t + 50.0, i * 1e6, 1e-3).shape == (5, 3)
     assert resistor_derated(i, t).shape == (5, 3)
     assert derated(Rating(0.1, 60.0, 2e-3), t).shape == (5, 1)

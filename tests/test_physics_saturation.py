@@ -10,6 +10,7 @@ from scipy.optimize import brentq
 
 from optopick.physics.led import thermal_voltage
 from optopick.physics.saturation import (
+    junction_part,
     load_current,
     overdrive_to_hold,
     rise_with_current,
@@ -102,7 +103,18 @@ def test_the_smallest_resistors_just_saturate():
 
 
 def test_the_sheets_voltage_grows_with_the_current_above_the_sheets():
-    assert rise_with_current(0.2, np.array([0.1e-3, 1e-3, 2e-3]), 1e-3) == pytest.approx([0.2, 0.2, 0.4])
+    currents = np.array([0.1e-3, 1e-3, 2e-3])
+    assert rise_with_current(0.2, currents, 1e-3) == pytest.approx([0.2, 0.2, 0.4])
+    assert rise_with_current(0.2, currents, 1e-3, 0.08) == pytest.approx([0.2, 0.2, 0.32])
+    assert rise_with_current(0.2, currents, 1e-3, 0.3) == pytest.approx([0.2, 0.2, 0.2])
+
+
+def test_the_junctions_share_of_the_sheets_voltage():
+    """The logarithm of the Ebers-Moll shape; in a darlington the first transistor's base too."""
+    v_t = float(thermal_voltage(25.0))
+    assert junction_part(2.0, 400.0, 5.0, 0.0) == pytest.approx(v_t * np.log(41.2 / 0.5), rel=1e-12)
+    assert junction_part(2.0, 400.0, 5.0, 0.65) == pytest.approx(0.65 + v_t * np.log(82.4), rel=1e-12)
+    assert junction_part(0.9, 400.0, 5.0, 0.65) == 0.65
 
 
 def test_everything_broadcasts():

@@ -176,11 +176,84 @@ def test_delays_are_sums_of_their_parts():
     s = whole()
     on = switching.charging(s.charge, BASE.eta, 6e-3, 1e-3) + switching.crossing_on(s.on, 5e-3)
     assert switching.delay_on(s, BASE.eta, 6e-3, 1e-3) == pytest.approx(on, rel=1e-12)
-    off = switching.storage(8e-6, 6e-3, 1e-3, s.i_sat, s.hold) + switching.time_off(s.off, 1e-3)
-    assert switching.delay_off(s, 8e-6, 6e-3, 1e-3) == pytest.approx(off, rel=1e-12)
+    off = switching.storage(8e-6, 6e-3, 1e-3, s.i_sat, s.hold, 1e-5) + switching.time_off(s.off, 1e-3, 1e-5)
+    assert switching.delay_off(s, 8e-6, 6e-3, 1e-3, 1e-5) == pytest.approx(off, rel=1e-12)
     assert s.charge == pytest.approx(charge.base_charge(BASE, LOAD, 0.05), rel=1e-12)
     assert s.hold == pytest.approx(charge.base_voltage(BASE, 2e-3, 25.0) / 0.65, rel=1e-12)
     assert s.i_sat == pytest.approx(led_current_for(CURVED, 1.0, 1.0, 2e-3), rel=1e-12)
+
+
+def test_each_edge_is_late_at_the_threshold_that_delays_it_most():
+    """Thresholds at 0.6 and 0.7 of the swing on and 0.3 and 0.4 off: both delays at one threshold, the worse of two."""
+    s = switching.swing(BASE, LOAD, CURVED, 1.0, 0.7, 0.4)
+    upper, lower = (switching.swing(BASE, LOAD, CURVED, 1.0, share, 1 - share) for share in (0.6, 0.7))
+    at = (BASE.eta, 6e-3, 1e-3)
+    for one, early in ((upper, False), (lower, True)):
+        on, off = switching.delay_on(one, *at), switching.delay_off(one, 8e-6, *at[1:], 0.0)
+        if early:
+            assert switching.late_on(s, 8e-6, *at) == pytest.approx(float(on - off), rel=1e-9)
+        else:
+            assert switching.late_off(s, 8e-6, *at, 0.0) == pytest.approx(float(off - on), rel=1e-9)
+    charged = switching.late_off(s, 8e-6, BASE.eta, 6e-3, 0.0, 1e-9) - switching.late_off(
+        s, 8e-6, BASE.eta, 6e-3, 0.0, 0.0
+    )
+    assert charged == pytest.approx(float(switching.charging(s.charge, BASE.eta, 6e-3, 0.0)), rel=1e-3)
+
+
+# --- what is left in the dark ----------------------------------------------------------------------------------------
+
+
+@UNHURRIED
+@given(rest=st.floats(0.0, 0.29))
+def test_the_threshold_is_met_on_the_way_to_what_is_left(rest):
+    """A constant gain falls from one towards `rest` and passes 0.3 on its way."""
+    s = switching.steps(*IDEAL, FLAT, 1.0, Cut(0.3, 1.0, 3))
+    assert switching.time_off(s, 0.0, rest * 2e-3) == pytest.approx(reaches(1.0, rest, 0.3), rel=1e-6)
+
+
+def test_what_is_left_above_the_threshold_is_never_passed():
+    s = switching.steps(*IDEAL, FLAT, 1.0, Cut(0.3, 1.0, 3))
+    assert np.isinf(switching.time_off(s, 0.0, 0.31 * 2e-3))
+    assert np.isfinite(switching.time_off(s, 0.1 * 2e-3, 0.31 * 2e-3))
+    assert np.isinf(switching.storage(1e-5, 9e-3, 0.0, 2e-3, 1.0, 2.1e-3))
+    assert switching.storage(1e-5, 9e-3, 0.0, 2e-3, 1.0, 1e-3) == pytest.approx(1e-5 * np.log(9.0), rel=1e-12)
+
+
+@UNHURRIED
+@given(rest=st.floats(0.0, 0.9))
+def test_an_edge_of_a_constant_gain_takes_as_long_wherever_it_ends(rest):
+    edge = switching.edge_off(ideal(switching.EDGE), switching.EDGE, 0.0, rest * 2e-3)
+    assert edge == pytest.approx(TAU * np.log(9), rel=1e-6)
+
+
+@UNHURRIED
+@given(rest=st.floats(1e-3, 0.5), power=st.floats(0.6, 0.95))
+def test_an_edge_of_a_gain_that_falls_with_the_current(rest, power):
+    """i = x^power carries the share x; a charge linear in i runs towards i_rest; levels from there, by root finding."""
+    tops = (0.1**power, 0.9**power)
+    step = Steps(*(np.array([v]) for v in (TAU, *tops, 1.0, 0.0)), lag=np.asarray(0.0))
+    kept = rest ** (1 / power)
+    first, last = ((kept + x * (1 - kept)) ** power for x in (0.1, 0.9))
+    wanted = TAU * np.log((last - rest) / (first - rest))
+    assert switching.edge_off(step, Cut(0.1, 0.9, 1), 0.0, rest) == pytest.approx(wanted, rel=1e-9)
+
+
+@UNHURRIED
+@given(rest=st.floats(0.0, 1.0), share=st.floats(0.3, 3.0), transfer=st.sampled_from([FLAT, CURVED]))
+def test_extraction_against_what_is_left(rest, share, transfer):
+    """The least base current that is fast enough, for delays as it is, for edges not above it and close."""
+    s, i_rest = whole(transfer), rest * 1e-3
+    time = share * float(switching.time_off(s.off, 0.5e-3))
+    found = float(switching.extraction_for(s.off, time, i_rest))
+    if np.isfinite(found):
+        assert switching.time_off(s.off, found, i_rest) <= time * (1 + 1e-9)
+        assert found == 0.0 or switching.time_off(s.off, found * (1 - 1e-6), i_rest) > time
+    time = share * float(switching.edge_off(s.edge, switching.EDGE, 0.5e-3, 0.0))
+    found = float(switching.extraction_for_edge(s.edge, switching.EDGE, time, i_rest))
+    if np.isfinite(found):
+        assert found == 0.0 or switching.edge_off(s.edge, switching.EDGE, found * (1 - 1e-9), i_rest) > time
+        more = found + 0.1 * (found + i_rest)
+        assert switching.edge_off(s.edge, switching.EDGE, more, i_rest) <= time * (1 + 1e-6)
 
 
 # --- ends ------------------------------------------------------------------------------------------------------------
@@ -315,10 +388,13 @@ def test_everything_broadcasts():
     lit, pull = np.array([2e-3, 5e-3, 7e-3, 9e-3]), np.array([0.0, 1e-4, 2e-4, 3e-4])
     assert switching.edge_on(s.edge, lit - pull, s.i_sat).shape == (2, 3, 4)
     assert switching.delay_on(s, eta, lit, pull).shape == (2, 3, 4)
-    assert switching.delay_off(s, 1e-5, lit, pull).shape == (2, 3, 4)
+    assert switching.delay_off(s, 1e-5, lit, pull, 1e-5).shape == (2, 3, 4)
+    assert switching.edge_off(s.edge, switching.EDGE, pull, 1e-5).shape == (2, 3, 4)
+    assert switching.late_off(s, 1e-5, eta, lit, pull, 1e-5).shape == (2, 3, 4)
+    assert switching.late_on(s, 1e-5, eta, lit, pull).shape == (2, 3, 4)
     alone = switching.swing(replace(BASE, eta=2e-3), replace(LOAD, r_load=2e3, j_s=2.4e-3), CURVED, 1.0, 0.7, 0.7)
-    assert switching.delay_off(s, 1e-5, lit, pull)[1, 1, 2] == pytest.approx(
-        float(switching.delay_off(alone, 1e-5, 7e-3, 2e-4)), rel=1e-12
+    assert switching.delay_off(s, 1e-5, lit, pull, 1e-5)[1, 1, 2] == pytest.approx(
+        float(switching.delay_off(alone, 1e-5, 7e-3, 2e-4, 1e-5)), rel=1e-12
     )
     picked = s.at((np.array([1]), np.array([2]), np.array([0])))
     assert picked.edge.tau.shape == (switching.STEPS, 1)

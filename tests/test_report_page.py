@@ -137,10 +137,10 @@ def _headings(document: Document) -> list[str]:
 
 
 def test_verdicts():
-    assert "Least delay: 31.4 µs; then least power: 7.5 mW (proved)." in page(samples.plain())
+    assert "Least delay: 31.4 µs; then least power: 7.5 mW (proved)</p>" in page(samples.plain())
     assert "No combination in stock holds every limit at every corner." in page(samples.nothing_found())
     found = samples.given().review
-    assert f"{len(found.failing)} of {len(found.checks)} checks of the given design fail." in page(samples.given())
+    assert f"The given design: {len(found.failing)} of {len(found.checks)} checks fail." in page(samples.given())
     late = page(replace(samples.plain(), status=Status.FEASIBLE))
     assert "best found in the time given; no design has delay below 31.3 µs and no design has power" in late
 

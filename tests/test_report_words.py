@@ -11,7 +11,9 @@ import report_samples as samples
 from optopick.brief import DriveCircuit, Limits, Signal
 from optopick.report.brief_words import requirement_parts
 from optopick.report.words import (
+    binding,
     limit_words,
+    margin_words,
     ohms_words,
     proof_words,
     room_words,
@@ -43,6 +45,34 @@ def test_room(value, sense, words):
     assert limit_words(check) == f"{'≤' if sense == '<=' else '≥'} 1 s"
 
 
+@pytest.mark.parametrize(
+    ("margin", "digits", "words"),
+    [
+        (0.0999, None, "10.0 %"),
+        (0.1, None, "10 %"),
+        (-1e-10, None, "0.0 %"),
+        (-1e-10, 0, "0 %"),
+        (0.0834, 0, "8 %"),
+        (2.5, 1, "250.0 %"),
+        (math.inf, None, "∞ %"),
+        (-math.inf, 1, "–"),
+        (math.nan, None, "–"),
+    ],
+)
+def test_margin(margin, digits, words):
+    """Infinities are no percentages, and nothing has less than no room by rounding alone."""
+    assert margin_words(margin, digits) == words
+
+
+def test_binding():
+    """What holds with little room, the tightest first; what fails does not bind."""
+    checks = tuple(
+        Check(name, value, 1.0, "<=", "s", "")
+        for name, value in (("a", 0.5), ("b", 0.95), ("c", 0.99), ("d", 1.2), ("e", math.nan), ("f", 1 + 1e-10))
+    )
+    assert [check.name for check in binding(replace(samples.reviewed(), checks=checks))] == ["f", "c", "b"]
+
+
 def test_ohms():
     assert ohms_words(4700.0) == "4.7 kΩ"
     assert ohms_words(None) == "none"
@@ -64,7 +94,9 @@ def test_standing():
 def test_verdict_of_a_given_design():
     review = samples.reviewed()
     held = replace(review, checks=(Check("a", 0.1, 1.0, "<=", "s", ""),))
-    assert verdict(None, (), held) == "Every check of the given design holds."
+    assert verdict(None, (), held) == "The given design: every check holds."
+    lost = replace(held, checks=(*held.checks, Check("b", 1.5, 1.0, "<=", "s", "")))
+    assert verdict(None, (), lost) == "The given design: 1 of 2 checks fails."
     assert verdict(Status.UNKNOWN, (), None) == "Out of time: no design found, and none ruled out."
 
 

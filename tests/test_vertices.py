@@ -16,7 +16,7 @@ import pytest
 import random_links
 from enumeration import resistor_ends, survey, temperatures
 from oracle_led import LedState, Worn
-from test_enumeration import field_drive, kinked, turning
+from test_enumeration import field_drive, kinked, over_temperature, turning
 
 from optopick.brief import Brief, Position, Span
 from optopick.coupler import Coupler
@@ -133,7 +133,7 @@ def rooms_at(brief: Brief, coupler: Coupler, design: Design, p: Points) -> tuple
         held["r_be_power"] = oracle_led.below(x.v_be**2 / p.r_be, most)
     i_eff = s.i_f * (1.0 + p.age * (light_at_end_of_life(brief, coupler, design) - 1.0))
     held |= output_rooms(brief, coupler, x, s, i_eff, p)
-    times = oracle_times.times(coupler, x, oracle_times.swing(brief, coupler, x, p.r_load), i_eff, p.r_be)
+    times = oracle_times.times(coupler, x, oracle_times.swing(brief, coupler, x, p.r_load), i_eff, s.i_off, p.r_be)
     timing, goals = oracle_times.timing_checks(brief, times)
     power = brief.signal.lit * (p.drive * s.i_branch + p.v_cc * out.load_of(brief, coupler, x, p.r_load))
     if brief.limits.power is not None:
@@ -182,7 +182,15 @@ def link(seed: int) -> tuple[np.random.Generator, Brief, Coupler]:
     brief, coupler = random_links.brief(rng), random_links.coupler(rng)
     if seed % 7 == 6:
         brief = field_drive(rng, brief)
-    return rng, brief, (lambda c: c, lambda c: c, kinked, turning)[seed % 4](coupler)
+    return rng, brief, (lambda c: c, bent, kinked, turning)[seed % 4](coupler)
+
+
+def bent(coupler: Coupler) -> Coupler:
+    """The same coupler with a CTR that bends at five temperatures; each part has its own."""
+    rng = np.random.default_rng(round(1e9 * coupler.transfer.ctr_max))
+    t = np.sort(rng.uniform(-35.0, 95.0, 5))
+    h = rng.uniform(0.7, 1.3, 5)
+    return over_temperature(coupler, tuple(t.tolist()), tuple((h / np.interp(25.0, t, h)).tolist()))
 
 
 def compare(seed: int) -> tuple[bool, bool, bool, bool]:

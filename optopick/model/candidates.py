@@ -12,14 +12,14 @@ import numpy as np
 
 from optopick.brief import Brief, OutputCircuit, Position
 from optopick.corners import resistor_span
-from optopick.coupler import Coupler, Transfer, Transistor
+from optopick.coupler import Coupler, Kind, Transfer, Transistor
 from optopick.model.corner_list import CornerList, corner_list
 from optopick.model.led_candidates import DARK_FRACTION, LedCandidates, led_candidates
 from optopick.model.taking import taken
 from optopick.physics.charge import Base, Load
 from optopick.physics.heat import derated, output_dissipation, resistor_derated
 from optopick.physics.leakage import dark_current, dark_current_held
-from optopick.physics.saturation import load_current, overdrive_to_hold, rise_with_current
+from optopick.physics.saturation import junction_part, load_current, overdrive_to_hold, rise_with_current
 from optopick.physics.switching import Swing, swing
 from optopick.physics.transfer import base_led_current, collector_current, led_current_for, relative_ctr
 from optopick.physics.types import Array
@@ -64,8 +64,9 @@ class BaseCandidates:
 class Candidates:
     """All three positions of one coupler, its corners, and the light currents of every branch.
 
-    i_low, i_high: (C, n_led) least light, worn, and most, new [A]; i_lit_off: (C, n_led) collector current of the LED's
-    rest [A].
+    i_low, i_high: (C, n_led) least light, worn, and most, new [A]; i_lit_off: (C, n_led) collector current that the
+    light left in the dark LED adds [A]; i_rest: (C, n_led) LED current which that light and the dark current amount to
+    [A].
     total_room: (T,) package dissipation allowed [W]; tau_s [s], i_input_off [A].
     """
 
@@ -76,6 +77,7 @@ class Candidates:
     i_low: Array
     i_high: Array
     i_lit_off: Array
+    i_rest: Array
     total_room: Array
     tau_s: float
     i_input_off: float
@@ -95,6 +97,7 @@ class Candidates:
             i_low=self.i_low[:, i],
             i_high=self.i_high[:, i],
             i_lit_off=self.i_lit_off[:, i],
+            i_rest=self.i_rest[:, i],
         )
 
 
@@ -106,20 +109,37 @@ def candidates(brief: Brief, coupler: Coupler) -> Candidates:
     c = corner_list(brief, transfer, transistor)
     led = led_candidates(brief, coupler, DARK_FRACTION * transfer.i_ref)
     i_off = led.i_off[c.t_index]
-    g_off = relative_ctr(transfer, np.clip(i_off, transfer.curve_i[0], transfer.curve_i[-1]))
+    i_dark = _dark_led(transfer, transistor, c)
     t = np.unique(c.t[:, 0])
     return Candidates(
         corners=c,
         led=led,
         load=_load(brief, coupler, transfer, transistor, c),
-        base=_base(brief, coupler, transfer, transistor, c),
+        base=_base(brief, coupler, transistor, c, c.eta * i_dark),
         i_low=led.i_min[c.t_index] * led.light,
         i_high=led.i_max[c.t_index],
-        i_lit_off=c.ctr * c.h * g_off * i_off,
+        i_lit_off=_lit_off(transfer, transistor, c, i_off, i_dark),
+        i_rest=i_off + i_dark,
         total_room=derated(coupler.p_total, t),
         tau_s=transistor.tau_s,
         i_input_off=input_current(brief, on=False),
     )
+
+
+def _dark_led(transfer: Transfer, transistor: Transistor, c: CornerList) -> Array:
+    """LED current that would carry the dark current, (C, 1) [A]."""
+    return led_current_for(transfer, c.ctr, c.h, _dark(transistor, c))
+
+
+def _lit_off(transfer: Transfer, transistor: Transistor, c: CornerList, i_off: Array, i_dark: Array) -> Array:
+    """Collector current that the light left adds to the dark current, (C, n) [A].
+
+    Below the CTR curve by its first point or by its slope, whichever gives more.
+    """
+    last = transfer.curve_i[-1]
+    flat = c.ctr * c.h * relative_ctr(transfer, np.clip(i_off, transfer.curve_i[0], last)) * i_off
+    both = collector_current(transfer, c.ctr, c.h, np.minimum(i_off + i_dark, last))
+    return np.asarray(np.maximum(flat, both - _dark(transistor, c)))
 
 
 def input_current(brief: Brief, on: bool) -> float:
@@ -148,7 +168,7 @@ def _load(brief: Brief, coupler: Coupler, transfer: Transfer, transistor: Transi
         r_load=np.asarray(stock.values),
         swing=_swing(brief, transfer, transistor, c, r, j_s),
         for_margin=None if lifted is None else np.asarray(lifted.max(axis=1)),
-        for_level=_for_level(brief, transfer, transistor, c, r, j_s),
+        for_level=_for_level(brief, coupler, transfer, transistor, c, r, j_s),
         leak_room=_leak_room(brief, c, r),
         heat=heat,
         power=brief.signal.lit * v_max * load_current(v_max, transistor.v_ce_sat, r_t, i_in).max(axis=0),
@@ -172,7 +192,7 @@ def _swing(brief: Brief, transfer: Transfer, transistor: Transistor, c: CornerLi
 
 
 def _fractions(brief: Brief, transistor: Transistor, c: CornerList) -> tuple[Array, Array]:
-    """Share of the swing up to the receiver's threshold, turning on and off, (C, 1, 1) [1]."""
+    """Share of the swing until the receiver has surely seen the change, turning on and off, (C, 1, 1) [1]."""
     full = c.v_cc - transistor.v_ce_sat
     if brief.output.circuit is OutputCircuit.PULL_UP:
         on, off = (c.v_cc - c.v_il) / full, (c.v_ih - transistor.v_ce_sat) / full
@@ -181,13 +201,23 @@ def _fractions(brief: Brief, transistor: Transistor, c: CornerList) -> tuple[Arr
     return np.maximum(on, 0.0)[:, :, None], np.clip(off, 0.0, 1.0 - 1e-9)[:, :, None]
 
 
-def _for_level(brief: Brief, transfer: Transfer, transistor: Transistor, c: CornerList, r: Array, j_s: Array) -> Array:
+def _for_level(
+    brief: Brief,
+    coupler: Coupler,
+    transfer: Transfer,
+    transistor: Transistor,
+    c: CornerList,
+    r: Array,
+    j_s: Array,
+) -> Array:
     """LED current, less the base resistor's, that holds the output's on level, (C, n) [A]."""
     noise = brief.output.noise_margin
     pulled_up = brief.output.circuit is OutputCircuit.PULL_UP
     v_ce = (c.v_il - noise if pulled_up else c.v_cc - c.v_ih - noise)[:, :, None]
     sheet = float(collector_current(transfer, transfer.ctr_min, 1.0, transistor.sat_i_f)) / transistor.sat_i_c
-    v_sat = rise_with_current(transistor.v_ce_sat, j_s, transistor.sat_i_c)
+    inner = transistor.v_be / 2 if coupler.kind is Kind.DARLINGTON else 0.0
+    junctions = junction_part(sheet, transistor.h_fe, transistor.beta_r, inner)
+    v_sat = rise_with_current(transistor.v_ce_sat, j_s, transistor.sat_i_c, junctions)
     t, h_fe = c.t[:, :, None], c.h_fe[:, :, None]
     overdrive = overdrive_to_hold(v_ce, v_sat, sheet, h_fe, transistor.beta_r, t)
     carried = np.maximum(load_current(c.v_cc[:, :, None], v_ce, r, input_current(brief, on=True)), 1e-12)
@@ -229,7 +259,7 @@ def _load_masks(
     return {name: np.asarray(mask.all(axis=0)) for name, mask in held.items()}
 
 
-def _base(brief: Brief, coupler: Coupler, transfer: Transfer, transistor: Transistor, c: CornerList) -> BaseCandidates:
+def _base(brief: Brief, coupler: Coupler, transistor: Transistor, c: CornerList, i_cbo: Array) -> BaseCandidates:
     stock = brief.stock.r_be if coupler.base_pin else None
     if stock is None:
         return _no_base(transistor, c)
@@ -237,8 +267,7 @@ def _base(brief: Brief, coupler: Coupler, transfer: Transfer, transistor: Transi
     pad = values.size - len(stock.values)
     tolerance, rating = np.append(stock.tolerance, [0.0] * pad), np.append(stock.power, [1e9] * pad)
     low, high = resistor_span(values, tolerance, brief.stock.drift, c.t)
-    h_fe_cold = c.ctr / (np.sqrt(transfer.ctr_min * transfer.ctr_max) * c.light) * transistor.h_fe
-    leak = [dark_current_held(_dark(transistor, c), h_fe_cold, r) for r in (low, high)]
+    leak = [dark_current_held(_dark(transistor, c), i_cbo, r) for r in (low, high)]
     return BaseCandidates(
         r_be=values,
         i_be_low=base_led_current(c.v_be, high, c.eta),

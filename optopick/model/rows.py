@@ -68,9 +68,9 @@ class Ask:
         return bool(np.isfinite(self.delay) or np.isfinite(self.distortion))
 
     def limited(self, goal: GoalName, limit: float) -> Ask:
-        """The same with another limit on what a goal makes least."""
+        """The same with what a goal makes least held to `limit` as well."""
         parts = {name: getattr(self, name) for name in FIELD.values()}
-        return Ask(**{**parts, FIELD[goal]: limit}, dropped=self.dropped)
+        return Ask(**{**parts, FIELD[goal]: min(limit, self.limit(goal))}, dropped=self.dropped)
 
 
 FIELD = {

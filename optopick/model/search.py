@@ -127,7 +127,7 @@ class _Search:
         """What a better design must do."""
         if not np.isfinite(value):
             return self.ask
-        return self.ask.limited(self.goal, min(self.ask.limit(self.goal), value * (1 - STEP)))
+        return self.ask.limited(self.goal, value * (1 - STEP))
 
     def solve(self, box: Box, wanted: Ask) -> tuple[Outcome, tuple[Choice, float] | None]:
         """Solver calls, with cuts for what the exact times refuse, until one answer stands."""

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
 from dataclasses import dataclass
 from functools import cached_property
 
@@ -26,7 +26,8 @@ STAIRCASES = 48
 class Family:
     """A time at corners and load ends, monotone in the light and in what the base resistor takes.
 
-    more_light_hurts, more_base_hurts: the directions. limit: the field of Ask.
+    more_light_hurts, more_base_hurts: the directions; what is left of light and dark current never helps. limit: the
+    field of Ask.
     """
 
     name: str
@@ -36,22 +37,33 @@ class Family:
 
 
 FAMILIES = (
+    Family("edge_off", "edge", more_light_hurts=True, more_base_hurts=False),
     Family("delay_on", "delay", more_light_hurts=False, more_base_hurts=True),
     Family("delay_off", "delay", more_light_hurts=True, more_base_hurts=False),
     Family("late_off", "distortion", more_light_hurts=True, more_base_hurts=False),
     Family("late_on", "distortion", more_light_hurts=False, more_base_hurts=True),
 )
-"""late_off: delay off less delay on; late_on: the other way round."""
+"""late_off: delay off less delay on; late_on: the other way round. The edge on needs no cuts: its row is exact."""
 
 
 @dataclass(frozen=True)
 class Extremes:
-    """Light [A] and what the base resistor takes of it [A] at one extreme of the live values, (C, 1, 1) each."""
+    """The live values at one extreme, (C, 1, 1) each [A]: light, what the base resistor takes of it, what is left."""
 
     i_low: Array
     i_high: Array
     i_be_low: Array
     i_be_high: Array
+    i_rest: Array
+
+
+@dataclass(frozen=True)
+class Point:
+    """Light, what the base resistor takes of it, and what is left when dark, as LED currents [A]."""
+
+    i_eff: Array
+    i_be: Array
+    i_rest: Array
 
 
 class TransistorModel:
@@ -117,12 +129,13 @@ class TransistorModel:
         return (block for block in self._all_static if block.names[0] not in dropped)
 
     def _edges(self, ask: Ask) -> Iterator[Rows]:
-        """Edge on: i_eff - i_be >= phi[j]; edge off: i_be >= rho[j]; both exact."""
+        """Edge on: i_eff - i_be >= phi[j], exact; edge off: i_be >= rho[j], exact where all branches leave alike."""
         if not np.isfinite(ask.edge):
             return
-        x = self.candidates
-        phi = switching.drive_for_edge_on(x.load.swing.edge, ask.edge, x.load.swing.i_sat).max(axis=1)
-        rho = switching.extraction_for(x.load.swing.edge, ask.edge).max(axis=1)
+        x, edge = self.candidates, self.candidates.load.swing.edge
+        phi = switching.drive_for_edge_on(edge, ask.edge, x.load.swing.i_sat).max(axis=1)
+        rest = x.i_rest.min(axis=1)[:, None, None]
+        rho = switching.extraction_for_edge(edge, switching.EDGE, ask.edge, rest).max(axis=1)
         yield scaled("edge_on", x.i_low, -phi, -x.base.i_be_high)
         yield scaled("edge_off", np.zeros(self.sizes[0]), -rho, x.base.i_be_low)
 
@@ -133,10 +146,11 @@ class TransistorModel:
         """
         if not ask.has_delays:
             return
-        x = self.candidates
+        swing, eta, tau_s = self.candidates.load.swing, self._eta, self.candidates.tau_s
         strong, weak = self._extremes(light_most=True), self._extremes(light_most=False)
-        longest_on = self._time("delay_on", x.load.swing, self._eta, weak.i_high, weak.i_be_low)
-        longest_off = self._time("delay_off", x.load.swing, self._eta, strong.i_low, strong.i_be_high)
+        # a limit on lateness bounds one delay by the other's longest, at whichever threshold: the sure one is later
+        longest_on = switching.delay_on(swing, eta, weak.i_high, weak.i_be_low)
+        longest_off = switching.delay_off(swing, tau_s, strong.i_low, strong.i_be_high, strong.i_rest)
         yield from self._on_rows(np.minimum(ask.delay, ask.distortion + longest_off), strong)
         yield from self._off_rows(np.minimum(ask.delay, ask.distortion + longest_on), weak)
 
@@ -144,9 +158,17 @@ class TransistorModel:
         """The values at each corner that switch on fastest (most light, least taken), or off fastest."""
         x = self.candidates
         first, second = (np.max, np.min) if light_most else (np.min, np.max)
-        light = [first(a, axis=1)[:, None, None] for a in (x.i_low, x.i_high)]
-        taken = [second(a, axis=1)[:, None, None] for a in (x.base.i_be_low, x.base.i_be_high)]
-        return Extremes(*light, *taken)
+
+        def over(values: Array, extreme: Callable[..., Array]) -> Array:
+            return np.asarray(extreme(values, axis=1))[:, None, None]
+
+        return Extremes(
+            i_low=over(x.i_low, first),
+            i_high=over(x.i_high, first),
+            i_be_low=over(x.base.i_be_low, second),
+            i_be_high=over(x.base.i_be_high, second),
+            i_rest=over(x.i_rest, first),
+        )
 
     @property
     def _eta(self) -> Array:
@@ -162,45 +184,47 @@ class TransistorModel:
     def _off_rows(self, limit: Array, weak: Extremes) -> Iterator[Rows]:
         """Delay off within `limit` (C, 2, n): the fall beside the shortest storage, and the storage beside the fall."""
         x, swing = self.candidates, self.candidates.load.swing
-        held = switching.storage(x.tau_s, weak.i_high, weak.i_be_low, swing.i_sat, swing.hold)
-        rho = switching.extraction_for(swing.off, limit - held)
+        held = switching.storage(x.tau_s, weak.i_high, weak.i_be_low, swing.i_sat, swing.hold, weak.i_rest)
+        rho = switching.extraction_for(swing.off, limit - held, weak.i_rest)
         yield scaled("delay_off", np.zeros(self.sizes[0]), -rho.max(axis=1), x.base.i_be_low)
-        fall = switching.time_off(swing.off, weak.i_be_low)
+        fall = switching.time_off(swing.off, weak.i_be_low, weak.i_rest)
         with np.errstate(invalid="ignore"):
             left = np.nan_to_num((limit - fall) / x.tau_s, nan=50.0)
         stretch = np.exp(np.clip(left, -50.0, 50.0))
-        room = (stretch * swing.i_sat).min(axis=1)
+        room = (stretch * (swing.i_sat - weak.i_rest)).min(axis=1)
         most = (stretch * swing.hold).max(axis=(1, 2))[:, None]
         yield scaled("storage", -x.i_high, room, most * x.base.i_be_low)
 
-    def _time(self, family: str, swing: switching.Swing, eta: Array, i_eff: Array, i_be: Array) -> Array:
+    def _time(self, family: str, swing: switching.Swing, eta: Array, at: Point) -> Array:
         """The time of a family [s]; every argument broadcasts."""
+        tau_s = self.candidates.tau_s
+        if family == "edge_off":
+            return switching.edge_off(swing.edge, switching.EDGE, at.i_be, at.i_rest)
         if family == "delay_on":
-            return switching.delay_on(swing, eta, i_eff, i_be)
+            return switching.delay_on(swing, eta, at.i_eff, at.i_be)
         if family == "delay_off":
-            return switching.delay_off(swing, self.candidates.tau_s, i_eff, i_be)
-        on, off = (self._time(name, swing, eta, i_eff, i_be) for name in ("delay_on", "delay_off"))
-        with np.errstate(invalid="ignore"):
-            late = off - on if family == "late_off" else on - off
-        return np.nan_to_num(late, nan=np.inf, posinf=np.inf, neginf=-np.inf)
+            return switching.delay_off(swing, tau_s, at.i_eff, at.i_be, at.i_rest)
+        if family == "late_off":
+            return switching.late_off(swing, tau_s, eta, at.i_eff, at.i_be, at.i_rest)
+        return switching.late_on(swing, tau_s, eta, at.i_eff, at.i_be)
 
     def _worst_times(self, family: Family, i: Index, j: Index, m: Index) -> Array:
         """Times of K designs at every corner and load end, (C, 2, K) [s]."""
         x = self.candidates
         light = (x.i_high if family.more_light_hurts else x.i_low)[:, None, i]
         taken = (x.base.i_be_high if family.more_base_hurts else x.base.i_be_low)[:, None, m]
-        return self._time(family.name, x.load.swing.taken(j), self._eta, light, taken)
+        at = Point(light, taken, x.i_rest[:, None, i])
+        return self._time(family.name, x.load.swing.taken(j), self._eta, at)
 
     def scores(self, i: Index, j: Index, m: Index) -> Scores:
         """Worst-case goals of K designs, exactly."""
         x = self.candidates
         swing = x.load.swing.taken(j)
         on = switching.edge_on(swing.edge, x.i_low[:, None, i] - x.base.i_be_high[:, None, m], swing.i_sat)
-        off = switching.time_off(swing.edge, x.base.i_be_low[:, None, m])
         by_name = {family.name: self._worst_times(family, i, j, m).max(axis=(0, 1)) for family in FAMILIES}
         p, q = self.power
         return Scores(
-            edge=np.maximum(on, off).max(axis=(0, 1)),
+            edge=np.maximum(on.max(axis=(0, 1)), by_name["edge_off"]),
             delay=np.maximum(by_name["delay_on"], by_name["delay_off"]),
             distortion=np.maximum(by_name["late_on"], by_name["late_off"]),
             power=p[i] + q[j],
@@ -218,18 +242,24 @@ class TransistorModel:
             late = self._worst_times(family, *(np.array([k]) for k in (i, j, m)))[:, :, 0]
             if late.max() > limit:
                 corner, end = (int(k) for k in np.unravel_index(int(late.argmax()), late.shape))
-                blocks.extend(self._staircase(family, limit, (corner, end), k) for k in sorted({m, *others}))
+                blocks.extend(self._staircase(family, limit, (corner, end), j, k) for k in sorted({m, *others}))
         return stack(blocks, self.sizes)
 
-    def _staircase(self, family: Family, limit: float, at: tuple[int, int], m: int) -> Rows:
-        """For base resistor m and those that are worse at this corner: the least rank of light that each load needs."""
+    def _staircase(self, family: Family, limit: float, at: tuple[int, int], j: int, m: int) -> Rows:
+        """For base resistor m and those that are worse at this corner: the least rank of branch that each load needs.
+
+        Branches rank by their time with load j, the longest first; what a load needs is that the first so many all
+        fail with it.
+        """
         x, (corner, end) = self.candidates, at
         light = (x.i_high if family.more_light_hurts else x.i_low)[corner]
         taken = (x.base.i_be_high if family.more_base_hurts else x.base.i_be_low)[corner]
-        order = np.argsort(-light if family.more_light_hurts else light, kind="stable")
         load = np.arange(self.sizes[1])[:, None]
         swing = x.load.swing.at((np.full_like(load, corner), np.full_like(load, end), load))
-        fails = self._time(family.name, swing, x.corners.eta[corner, 0], light[order][None, :], taken[m]) > limit
+        point = Point(light[None, :], taken[m], x.i_rest[corner][None, :])
+        late = self._time(family.name, swing, x.corners.eta[corner, 0], point)
+        order = np.argsort(-late[j], kind="stable")
+        fails = np.logical_and.accumulate(late[:, order] > limit, axis=1)
         rank = np.empty(len(order))
         rank[order] = np.arange(len(order)) / len(order)
         need = fails.sum(axis=1) / len(order)

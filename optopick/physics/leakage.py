@@ -19,10 +19,11 @@ def dark_current(i_1: float, t_1: float, i_2: float, t_2: float, t: Real) -> Arr
     return np.asarray(i_1 * (i_2 / i_1) ** ((np.asarray(t) - t_1) / (t_2 - t_1)))
 
 
-def dark_current_held(i_ceo: Real, h_fe: Real, r_be: Real) -> Array:
-    """Leakage with a base-emitter resistor [A]: i_ceo/h_fe while that times r_be stays under 0.4 V, else i_ceo.
+def dark_current_held(i_ceo: Real, i_cbo: Real, r_be: Real) -> Array:
+    """Leakage with a base-emitter resistor [A]: i_cbo while that times r_be stays under 0.4 V, else i_ceo.
 
-    i_ceo [A], h_fe: the least gain, so the largest base leakage [1], r_be [ohm], infinite where absent. Broadcasts.
+    i_ceo [A], i_cbo: what leaks into the base, eta times the LED current that would carry i_ceo [A], r_be [ohm],
+    infinite where absent. Broadcasts.
     """
-    i_cbo = np.asarray(i_ceo) / h_fe
+    i_cbo = np.asarray(i_cbo)
     return np.asarray(np.where(i_cbo * r_be < BASE_HELD_OFF, i_cbo, i_ceo))

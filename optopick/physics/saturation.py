@@ -72,9 +72,23 @@ def overdrive_to_hold(v_ce: Real, v_ce_sat: Real, overdrive_sheet: Real, h_fe: R
     return np.asarray(np.where(room < -1e-9, np.inf, overdrive))
 
 
-def rise_with_current(v_ce_sat: Real, i_c: Real, i_c_sheet: Real) -> Array:
-    """The sheet's v_ce_sat [V] carried to a larger collector current: proportional above `i_c_sheet` [A], flat below.
+def junction_part(overdrive_sheet: float, h_fe: float, beta_r: float, v_inner: float) -> float:
+    """What the junctions account for of a sheet's v_ce_sat at 25 degC [V]: v_inner + (kT/q)*ln(saturation_shape).
 
-    A rule of this program on the safe side: the bulk resistance can take no more than all of the voltage. Broadcasts.
+    overdrive_sheet > 1: at the sheet's point [1] (at or below 1: v_inner alone); h_fe, beta_r [1]; v_inner: voltage of
+    the first transistor's base in a darlington, else 0 [V].
     """
-    return np.asarray(v_ce_sat * np.maximum(1.0, np.asarray(i_c) / i_c_sheet))
+    if overdrive_sheet <= 1:
+        return v_inner
+    shape = float(saturation_shape(overdrive_sheet, h_fe, beta_r))
+    return v_inner + float(thermal_voltage(25.0)) * float(np.log(shape))
+
+
+def rise_with_current(v_ce_sat: float, i_c: Real, i_c_sheet: float, v_junctions: float = 0.0) -> Array:
+    """The sheet's v_ce_sat [V] carried to a larger collector current: flat up to `i_c_sheet` [A], then rising.
+
+    v_ce_sat + max(0, v_ce_sat - v_junctions)*max(0, i_c/i_c_sheet - 1). A rule of this program on the safe side: all
+    that `junction_part` does not account for is resistance. Broadcasts.
+    """
+    resistive = max(v_ce_sat - v_junctions, 0.0)
+    return np.asarray(v_ce_sat + resistive * np.maximum(np.asarray(i_c) / i_c_sheet - 1.0, 0.0))

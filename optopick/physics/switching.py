@@ -8,7 +8,8 @@ n = i_eff - i_be,
 
     tau*ln[(n - i_a)/(n - i_b)],   tau = (q_b - q_a)/(eta*(i_b - i_a)) + r_load*c_load
 
-and turning off tau*ln[(i_b + i_be)/(i_a + i_be)]. One step and a constant gain make the textbook formulas: 10 to 90 %
+and turning off tau*ln[(i_b + b)/(i_a + b)], b = i_be - i_rest: light left in the dark LED and the dark current, as LED
+current i_rest, hold the output up. One step and a constant gain make the textbook formulas: 10 to 90 %
 in tau*ln[(n - 0.1*i_sat)/(n - 0.9*i_sat)], and tau*ln 9 off without a base resistor. A sum of steps still depends on
 light and base resistor through n or i_be alone, so a limit on it is one number for each load value, found by Newton's
 method: `drive_for_edge_on`, `drive_for_crossing_on`, `extraction_for`.
@@ -42,6 +43,12 @@ ITERATIONS, CONVERGED = 30, 1e-13
 
 SAFE, LEAST_RISE = 1.0 + 1e-11, 1e-13
 """Factor that keeps a result of Newton's method on the safe side; least drive beyond the highest level [1]."""
+
+TINY = 1e-12
+"""Least current on which a logarithm is taken, as a share of the step's highest."""
+
+HALVINGS = 6
+"""Of a bisection that may stay below its answer."""
 
 
 @dataclass(frozen=True)
@@ -137,14 +144,38 @@ def time_on(s: Steps, n: Real) -> Array:
     return np.asarray(np.where(passes, time, np.inf))
 
 
-def time_off(s: Steps, i_be: Real) -> Array:
+def time_off(s: Steps, i_be: Real, i_rest: Real = 0.0) -> Array:
     """Time from the highest to the lowest level as the transistor lets go [s].
 
-    Sum of max(tau*ln[(i_high + b)/(i_low + b)], least), b = hold*i_be: however hard the base resistor pulls, the output
-    node follows no faster than its own resistor and capacitance. Broadcasts.
+    Sum of max(tau*ln[(i_high + b)/(i_low + b)], least), b = hold*i_be - i_rest: however hard the base resistor pulls,
+    the output node follows no faster than its own resistor and capacitance. i_rest: LED current that the light left and
+    the dark current amount to [A]; infinite where it holds the output above the lowest level. Broadcasts.
     """
-    b = s.hold * np.asarray(i_be)
-    return np.asarray(np.sum(np.maximum(s.tau * np.log((s.i_high + b) / (s.i_low + b)), s.least), axis=0))
+    b = s.hold * np.asarray(i_be) - i_rest
+    falls = s.i_low + b > 0
+    low = np.where(falls, s.i_low + b, 1.0)
+    step = np.where(falls, s.tau * np.log(np.where(falls, s.i_high + b, 1.0) / low), np.inf)
+    return np.asarray(np.sum(np.maximum(step, s.least), axis=0))
+
+
+def edge_off(s: Steps, cut: Cut, i_be: Real, i_rest: Real) -> Array:
+    """Time from share cut.last to share cut.first of the way down to the state of rest [s]; `s` cut by `cut`.
+
+    As `time_off`, but where i_rest exceeds hold*i_be by n, at the least hold, the output comes to rest at the share r
+    of the load current that n carries, and each level x becomes r + x*(1 - r). With i going as x^a between the levels,
+    a step's ratio i_high/i_low grows by [(r + x_b*(1 - r))^a - r^a]/[(r + x_a*(1 - r))^a - r^a]*(x_a/x_b)^a, never
+    taken below 1. Broadcasts.
+    """
+    i_be, rest = np.asarray(i_be), np.asarray(i_rest)
+    x = _levels(cut, s.i_low.ndim - 1)
+    a = np.log(s.i_high[-1] / s.i_low[0]) / np.log(x[-1] / x[0])
+    kept = np.clip((rest - s.hold[0] * i_be) / (s.i_high[-1] * x[-1] ** -a), 0.0, 1.0 - 1e-6)
+    r = kept ** (1.0 / a)
+    above = (r + x * (1.0 - r)) ** a - kept
+    grown = np.maximum(above[1:] / above[:-1] * (x[:-1] / x[1:]) ** a, 1.0)
+    b = np.maximum(s.hold * i_be - rest, 0.0)
+    step = s.tau * np.log((s.i_high + b) / (s.i_low + b) * grown)
+    return np.asarray(np.sum(np.maximum(step, s.least), axis=0))
 
 
 def edge_on(s: Steps, n: Real, i_sat: Real) -> Array:
@@ -166,9 +197,11 @@ def charging(charge: Real, eta: Real, i_eff: Real, i_be: Real) -> Array:
     `base_charge` at FIRST [C]; eta [1]. Infinite where i_be >= i_eff. Broadcasts.
     """
     i, b = np.asarray(i_eff, dtype=float), np.asarray(i_be, dtype=float)
-    share = np.clip(b / i, 1e-9, 1.0 - 1e-15)
-    time = np.asarray(charge) / (eta * i) * (-np.log1p(-share) / share)
-    return np.asarray(np.where(b < i, time, np.inf))
+    lit = b < i
+    safe = np.where(lit, i, 1.0)
+    share = np.clip(np.where(lit, b, 0.0) / safe, 1e-9, 1.0 - 1e-15)
+    time = np.asarray(charge) / (eta * safe) * (-np.log1p(-share) / share)
+    return np.asarray(np.where(lit, time, np.inf))
 
 
 def crossing_on(s: Steps, n: Real) -> Array:
@@ -183,14 +216,17 @@ def crossing_on(s: Steps, n: Real) -> Array:
     return np.asarray(t / 2 + np.sqrt(t * t / 4 + s.lag / n))
 
 
-def storage(tau_s: Real, i_eff: Real, i_be: Real, i_sat: Real, hold: Real = 1.0) -> Array:
-    """Time in saturation after the LED is dark [s]: tau_s*ln[i_eff/(i_sat + hold*i_be)], at least 0.
+def storage(tau_s: Real, i_eff: Real, i_be: Real, i_sat: Real, hold: Real = 1.0, i_rest: Real = 0.0) -> Array:
+    """Time in saturation after the LED is dark [s]: tau_s*ln[i_eff/(i_sat + hold*i_be - i_rest)], at least 0.
 
-    hold: base-emitter voltage at the load's current over v_be [1]. The output has not moved yet when it ends: the time
-    to 10 % of the swing is this and `time_off` by FIRST_TENTH. Broadcasts.
+    hold: base-emitter voltage at the load's current over v_be [1]; i_rest as in `time_off`: infinite where it alone
+    saturates the output. The output has not moved yet when it ends: the time to 10 % of the swing is this and
+    `edge_off` by FIRST_TENTH. Broadcasts.
     """
-    left = np.asarray(i_sat) + hold * np.asarray(i_be)
-    return np.asarray(tau_s * np.log(np.maximum(np.asarray(i_eff) / left, 1.0)))
+    left = np.asarray(i_sat) + hold * np.asarray(i_be) - i_rest
+    ends = left > 0
+    time = tau_s * np.log(np.maximum(np.asarray(i_eff) / np.where(ends, left, 1.0), 1.0))
+    return np.asarray(np.where(ends, time, np.inf))
 
 
 def drive_for_edge_on(s: Steps, time: Real, i_sat: Real) -> Array:
@@ -228,38 +264,63 @@ def _least_drive(s: Steps, time: Real, lag: Real) -> Array:
     return np.asarray(np.where(possible, n, np.inf))
 
 
-def extraction_for(s: Steps, time: Real) -> Array:
+def extraction_for(s: Steps, time: Real, i_rest: Real = 0.0) -> Array:
     """Least i_be [A] with time_off <= time: 0 where none is needed, infinite where none is enough. Broadcasts.
 
-    By Newton's method from 0, never below: time_off is convex and falls with i_be.
+    By Newton's method, never above: time_off is convex and falls with i_be. The start is what one step alone needs.
     """
-    t = np.asarray(time, dtype=float)
+    t, rest = np.asarray(time, dtype=float), np.asarray(i_rest, dtype=float)
     possible = (t > np.sum(s.least, axis=0)) & np.isfinite(s.tau[-1])
     tau = np.where(possible, s.tau, 1.0)
-    i_be = np.zeros(np.broadcast_shapes(possible.shape, s.i_low.shape[1:]))
+    grown = np.expm1(np.clip(np.where(possible, t, 1.0) / tau, 1e-12, 500.0))
+    alone = ((s.i_high - s.i_low) / grown - s.i_low + rest) / s.hold
+    i_be = np.maximum(alone.max(axis=0), 0.0)
     for _ in range(ITERATIONS):
-        low, high = s.i_low + s.hold * i_be, s.i_high + s.hold * i_be
+        low, high = s.i_low + s.hold * i_be - rest, s.i_high + s.hold * i_be - rest
+        low = np.maximum(low, TINY * s.i_high)
         step = tau * np.log(high / low)
         late = np.where(possible, np.maximum(np.sum(np.maximum(step, s.least), axis=0) - t, 0.0), 0.0)
         if np.all(late <= CONVERGED * np.abs(t)):
             break
         slope = np.sum(np.where(step > s.least, tau * s.hold * (high - low) / (low * high), 0.0), axis=0)
         i_be = i_be + late / np.where(slope > 0, slope, np.inf)
-    return np.asarray(np.where(time_off(s, 0.0) <= t, 0.0, np.where(possible, i_be * SAFE, np.inf)))
+    return np.asarray(np.where(time_off(s, 0.0, rest) <= t, 0.0, np.where(possible, i_be * SAFE, np.inf)))
+
+
+def extraction_for_edge(s: Steps, cut: Cut, time: Real, i_rest: Real) -> Array:
+    """An i_be [A] below which edge_off > time: 0 where none is needed, infinite where none is enough. Broadcasts.
+
+    Close to the least one, by a few halvings between what is needed without rest and with all of it.
+    """
+    rest = np.asarray(i_rest, dtype=float)
+    found = extraction_for(s, time)
+    possible, least, most = np.isfinite(found), np.min(s.hold, axis=0), np.max(s.hold, axis=0)
+    bare = np.where(possible, found, 0.0)
+    low, high = np.where(bare > 0, bare + rest / most, 0.0), bare + rest / least
+    for _ in range(HALVINGS):
+        middle = (low + high) / 2
+        enough = edge_off(s, cut, middle, rest) <= time
+        low, high = np.where(enough, low, middle), np.where(enough, middle, high)
+    low = np.maximum(low, TINY * rest)
+    none_needed = edge_off(s, cut, 0.0, rest) <= time
+    return np.asarray(np.where(none_needed, 0.0, np.where(possible, low, np.inf)))
 
 
 @dataclass(frozen=True)
 class Swing:
     """All that the load brings to the times of one output.
 
-    edge: steps from 10 to 90 %; on: from FIRST to the receiver's threshold; off: the part of the swing given back until
-    its other threshold; charge: of the base at FIRST [C]; hold: base-emitter voltage at the load's current over v_be
-    [1]; i_sat: LED current that carries the load [A], the curve's last where it does not reach.
+    edge: steps from 10 to 90 %; on: from FIRST to where the receiver has surely seen the change; off: the part of the
+    swing given back until then; on_early, off_early: until it may first have seen it; charge: of the base at FIRST [C];
+    hold: base-emitter voltage at the load's current over v_be [1]; i_sat: LED current that carries the load [A], the
+    curve's last where it does not reach.
     """
 
     edge: Steps
     on: Steps
     off: Steps
+    on_early: Steps
+    off_early: Steps
     charge: Array
     hold: Array
     i_sat: Array
@@ -270,6 +331,8 @@ class Swing:
             edge=self.edge.at(index),
             on=self.on.at(index),
             off=self.off.at(index),
+            on_early=self.on_early.at(index),
+            off_early=self.off_early.at(index),
             charge=self.charge[index],
             hold=self.hold[index],
             i_sat=self.i_sat[index],
@@ -281,19 +344,27 @@ class Swing:
 
 
 def swing(base: Base, load: Load, transfer: Transfer, carried: Real, on: Real, off: Real) -> Swing:
-    """The swing of a load; on, off: shares of it from rest to the receiver's thresholds, turning on and off [1].
+    """The swing of a load; on, off: shares of it from rest until the receiver has surely seen the change [1].
 
-    Broadcasts.
+    Lit, it may have seen it from the share 1 - off on; dark, from 1 - on. Broadcasts.
     """
     i_sat = led_current_for(transfer, carried, 1.0, load.j_s)
-    kept = np.clip(1.0 - np.asarray(off), 1e-4, 0.9999)
-    reach = np.clip(on, 1.0001 * FIRST, 0.9999)
+    sure_on, sure_off = np.asarray(on), np.asarray(off)
     edge = steps(base, load, transfer, carried, EDGE)
     shape = edge.lag.shape
+
+    def rising(share: Array) -> Steps:
+        return steps(base, load, transfer, carried, Cut(FIRST, np.clip(share, 1.0001 * FIRST, 0.9999), STEPS))
+
+    def falling(share: Array) -> Steps:
+        return steps(base, load, transfer, carried, Cut(np.clip(1.0 - share, 1e-4, 0.9999), 1.0, STEPS))
+
     return Swing(
         edge=edge,
-        on=steps(base, load, transfer, carried, Cut(FIRST, reach, STEPS)),
-        off=steps(base, load, transfer, carried, Cut(kept, 1.0, STEPS)),
+        on=rising(sure_on),
+        off=falling(sure_off),
+        on_early=rising(1.0 - sure_off),
+        off_early=falling(1.0 - sure_on),
         charge=np.broadcast_to(base_charge(base, load, FIRST), shape),
         hold=np.broadcast_to(base_voltage(base, load.j_s, load.t) / base.v_be, shape),
         i_sat=np.broadcast_to(np.minimum(i_sat, transfer.curve_i[-1]), shape),
@@ -305,6 +376,33 @@ def delay_on(s: Swing, eta: Real, i_eff: Real, i_be: Real) -> Array:
     return charging(s.charge, eta, i_eff, i_be) + crossing_on(s.on, np.asarray(i_eff) - i_be)
 
 
-def delay_off(s: Swing, tau_s: Real, i_eff: Real, i_be: Real) -> Array:
+def delay_off(s: Swing, tau_s: Real, i_eff: Real, i_be: Real, i_rest: Real) -> Array:
     """LED dark to the receiver's threshold [s]: `storage`, then `time_off`. Broadcasts."""
-    return storage(tau_s, i_eff, i_be, s.i_sat, s.hold) + time_off(s.off, i_be)
+    return storage(tau_s, i_eff, i_be, s.i_sat, s.hold, i_rest) + time_off(s.off, i_be, i_rest)
+
+
+def late_off(s: Swing, tau_s: Real, eta: Real, i_eff: Real, i_be: Real, i_rest: Real) -> Array:
+    """By how much the LED's dark edge is seen later than its lit edge [s], at the threshold where that is most.
+
+    `delay_off` less the delay on to the earlier threshold, whose `charging` counts only where the base resistor takes
+    all of i_rest: else the base may be charged beforehand. -infinite where the output never turns on. Broadcasts.
+    """
+    charged = charging(s.charge, eta, i_eff, i_be)
+    start = np.where(s.hold * np.asarray(i_be) >= i_rest, charged, np.where(np.isfinite(charged), 0.0, np.inf))
+    on = start + crossing_on(s.on_early, np.asarray(i_eff) - i_be)
+    return _difference(delay_off(s, tau_s, i_eff, i_be, i_rest), on)
+
+
+def late_on(s: Swing, tau_s: Real, eta: Real, i_eff: Real, i_be: Real) -> Array:
+    """By how much the LED's lit edge is seen later than its dark edge [s], at the threshold where that is most.
+
+    `delay_on` less the delay off to the earlier threshold with nothing left of light and dark current. Broadcasts.
+    """
+    off = storage(tau_s, i_eff, i_be, s.i_sat, s.hold) + time_off(s.off_early, i_be)
+    return _difference(delay_on(s, eta, i_eff, i_be), off)
+
+
+def _difference(a: Array, b: Array) -> Array:
+    """First less second; infinite where both are."""
+    with np.errstate(invalid="ignore"):
+        return np.nan_to_num(a - b, nan=np.inf, posinf=np.inf, neginf=-np.inf)

@@ -8,12 +8,12 @@ import numpy as np
 
 from optopick.brief import Brief, OutputCircuit
 from optopick.corners import thresholds
-from optopick.coupler import Coupler, Transfer, Transistor
+from optopick.coupler import Coupler, Kind, Transfer, Transistor
 from optopick.physics import switching
 from optopick.physics.charge import Base, Load
 from optopick.physics.heat import derated, output_dissipation, resistor_derated
 from optopick.physics.leakage import dark_current, dark_current_held
-from optopick.physics.saturation import load_current, rise_with_current, v_ce_on
+from optopick.physics.saturation import junction_part, load_current, rise_with_current, v_ce_on
 from optopick.physics.transfer import (
     base_led_current,
     collector_current,
@@ -36,7 +36,10 @@ BISECTIONS = 48
 
 @dataclass(frozen=True)
 class Stage:
-    """The output stage at every vertex; see the glossary of optopick.physics."""
+    """The output stage at every vertex; see the glossary of optopick.physics.
+
+    i_dark: LED current that would carry the dark current [A]; i_rest: that and what is left in the dark LED [A].
+    """
 
     h: Array
     eta: Array
@@ -44,6 +47,8 @@ class Stage:
     v_be: Array
     i_eff: Array
     i_be: Array
+    i_dark: Array
+    i_rest: Array
     i_input: float
     j_s: Array
     i_sat: Array
@@ -68,8 +73,8 @@ def review_stage(brief: Brief, coupler: Coupler, design: Design, box: Vertices, 
     return StageReview(tuple(checks), times(brief, coupler, box, s), brief.signal.lit * box.v_cc * s.j_s)
 
 
-def stage(brief: Brief, coupler: Coupler, box: Vertices, branch: LedBranch) -> Stage:
-    """Evaluate the output stage at every vertex."""
+def stage(brief: Brief, coupler: Coupler, box: Vertices, branch: LedBranch, dark: float = 1.0) -> Stage:
+    """Evaluate the output stage at every vertex; `dark`: share of the sheet's largest dark current that flows [1]."""
     transfer, transistor = parts_of(coupler)
     h = temperature_factor(transfer, box.t)
     ctr_mid = np.sqrt(transfer.ctr_min * transfer.ctr_max)
@@ -79,6 +84,8 @@ def stage(brief: Brief, coupler: Coupler, box: Vertices, branch: LedBranch) -> S
     pulled_up = output.circuit is OutputCircuit.PULL_UP
     i_input = max(output.input_leakage, output.input_current_low) if pulled_up else output.input_leakage
     j_s = load_current(box.v_cc, transistor.v_ce_sat, box.r_load, i_input)
+    i_ceo = dark_current(transistor.i_ceo_1, transistor.t_1, transistor.i_ceo_2, transistor.t_2, box.t)
+    i_dark = dark * led_current_for(transfer, box.ctr, h, i_ceo)
     return Stage(
         h=h,
         eta=eta,
@@ -86,6 +93,8 @@ def stage(brief: Brief, coupler: Coupler, box: Vertices, branch: LedBranch) -> S
         v_be=v_be,
         i_eff=branch.i_f * branch.light,
         i_be=base_led_current(v_be, box.r_be, eta),
+        i_dark=i_dark,
+        i_rest=branch.i_off + i_dark,
         i_input=i_input,
         j_s=j_s,
         i_sat=led_current_for(transfer, box.ctr, h, j_s),
@@ -127,7 +136,9 @@ def _v_ce(coupler: Coupler, box: Vertices, s: Stage, drive: Array) -> Array:
     """
     transfer, transistor = parts_of(coupler)
     sheet = float(collector_current(transfer, transfer.ctr_min, 1.0, transistor.sat_i_f)) / transistor.sat_i_c
-    v_sat = rise_with_current(transistor.v_ce_sat, s.j_s, transistor.sat_i_c)
+    inner = transistor.v_be / 2 if coupler.kind is Kind.DARLINGTON else 0.0
+    junctions = junction_part(sheet, transistor.h_fe, transistor.beta_r, inner)
+    v_sat = rise_with_current(transistor.v_ce_sat, s.j_s, transistor.sat_i_c, junctions)
     wide = np.broadcast_arrays(drive, v_sat, s.h_fe, box.v_cc, box.r_load, box.t)
     found = np.array(wide[1])
     weak = drive < sheet * load_current(box.v_cc, v_sat, box.r_load, s.i_input)
@@ -167,14 +178,16 @@ def _input_off(brief: Brief) -> float:
 
 
 def _off_current(coupler: Coupler, box: Vertices, branch: LedBranch, s: Stage) -> Array:
-    """Collector current when off [A]: dark current, and what little light is left times CTR."""
+    """Collector current when off [A]: dark current, and what the light that is left adds to it.
+
+    Below the CTR curve the light counts by the curve's first point or by its slope, whichever gives more.
+    """
     transfer, transistor = parts_of(coupler)
     i_ceo = dark_current(transistor.i_ceo_1, transistor.t_1, transistor.i_ceo_2, transistor.t_2, box.t)
-    ctr_mid = np.sqrt(transfer.ctr_min * transfer.ctr_max)
-    h_fe_cold = box.ctr / (ctr_mid * box.light) * transistor.h_fe
-    dark = dark_current_held(i_ceo, h_fe_cold, box.r_be)
+    dark = dark_current_held(i_ceo, s.eta * s.i_dark, box.r_be)
     g = relative_ctr(transfer, np.clip(branch.i_off, transfer.curve_i[0], transfer.curve_i[-1]))
-    return np.asarray(dark + box.ctr * s.h * g * branch.i_off)
+    both = collector_current(transfer, box.ctr, s.h, np.minimum(s.i_rest, transfer.curve_i[-1]))
+    return np.asarray(dark + np.maximum(box.ctr * s.h * g * branch.i_off, both - i_ceo))
 
 
 def rating_checks(
@@ -203,18 +216,17 @@ def times(brief: Brief, coupler: Coupler, box: Vertices, s: Stage) -> Times:
     carried = box.ctr * s.h
     swung = switching.swing(base, load, transfer, carried, *_fractions(brief, transistor, box, s))
     tenth = switching.steps(base, load, transfer, carried, switching.FIRST_TENTH)
-    delay_on = switching.delay_on(swung, s.eta, s.i_eff, s.i_be)
-    delay_off = switching.delay_off(swung, transistor.tau_s, s.i_eff, s.i_be)
-    with np.errstate(invalid="ignore"):
-        distortion = np.nan_to_num(np.abs(delay_off - delay_on), nan=np.inf, posinf=np.inf)
-    held = switching.storage(transistor.tau_s, s.i_eff, s.i_be, swung.i_sat, swung.hold)
+    tau_s, lit = transistor.tau_s, (s.eta, s.i_eff, s.i_be)
+    late_off = switching.late_off(swung, tau_s, *lit, s.i_rest)
+    late_on = switching.late_on(swung, tau_s, *lit)
+    held = switching.storage(tau_s, s.i_eff, s.i_be, swung.i_sat, swung.hold, s.i_rest)
     return Times(
         edge_on=switching.edge_on(swung.edge, s.i_eff - s.i_be, swung.i_sat),
-        edge_off=switching.time_off(swung.edge, s.i_be),
-        storage=held + switching.time_off(tenth, s.i_be),
-        delay_on=delay_on,
-        delay_off=delay_off,
-        distortion=distortion,
+        edge_off=switching.edge_off(swung.edge, switching.EDGE, s.i_be, s.i_rest),
+        storage=held + switching.edge_off(tenth, switching.FIRST_TENTH, s.i_be, s.i_rest),
+        delay_on=switching.delay_on(swung, *lit),
+        delay_off=switching.delay_off(swung, tau_s, s.i_eff, s.i_be, s.i_rest),
+        distortion=np.maximum(late_off, late_on),
     )
 
 
@@ -227,7 +239,7 @@ def _charged(brief: Brief, transistor: Transistor, box: Vertices, s: Stage) -> t
 
 
 def _fractions(brief: Brief, transistor: Transistor, box: Vertices, s: Stage) -> tuple[Array, Array]:
-    """Share of the swing from rest to the receiver's threshold, turning on and turning off [1]."""
+    """Share of the swing from rest until the receiver has surely seen the change, turning on and turning off [1]."""
     swing = box.v_cc - transistor.v_ce_sat
     if brief.output.circuit is OutputCircuit.PULL_UP:
         on, off = (box.v_cc - s.v_il) / swing, (s.v_ih - transistor.v_ce_sat) / swing

@@ -110,7 +110,8 @@ def _share_words(share: float) -> str:
 def _eaten_words(share: Share) -> str:
     """What eats a check's room, the hungriest first."""
     costs = sorted(share.cost.items(), key=lambda item: -item[1] if math.isfinite(item[1]) else 0.0)
-    return ", ".join(f"{cause} {_share_words(cost)}" for cause, cost in costs if cost > LEAST_EATEN)
+    said = (f"{cause} {_share_words(cost)}" for cause, cost in costs if cost > LEAST_EATEN)
+    return ", ".join(words.replace(" ", "\u00a0") for words in said)
 
 
 def _always(document: Document) -> dict[str, Any]:

@@ -13,11 +13,19 @@ from rich.text import Text
 from optopick.answers import Checked, Nearest
 from optopick.coupler import Assumed
 from optopick.report.labels import POSITIONS, TIMES, check_label
-from optopick.result import NOT_CHOSEN, Check, Design, Objective, Proof, Result, Review, Status
-from optopick.units import format_quantity, format_resistor
-
-TIGHT = 0.1
-"""A check with less room than this is said to bind."""
+from optopick.report.words import (
+    TIGHT,
+    amount,
+    binding,
+    holding,
+    limit_words,
+    ohms_words,
+    proof_words,
+    room_words,
+    set_aside,
+    verdict,
+)
+from optopick.result import Check, Design, Result, Review
 
 
 def result_text(result: Result, title: str) -> RenderableType:
@@ -34,34 +42,16 @@ def _result_parts(result: Result, title: str) -> Iterator[RenderableType]:
         yield from _assumed(result.assumed)
     yield from _rejected(result)
     yield Text()
-    yield Text(_proof(result))
+    said = proof_words(result.status, result.proof)
+    yield Text(f"Proof: {said[:1].lower()}{said[1:]}")
     for caution in result.cautions:
         yield Text()
         yield Text("Caution: " + caution, style="yellow")
 
 
 def _verdict(result: Result) -> str:
-    if result.status is Status.INFEASIBLE:
-        return "No combination in stock holds every limit at every corner."
-    if result.status is Status.UNKNOWN:
-        return "Out of time: no design found, and none ruled out."
-    first, second = result.objective, result.second
-    assert first is not None and second is not None
-    said = f"Least {first.name}: {amount(first.value, first.unit)}; then least {second.name}: "
-    said += amount(second.value, second.unit)
-    if result.status is Status.FEASIBLE:
-        return f"{said} (best found in the time given; {_bounds(first, second)})"
-    return f"{said} (proved)"
-
-
-def _bounds(*objectives: Objective) -> str:
-    parts = [f"no design has {o.name} below {amount(o.bound, o.unit)}" for o in objectives]
-    return " and ".join(parts)
-
-
-def amount(value: float, unit: str) -> str:
-    """A quantity as results show it, four digits."""
-    return format_quantity(value, unit, 4)
+    objectives = [objective for objective in (result.objective, result.second) if objective]
+    return verdict(result.status, objectives, result.review)
 
 
 def next_text(result: Result, place: int) -> RenderableType:
@@ -75,9 +65,9 @@ def next_text(result: Result, place: int) -> RenderableType:
 def checked_text(checked: Checked, title: str, near: Nearest | None = None) -> RenderableType:
     """The whole answer to `check`."""
     review = checked.review
-    failing = len(review.failing)
-    verdict = "Every check holds." if not failing else f"{failing} of {len(review.checks)} checks fail."
-    parts = [Text(title, style="bold"), Text(verdict, style="red" if failing else "green"), Text()]
+    said = holding(review)
+    style = "green" if review.passed else "red"
+    parts = [Text(title, style="bold"), Text(f"{said[:1].upper()}{said[1:]}.", style=style), Text()]
     notes = [Text("Note: " + note) for note in checked.notes]
     warned = [Padding(Text("Caution: " + caution, style="yellow"), (1, 0, 0, 0)) for caution in checked.cautions]
     return Group(*parts, *review_parts(review), *_near(review, near), *notes, *_assumed(checked.assumed), *warned)
@@ -101,9 +91,7 @@ def review_parts(review: Review) -> Iterator[RenderableType]:
     yield _design(review.design)
     yield Text()
     yield _checks(review.checks)
-    binding = [check for check in review.checks if 0 <= check.margin < TIGHT]
-    if binding:
-        said = ", ".join(f"{check_label(c.name)} ({_margin(c)})" for c in sorted(binding, key=lambda c: c.margin))
+    if said := ", ".join(f"{check_label(check.name)} ({room_words(check)})" for check in binding(review)):
         yield Padding(Text("Tightest: " + said), (1, 0, 0, 0))
     yield Text()
     yield _timing(review)
@@ -116,9 +104,9 @@ def _design(design: Design) -> RenderableType:
         ohms = getattr(design, name)
         if ohms is not None:
             count = f"{design.pieces} × " if name == "r_led" and design.pieces > 1 else ""
-            table.add_row(label, Text(count + format_resistor(ohms), style="bold"))
+            table.add_row(label, Text(count + ohms_words(ohms), style="bold"))
         elif name == "r_be":
-            table.add_row(label, "none")
+            table.add_row(label, ohms_words(None))
     if design.reverse_diode:
         table.add_row("Reverse diode", "antiparallel to the LED")
     return table
@@ -131,17 +119,10 @@ def _checks(checks: tuple[Check, ...]) -> RenderableType:
         table.add_column(heading, justify="right", no_wrap=True)
     table.add_column("At", ratio=4)
     for check in checks:
-        limit = Text(f"{'≤' if check.sense == '<=' else '≥'} {amount(check.limit, check.unit)}")
-        room = Text(_margin(check), style=_style(check))
-        table.add_row(check_label(check.name), amount(check.value, check.unit), limit, room, check.corner)
+        room = Text(room_words(check), style=_style(check))
+        value = amount(check.value, check.unit)
+        table.add_row(check_label(check.name), value, limit_words(check), room, check.corner)
     return table
-
-
-def _margin(check: Check) -> str:
-    if check.margin != check.margin:
-        return "fails"
-    shown = f"{100 * check.margin:.0f} %" if abs(check.margin) >= 0.1 else f"{100 * check.margin:.1f} %"
-    return shown if check.passed else f"fails {shown}"
 
 
 def _style(check: Check) -> str:
@@ -179,8 +160,7 @@ def _rejected(result: Result) -> Iterator[RenderableType]:
     if not result.rejected:
         return
     yield Text()
-    told = [rejected for rejected in result.rejected if rejected.reason != NOT_CHOSEN]
-    unsaid = len(result.rejected) - len(told)
+    told, unsaid = set_aside(result.rejected)
     also = f" (and {unsaid} that the brief does not choose)" if unsaid else ""
     yield Text(f"Set aside: {len(told)} of the table's couplers{also}", style="bold")
     table = Table(box=None, show_header=False, padding=(0, 2, 0, 0))
@@ -189,15 +169,3 @@ def _rejected(result: Result) -> Iterator[RenderableType]:
     for rejected in told:
         table.add_row(rejected.part, rejected.reason)
     yield table
-
-
-def _proof(result: Result) -> str:
-    proof: Proof = result.proof
-    how = f"{proof.solves} solver calls, {proof.decided_by_ranges} settled by ranges alone, {proof.seconds:.2g} s"
-    claim = {
-        Status.OPTIMAL: "no other does better; re-checked from the physics at every corner",
-        Status.FEASIBLE: "re-checked from the physics at every corner, not proved best",
-        Status.INFEASIBLE: "none holds every limit",
-        Status.UNKNOWN: "not decided",
-    }[result.status]
-    return f"Proof: of {proof.combinations:,} combinations in stock {claim} ({how}; {proof.solver})."

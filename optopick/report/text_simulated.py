@@ -9,7 +9,7 @@ from rich.table import Table
 from rich.text import Text
 
 from optopick.report.labels import TIMES
-from optopick.report.text import amount
+from optopick.report.words import amount
 from optopick.simulate.design import Simulated, Simulation
 
 

@@ -11,7 +11,7 @@ from rich.table import Table
 from rich.text import Text
 
 from optopick.answers import Fitted, FittedTime, Gap, TableCheck
-from optopick.report.text import amount
+from optopick.report.words import amount
 
 SHOWN_VALUES = 3
 """Different values of one gap that the terminal lists; JSON has them row by row."""

@@ -12,9 +12,9 @@ from rich.text import Text
 
 from optopick.answers import CAUSES, Change, Front, Ranked, Ranking, Share, Sweep, Why, Worth, Yield
 from optopick.report.labels import check_label
-from optopick.report.text import TIGHT, amount
+from optopick.report.words import amount, binding, margin_words, ohms_words
 from optopick.result import Design, Rejected
-from optopick.units import format_quantity, format_resistor
+from optopick.units import format_quantity
 
 
 def ranking_text(ranking: Ranking, title: str, top: int | None) -> RenderableType:
@@ -55,7 +55,7 @@ def _ranking_table(ranked: Sequence[Ranked]) -> RenderableType:
             amount(one.objective.value, one.objective.unit),
             amount(one.second.value, one.second.unit),
             values_text(one.review.design),
-            f"{check_label(tight.name)} {100 * tight.margin:.0f} %",
+            f"{check_label(tight.name)} {margin_words(tight.margin, 0)}",
             "–" if withstand is None else amount(withstand, "V"),
             "–" if one.coupler.price is None else f"{one.coupler.price:g}",
         )
@@ -65,7 +65,7 @@ def _ranking_table(ranked: Sequence[Ranked]) -> RenderableType:
 def values_text(design: Design) -> str:
     """The four resistors on one line, a dash where a position stays empty."""
     values = (design.r_led, design.r_load, design.r_be, design.r_shunt)
-    texts = ["–" if ohms is None else format_resistor(ohms) for ohms in values]
+    texts = ["–" if ohms is None else ohms_words(ohms) for ohms in values]
     if design.pieces > 1:
         texts[0] = f"{design.pieces}×{texts[0]}"
     return " / ".join(texts)
@@ -108,10 +108,9 @@ def why_text(why: Why, title: str) -> RenderableType:
     if why.result is not None and why.result.objective is not None:
         objective = why.result.objective
         parts.append(Text(f"A design exists: least {objective.name} {amount(objective.value, objective.unit)}."))
-        checks = why.result.review.checks if why.result.review else ()
-        tight = sorted((check for check in checks if check.margin < TIGHT), key=lambda check: check.margin)
+        tight = binding(why.result.review) if why.result.review else ()
         if tight:
-            said = ", ".join(f"{check_label(check.name)} {100 * check.margin:.1f} %" for check in tight)
+            said = ", ".join(f"{check_label(check.name)} {margin_words(check.margin)}" for check in tight)
             parts.append(Text("What binds, with the room left: " + said))
         parts.append(Padding(_worths(why.worth, objective.unit), (1, 0, 0, 0)))
         return Group(*parts)
@@ -173,8 +172,10 @@ def budget_text(shares: Sequence[Share]) -> RenderableType:
 
 
 def _percent(share: float) -> str:
-    if math.isnan(share):
+    if math.isnan(share) or share == -math.inf:
         return "–"
+    if share == math.inf:
+        return "∞"
     return "0" if abs(share) < 5e-4 else f"{100 * share:.0f}" if abs(share) >= 0.1 else f"{100 * share:.1f}"
 
 
@@ -199,7 +200,7 @@ def sweep_text(sweep: Sweep, title: str) -> RenderableType:
         marked = "chosen" if step.ohms == sweep.chosen else ""
         failing = ", ".join(check_label(check.name) for check in step.worst.failing)
         table.add_row(
-            "none" if step.ohms is None else unbroken(format_resistor(step.ohms)),
+            unbroken(ohms_words(step.ohms)),
             *(short(value) for value in (timing.edge_on, timing.edge_off, timing.delay_on, timing.delay_off)),
             short(max(typical.edge_on, typical.edge_off)),
             f"{margins[0].value:.3g}" if margins else "–",
@@ -230,7 +231,7 @@ def yield_text(drawn: Yield, title: str) -> RenderableType:
     table.add_column("Room from -100 % to 300 %", no_wrap=True)
     for passing in drawn.checks:
         share = f"{100 * passing.passed / drawn.count:.4f} %"
-        table.add_row(check_label(passing.check), share, f"{100 * passing.least:.1f} %", _bars(passing.histogram))
+        table.add_row(check_label(passing.check), share, margin_words(passing.least, 1), _bars(passing.histogram))
     said = f"{drawn.good:,} of {drawn.count:,} random units pass every check ({100 * drawn.good / drawn.count:.4f} %)."
     return Group(
         Text(title, style="bold"), Text(said, style="green" if drawn.good == drawn.count else "red"), Text(), table

@@ -30,8 +30,24 @@ def room_words(check: Check) -> str:
     """The room left over the limit, or that the check fails and by how much."""
     if math.isnan(check.margin) or check.margin == -math.inf:
         return "fails"
-    shown = f"{100 * check.margin:.0f} %" if abs(check.margin) >= TIGHT else f"{100 * check.margin:.1f} %"
+    shown = margin_words(check.margin)
     return shown if check.passed else f"fails {shown}"
+
+
+def margin_words(margin: float, digits: int | None = None) -> str:
+    """A room [1] as a percentage, a dash where there is none at all; digits: after the point, else one if tight."""
+    if math.isnan(margin) or margin == -math.inf:
+        return "–"
+    if margin == math.inf:
+        return "∞ %"
+    places = (0 if abs(margin) >= TIGHT else 1) if digits is None else digits
+    return f"{round(100 * margin, places) + 0.0:.{places}f} %"  # plus zero: no "-0.0"
+
+
+def binding(review: Review) -> tuple[Check, ...]:
+    """The checks that hold with little room, the tightest first."""
+    tight = (check for check in review.checks if check.passed and check.margin < TIGHT)
+    return tuple(sorted(tight, key=lambda check: check.margin))
 
 
 def ohms_words(ohms: float | None) -> str:
@@ -49,21 +65,23 @@ def verdict(status: Status | None, objectives: Sequence[Objective], review: Revi
     if status is Status.UNKNOWN:
         return "Out of time: no design found, and none ruled out."
     if status is None:
-        return _given(review)
+        return f"The given design: {holding(review)}."
     said = "; then ".join(f"least {goal.name}: {amount(goal.value, goal.unit)}" for goal in objectives)
     said = said[:1].upper() + said[1:]
     if status is Status.FEASIBLE:
         bounds = " and ".join(f"no design has {o.name} below {amount(o.bound, o.unit)}" for o in objectives)
-        return f"{said} (best found in the time given; {bounds})."
-    return f"{said} (proved)."
+        return f"{said} (best found in the time given; {bounds})"
+    return f"{said} (proved)"
 
 
-def _given(review: Review | None) -> str:
-    """The answer for a design that was given, not sought."""
-    failing = len(review.failing) if review else 0
-    if review is None or not failing:
-        return "Every check of the given design holds."
-    return f"{failing} of {len(review.checks)} checks of the given design fail."
+def holding(review: Review | None) -> str:
+    """Whether the checks hold."""
+    return "every check holds" if review is None or review.passed else _failing(review)
+
+
+def _failing(review: Review) -> str:
+    failing = len(review.failing)
+    return f"{failing} of {len(review.checks)} checks {'fails' if failing == 1 else 'fail'}"
 
 
 def proof_words(status: Status, proof: Proof, *, timed: bool = True) -> str:
@@ -90,8 +108,7 @@ def standing(review: Review) -> str:
     told = f"{check_label(least.name)} {room_words(least)}"
     if review.passed:
         return f"all checks hold; tightest: {told}"
-    failing = len(review.failing)
-    return f"{failing} of {len(review.checks)} checks {'fails' if failing == 1 else 'fail'}; worst: {told}"
+    return f"{_failing(review)}; worst: {told}"
 
 
 def set_aside(rejected: Sequence[Rejected]) -> tuple[tuple[Rejected, ...], int]:

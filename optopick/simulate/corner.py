@@ -75,7 +75,7 @@ def closed_form(brief: Brief, coupler: Coupler, corner: Corner) -> PulseTimes:
     box, branch = _as_vertex(coupler, corner)
     # a supply below the output's own voltage has no times: not a number there, endless here
     with np.errstate(invalid="ignore"):
-        found = times(brief, coupler, box, stage(brief, coupler, box, branch))
+        found = times(brief, coupler, box, stage(brief, coupler, box, branch, corner.dark))
     return PulseTimes(**{name: float(np.nan_to_num(getattr(found, name), nan=np.inf, posinf=np.inf)) for name in TIMES})
 
 
@@ -95,8 +95,7 @@ def typical_corner(brief: Brief, coupler: Coupler, design: Design) -> Corner:
 def worst_corners(brief: Brief, coupler: Coupler, design: Design) -> dict[str, Corner]:
     """For each of TIMES the corner at which the formulas find it longest, of all vertices of the uncertainty box.
 
-    The formulas know neither dark current nor light left in the dark LED: both are at the end that makes the time
-    longer.
+    Dark current and light left in the dark LED are at the end that makes the time longer.
     """
     box = vertices(brief, coupler, design)
     branch = led_branch(brief, coupler, box)

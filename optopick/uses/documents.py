@@ -2,11 +2,12 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from dataclasses import replace
 from importlib.metadata import version
 from pathlib import Path
 
+from optopick.answers import Front, Ranking, Sweep
 from optopick.brief import Brief
 from optopick.coupler import Coupler
 from optopick.report.as_json import dumps, result_object
@@ -16,6 +17,7 @@ from optopick.report.netlist import netlist
 from optopick.report.page import page
 from optopick.report.plots import figure_bytes, front_figure, sweep_figure
 from optopick.report.schematic import schematic_svg
+from optopick.report.styles import standalone
 from optopick.result import Design, Result
 from optopick.simulate.corner import typical_corner
 from optopick.simulate.design import simulate_all, simulate_pattern
@@ -41,9 +43,9 @@ def review_files(brief: Brief, date: str, progress: Progress = quiet) -> tuple[R
     if result.design is None or coupler is None:
         document = replace(document, why=why(brief, progress=progress))
         return result, {"review.html": page(document), "design.json": dumps(result_object(result))}
-    return result, _files(
-        brief, coupler, result.design, _with_parts(document, brief, coupler, result, progress), result
-    )
+    sweeps = _sweeps(brief, coupler, result.design)
+    document = _with_parts(document, brief, coupler, result.design, sweeps, progress)
+    return result, _files(brief, coupler, result, document, sweeps)
 
 
 def _inputs(brief: Brief) -> tuple[InputFile, InputFile]:
@@ -52,19 +54,35 @@ def _inputs(brief: Brief) -> tuple[InputFile, InputFile]:
     return first, second
 
 
-def _with_parts(document: Document, brief: Brief, coupler: Coupler, result: Result, progress: Progress) -> Document:
+def _sweeps(brief: Brief, coupler: Coupler, design: Design) -> tuple[Sweep, ...]:
+    """The load and the base resistor over their stock; the LED resistor where the load has one value only."""
+    stock = brief.stock
+    first = "r_load" if len(stock.r_load.values) > 1 else "r_led"
+    positions = [first, *(["r_be"] if stock.r_be and coupler.base_pin else [])]
+    sweeps = (sweep(brief, coupler, design, position) for position in positions)
+    return tuple(swept for swept in sweeps if len(swept.steps) > 1)
+
+
+def _with_parts(
+    document: Document,
+    brief: Brief,
+    coupler: Coupler,
+    design: Design,
+    sweeps: Sequence[Sweep],
+    progress: Progress,
+) -> Document:
     """The document with everything a design allows: ranking, front, budget, walks, waveforms."""
-    design = result.design
-    assert design is not None
-    goals = (brief.goal.minimize, brief.goal.then)
-    front = tradeoff(brief, goals, points=FRONT_POINTS, progress=progress)
     ranking = rank(brief, progress=progress)
+    front = _front(brief, ranking, progress)
     document = replace(
         document,
         ranking=ranking,
         front=front,
         budget=budget(brief, coupler, design),
-        walks=(*_walks(brief, coupler, design), Walk("front", tuple(point.review for point in front.points), None)),
+        walks=(
+            *(_walk(swept) for swept in sweeps),
+            Walk("front", tuple(point.review for point in front.points), None),
+        ),
     )
     try:
         simulation = simulate_all(brief, coupler, design)
@@ -74,29 +92,33 @@ def _with_parts(document: Document, brief: Brief, coupler: Coupler, result: Resu
     return replace(document, simulation=simulation, pattern=pattern)
 
 
-def _walks(brief: Brief, coupler: Coupler, design: Design) -> tuple[Walk, ...]:
-    """The load and the base resistor over their stock."""
-    positions = ["r_load", *(["r_be"] if brief.stock.r_be and coupler.base_pin else [])]
-    walks = []
-    for position in positions:
-        steps = sweep(brief, coupler, design, position).steps
-        chosen = next((k for k, step in enumerate(steps) if step.ohms == getattr(design, position)), None)
-        walks.append(Walk(position, tuple(step.worst for step in steps), chosen))
-    return tuple(walks)
+def _front(brief: Brief, ranking: Ranking, progress: Progress) -> Front:
+    """The trade-off front; couplers that the ranking proves to have no design take no part in it."""
+    goals = (brief.goal.minimize, brief.goal.then)
+    designed = sorted((one.coupler for one in ranking.ranked), key=lambda coupler: coupler.row)
+    couplers = designed if ranking.complete else None
+    return tradeoff(brief, goals, points=FRONT_POINTS, couplers=couplers, progress=progress)
+
+
+def _walk(swept: Sweep) -> Walk:
+    chosen = next((k for k, step in enumerate(swept.steps) if step.ohms == swept.chosen), None)
+    return Walk(swept.position, tuple(step.worst for step in swept.steps), chosen)
 
 
 def _files(
-    brief: Brief, coupler: Coupler, design: Design, document: Document, result: Result
+    brief: Brief, coupler: Coupler, result: Result, document: Document, sweeps: Sequence[Sweep]
 ) -> Mapping[str, bytes | str]:
-    schematic = schematic_svg(brief, coupler, design)
+    design = result.design
+    assert design is not None
     files: dict[str, bytes | str] = {
         "review.html": page(document),
         "design.json": dumps(result_object(result)),
         "bom.csv": bill_csv(brief, coupler, design),
-        "schematic.svg": schematic,
+        "schematic.svg": standalone(schematic_svg(brief, coupler, design)),
     }
-    swept = sweep_figure(sweep(brief, coupler, design, "r_load"), brief.title)
-    pictures = {"sweep": swept} | ({"front": front_figure(document.front, brief.title)} if document.front else {})
+    pictures = {"sweep": sweep_figure(sweeps[0], brief.title)} if sweeps else {}
+    if document.front:
+        pictures["front"] = front_figure(document.front, brief.title)
     for name, figure in pictures.items():
         files |= {f"{name}.{kind}": figure_bytes(figure, kind) for kind in ("svg", "png")}
     if coupler.transistor is not None:

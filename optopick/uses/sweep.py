@@ -16,13 +16,12 @@ POSITIONS = ("r_led", "r_load", "r_be", "r_shunt")
 
 
 def sweep(brief: Brief, coupler: Coupler, design: Design, position: str) -> Sweep:
-    """The design with `position` at every value of its stock (and empty, where it may be).
+    """The design with `position` at every value of its stock (and empty, where it may be: that is the last step).
 
     Raises InputError for a position that the brief has no stock for, or whose pin the coupler lacks.
     """
     stock = _stock(brief, coupler, position)
-    values: list[float | None] = [None] if stock.absent else []
-    values += stock.values
+    values = [*stock.values, *([None] if stock.absent else [])]
     steps = []
     for ohms in values:
         changed = replace(design, **{position: ohms})  # type: ignore[arg-type]

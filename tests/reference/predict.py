@@ -133,10 +133,10 @@ def predicted(sheet: Sheet, x: Links, constants: SwitchingConstants) -> Predicte
     held = switching.storage(constants.tau_s, x.i_f, i_be, swung.i_sat, swung.hold)
     return Predicted(
         edge_on=switching.edge_on(swung.edge, x.i_f - i_be, swung.i_sat),
-        edge_off=switching.time_off(swung.edge, i_be),
-        storage=held + switching.time_off(tenth, i_be),
+        edge_off=switching.edge_off(swung.edge, switching.EDGE, i_be, 0.0),
+        storage=held + switching.edge_off(tenth, switching.FIRST_TENTH, i_be, 0.0),
         delay_on=switching.delay_on(swung, eta, x.i_f, i_be),
-        delay_off=switching.delay_off(swung, constants.tau_s, x.i_f, i_be),
+        delay_off=switching.delay_off(swung, constants.tau_s, x.i_f, i_be, 0.0),
     )
 
 
