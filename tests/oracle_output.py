@@ -13,7 +13,7 @@ from oracle_led import K_OVER_Q, KELVIN, Held, Worn, above, below, chip_share, r
 from optopick.brief import Brief, OutputCircuit
 from optopick.coupler import Coupler, Kind, Transfer
 
-HELD_OFF = 0.4
+HELD_OFF = 0.1
 
 
 def _powers(transfer: Transfer) -> tuple[np.ndarray, np.ndarray, np.ndarray]:
@@ -203,7 +203,12 @@ def leakage(coupler: Coupler, x: Lot, i_off, r_be) -> np.ndarray:
     dark = np.where(base_leak * r_be < HELD_OFF, base_leak, alone)
     g = relative(transfer, np.clip(i_off, transfer.curve_i[0], transfer.curve_i[-1]))
     together = carried(transfer, x.ctr, x.h, np.minimum(i_off + dark_as_light(coupler, x), transfer.curve_i[-1]))
-    return dark + np.maximum(x.ctr * x.h * g * i_off, together - alone)
+    return (dark + np.maximum(x.ctr * x.h * g * i_off, together - alone)) * early(x)
+
+
+def early(x: Lot) -> np.ndarray:
+    """Growth of a current from 5 V to the full supply, by an Early voltage of 50 V."""
+    return np.maximum((x.v_cc + 45.0) / 50.0, 1.0)
 
 
 def level_off(brief: Brief, coupler: Coupler, x: Lot, i_off, r_load, r_be) -> tuple[str, Held]:

@@ -11,7 +11,7 @@ from typing import NamedTuple
 
 import numpy as np
 from oracle_led import K_OVER_Q, KELVIN, Held, below
-from oracle_output import Lot, base_taken, dark_as_light, load_of, needed, pulled_up
+from oracle_output import Lot, base_taken, dark_as_light, early, load_of, needed, pulled_up
 
 from optopick.brief import Brief
 from optopick.coupler import Coupler
@@ -150,7 +150,7 @@ class Times(NamedTuple):
 
 def times(coupler: Coupler, x: Lot, s: Swing, i_eff, i_off, r_be) -> Times:
     """i_off: LED current left in the dark."""
-    b, rest = base_taken(x, r_be), i_off + dark_as_light(coupler, x)
+    b, rest = base_taken(x, r_be), (i_off + dark_as_light(coupler, x)) * early(x)
     n = i_eff - b
     held = saturated_for(coupler, s, i_eff, s.hold * b - rest)
     enough = np.maximum(n, s.i_sat)
@@ -210,8 +210,10 @@ def slide(w: Way, cut: tuple[float, float, int], b, rest) -> np.ndarray:
     up = np.power(kept + (1 - kept) * x[1:], power) - np.power(kept, power)
     down = np.power(kept + (1 - kept) * x[:-1], power) - np.power(kept, power)
     longer = np.maximum(up / down / np.power(x[1:] / x[:-1], power), 1.0)
+    # charge goes with the load's share, so that a step holds more of it for each LED current the flatter the law there
+    slower = np.maximum((1 - kept) * np.diff(np.power(x, power), axis=0) / (up - down), 1.0)
     pull = np.maximum(-goal, 0.0)
-    return np.maximum(w.tau * np.log(longer * (w.high + pull) / (w.low + pull)), w.node).sum(axis=0)
+    return np.maximum(w.tau * slower * np.log(longer * (w.high + pull) / (w.low + pull)), w.node).sum(axis=0)
 
 
 def to_threshold(w: Way, lag, n) -> np.ndarray:

@@ -13,7 +13,7 @@ from optopick.physics import switching
 from optopick.physics.ageing import light_left
 from optopick.physics.charge import Base, Load
 from optopick.physics.heat import derated, output_dissipation, resistor_derated
-from optopick.physics.leakage import dark_current, dark_current_held
+from optopick.physics.leakage import dark_current, dark_current_held, raised
 from optopick.physics.led import branch_current, forward_voltage, led_current, led_current_of_leak
 from optopick.physics.saturation import load_current, overdrive_to_hold, rise_with_current, v_ce_on
 from optopick.physics.transfer import base_led_current, collector_current, led_current_for
@@ -233,6 +233,7 @@ def test_levels():
     assert falls(load_current(5.0, np.linspace(0, 4, 20), 1e3))
     assert falls(load_current(5.0, 0.2, SWEEPS["r_load"]))
     assert rises(dark_current(50e-9, 25.0, 20e-6, 100.0, np.linspace(-40, 110, 40)))
+    assert rises(raised(np.linspace(5.1, 30, 20)))
     held = dark_current_held(20e-6, 0.2e-6, np.geomspace(1e4, 1e8, 40))
     assert set(held) == {0.2e-6, 20e-6}
     assert np.all(np.diff(held) >= 0)

@@ -8,7 +8,7 @@ import pytest
 from optopick.coupler import Ageing, Rating
 from optopick.physics.ageing import acceleration_factor, light_left
 from optopick.physics.heat import derated, output_dissipation, resistor_derated
-from optopick.physics.leakage import dark_current, dark_current_held
+from optopick.physics.leakage import dark_current, dark_current_held, raised
 
 WEAR = Ageing(loss=0.1, time=1000.0, current=20e-3, temperature=100.0, n=2.0, e_a=0.43)
 
@@ -20,8 +20,8 @@ def test_dark_current_passes_both_points():
 
 
 def test_a_base_resistor_holds_the_leakage_down_until_it_carries_too_much():
-    """Of 0.2 uA into the base 1 Mohm takes 0.2 V of it, 2 Mohm just 0.4 V."""
-    found = dark_current_held(20e-6, 0.2e-6, np.array([1e6, 1.999e6, 2.001e6, np.inf]))
+    """Of 0.2 uA into the base 0.1 Mohm leaves 0.02 V, 0.5 Mohm just the 0.1 V."""
+    found = dark_current_held(20e-6, 0.2e-6, np.array([1e5, 4.99e5, 5.01e5, np.inf]))
     assert found == pytest.approx([0.2e-6, 0.2e-6, 20e-6, 20e-6], rel=1e-12)
 
 
@@ -66,3 +66,8 @@ def test_everything_broadcasts():
     assert output_dissipation(t + 50.0, i * 1e6, 1e-3).shape == (5, 3)
     assert resistor_derated(i, t).shape == (5, 3)
     assert derated(Rating(0.1, 60.0, 2e-3), t).shape == (5, 1)
+
+
+def test_the_dark_current_grows_with_the_supply():
+    """By an Early voltage of 50 V from the sheet's 5 V up; never below the sheet's figure."""
+    assert raised(np.array([3.3, 5.0, 15.0, 24.0])) == pytest.approx([1.0, 1.0, 1.2, 1.38])

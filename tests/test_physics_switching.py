@@ -234,7 +234,8 @@ def test_an_edge_of_a_gain_that_falls_with_the_current(rest, power):
     step = Steps(*(np.array([v]) for v in (TAU, *tops, 1.0, 0.0)), lag=np.asarray(0.0))
     kept = rest ** (1 / power)
     first, last = ((kept + x * (1 - kept)) ** power for x in (0.1, 0.9))
-    wanted = TAU * np.log((last - rest) / (first - rest))
+    slower = 0.8 * (1 - kept) / (last - first) / (0.8 / (tops[1] - tops[0]))
+    wanted = TAU * slower * np.log((last - rest) / (first - rest))
     assert switching.edge_off(step, Cut(0.1, 0.9, 1), 0.0, rest) == pytest.approx(wanted, rel=1e-9)
 
 

@@ -15,6 +15,7 @@ from scipy.constants import Boltzmann, elementary_charge
 
 from optopick.coupler import Ageing, Kind, Led, Logic, Rating, Transfer
 from optopick.physics.charge import J_V_BE, M_J, V_J, Base, Load, base_charge, base_voltage, junction_charge
+from optopick.physics.leakage import V_EARLY, V_SHEET
 from optopick.physics.led import forward_voltage, thermal_voltage
 from optopick.physics.saturation import saturation_shape
 from optopick.physics.switching import Cut, Steps
@@ -42,7 +43,7 @@ SYMBOLS = {
     **{"r_led": 560.0, "r_shunt": 2200.0, "v": 5.0, "v_f": 1.17, "v_t": float(thermal_voltage(61.0))},
     **{"i": 6e-3, "e_a": 0.43, "k_ev": Boltzmann / elementary_charge, "t_ref": 85.0},
     **{"life": 87660.0, "lit": 0.4, "ctr": 0.8, "h": 0.9, "i_eff": 3e-3, "eta": 2e-3, "v_be": 0.65, "r_be": 150e3},
-    **{"v_cc": 5.0, "v_ce": 0.3, "r_load": 4700.0, "i_input": 1e-4, "v_ce_sat": 0.25, "beta_r": 5.0, "h_fe": 300.0},
+    **{"v_cc": 15.0, "v_ce": 0.3, "r_load": 4700.0, "i_input": 1e-4, "v_ce_sat": 0.25, "beta_r": 5.0, "h_fe": 300.0},
     **{
         "overdrive": 1.6,
         "i_1": 50e-9,
@@ -55,6 +56,7 @@ SYMBOLS = {
     },
     **{"c_load": 50e-12, "tau": 9e-6, "i_be": 4e-4, "i_sat": 9e-4, "i_a": 2e-4, "i_b": 9e-4, "hold": 0.95, "n": 2.6e-3},
     **{"tau_s": 12e-6, "fraction": 0.7, "slope": 2e-3, "above": 25.0, "power": 0.25, "least": 1e-7, "lag": 3e-14},
+    **{"v_sheet": V_SHEET, "v_early": V_EARLY},
     **{"j": 3e-4, "j_v_be": J_V_BE, "v_j": V_J, "m_j": M_J, "c_0": BASE.c_cb, "x": 0.4, "charge": 2e-11},
     **{"transit": BASE.transit, "c_be": BASE.c_be, "j_s": LOAD.j_s},
     **{"loss": AGEING.loss, "time": AGEING.time, "t_plh": LOGIC.t_plh, "t_r": LOGIC.t_r, "c_out": LOGIC.c_out},

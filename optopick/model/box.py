@@ -38,7 +38,9 @@ class Box:
         return int(np.prod(self.model.sizes))
 
     def take(self, i: np.ndarray, j: np.ndarray, m: np.ndarray) -> Box:
-        """The same with only some of its values."""
+        """The same with only some of its values, in ascending order."""
+        if all(len(kept) == n for kept, n in zip((i, j, m), self.model.sizes, strict=True)):
+            return self
         indices = tuple(own[kept] for own, kept in zip(self.indices, (i, j, m), strict=True))
         rows = self.rows.take(i, j, m)
         return Box(self.model.take(i, j, m), indices, self.cuts.take(i, j, m), rows)
@@ -75,6 +77,10 @@ def narrowed(box: Box, ask: Ask) -> Box | None:
 
 def tightened(box: Box, ask: Ask) -> Box | None:
     """The box with its ranges tightened until nothing changes; the delays' rows sharpen as it shrinks."""
+    live, _ = tighten(stack([box.model.ready_rows(ask), box.cuts], box.model.sizes), everything(box.model.sizes))
+    if live.empty:
+        return None
+    box = box.take(*live.indices)
     while True:
         rows = stack([box.model.rows(ask), box.cuts], box.model.sizes)
         live, rows = tighten(rows, everything(box.model.sizes))

@@ -18,7 +18,7 @@ from optopick.model.led_candidates import DARK_FRACTION, LedCandidates, led_cand
 from optopick.model.taking import taken
 from optopick.physics.charge import Base, Load
 from optopick.physics.heat import derated, output_dissipation, resistor_derated
-from optopick.physics.leakage import dark_current, dark_current_held
+from optopick.physics.leakage import dark_current, dark_current_held, raised
 from optopick.physics.saturation import junction_part, load_current, overdrive_to_hold, rise_with_current
 from optopick.physics.switching import Swing, swing
 from optopick.physics.transfer import base_led_current, collector_current, led_current_for, relative_ctr
@@ -119,7 +119,7 @@ def candidates(brief: Brief, coupler: Coupler) -> Candidates:
         i_low=led.i_min[c.t_index] * led.light,
         i_high=led.i_max[c.t_index],
         i_lit_off=_lit_off(transfer, transistor, c, i_off, i_dark),
-        i_rest=i_off + i_dark,
+        i_rest=(i_off + i_dark) * raised(c.v_cc),
         total_room=derated(coupler.p_total, t),
         tau_s=transistor.tau_s,
         i_input_off=input_current(brief, on=False),
@@ -139,7 +139,7 @@ def _lit_off(transfer: Transfer, transistor: Transistor, c: CornerList, i_off: A
     last = transfer.curve_i[-1]
     flat = c.ctr * c.h * relative_ctr(transfer, np.clip(i_off, transfer.curve_i[0], last)) * i_off
     both = collector_current(transfer, c.ctr, c.h, np.minimum(i_off + i_dark, last))
-    return np.asarray(np.maximum(flat, both - _dark(transistor, c)))
+    return np.asarray(np.maximum(flat, both - _dark(transistor, c)) * raised(c.v_cc))
 
 
 def input_current(brief: Brief, on: bool) -> float:
@@ -272,7 +272,7 @@ def _base(brief: Brief, coupler: Coupler, transistor: Transistor, c: CornerList,
         r_be=values,
         i_be_low=base_led_current(c.v_be, high, c.eta),
         i_be_high=base_led_current(c.v_be, low, c.eta),
-        leak=np.maximum(*leak),
+        leak=np.maximum(*leak) * raised(c.v_cc),
         keep={"r_be_power": np.asarray((c.v_be**2 / low <= resistor_derated(rating, c.t)).all(axis=0))},
     )
 
@@ -280,7 +280,7 @@ def _base(brief: Brief, coupler: Coupler, transistor: Transistor, c: CornerList,
 def _no_base(transistor: Transistor, c: CornerList) -> BaseCandidates:
     """The one choice of a coupler whose base is not brought out, or of a brief without that position."""
     none = np.zeros((c.count, 1))
-    return BaseCandidates(np.array([np.inf]), none, none, _dark(transistor, c), {})
+    return BaseCandidates(np.array([np.inf]), none, none, _dark(transistor, c) * raised(c.v_cc), {})
 
 
 def _dark(transistor: Transistor, c: CornerList) -> Array:

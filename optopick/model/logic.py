@@ -73,6 +73,10 @@ class LogicModel:
         """The values that hold the limits on one value alone."""
         return holding((self.led.keep, self.pulls.keep, {}), self.sizes, dropped)
 
+    def ready_rows(self, ask: Ask) -> Rows:
+        """All of them."""
+        return self.rows(ask)
+
     def rows(self, ask: Ask) -> Rows:
         """Every linear row of what is asked; all exact."""
         return stack(self._blocks(ask), self.sizes)

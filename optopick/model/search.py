@@ -17,6 +17,9 @@ from optopick.model.solver import Answer, Clock, Outcome, Problem, solve
 STEP = 1e-6
 """A design counts as better only if it is so by this share; the proof's resolution."""
 
+NEVER = 1e6
+"""Seconds that no time that is a goal may reach: an output that never gets there is no answer."""
+
 LEAF = 4000
 """A box with more combinations is split before the solver sees it, where rows only bound the delays."""
 
@@ -82,16 +85,23 @@ def exists(model: LinkModel, ask: Ask, clock: Clock) -> bool | None:
     return True if found else (None if outcome.answer is Answer.OUT_OF_TIME else False)
 
 
+def refuted(model: LinkModel, ask: Ask) -> bool:
+    """Whether ranges alone show that the coupler has no design within `ask`: quick, and silent where they do not."""
+    box = whole_box(model, ask, stack([], model.sizes))
+    return box is None or tightened(box, ask) is None
+
+
 class _Search:
     """`goal` None asks for any design."""
 
     def __init__(
         self, model: LinkModel, goal: GoalName | None, ask: Ask, clock: Clock, without: Sequence[Choice] = ()
     ) -> None:
-        self.goal, self.ask, self.clock = goal or GoalName.POWER, ask, clock
+        self.goal, self.clock = goal or GoalName.POWER, clock
         self.any = goal is None
+        self.ask = ask if self.goal is GoalName.POWER else ask.limited(self.goal, NEVER)
         self.boxes: list[Box] = []
-        self.box = whole_box(model, ask, stack([_only(choice, model.sizes) for choice in without], model.sizes))
+        self.box = whole_box(model, self.ask, stack([_only(choice, model.sizes) for choice in without], model.sizes))
         self.scale = float(sum(np.median(part) for part in model.power))
 
     def run(self, below: float) -> Found:

@@ -101,7 +101,11 @@ class TransistorModel:
 
     def rows(self, ask: Ask) -> Rows:
         """Every linear row of what is asked; for delays a relaxation, the closer the fewer values are left."""
-        blocks = [*self._static(ask.dropped), *self._edges(ask), *self._delays(ask)]
+        return stack([self.ready_rows(ask), *self._edges(ask), *self._delays(ask)], self.sizes)
+
+    def ready_rows(self, ask: Ask) -> Rows:
+        """The linear rows of what is asked but for those on times."""
+        blocks = list(self._static(ask.dropped))
         if np.isfinite(ask.power):
             p, q = self.power
             blocks.append(scaled("power", ask.power - p, -q, np.zeros(self.sizes[2])))
@@ -178,14 +182,14 @@ class TransistorModel:
         """Delay on within `limit` (C, 2, n): the crossing beside the shortest charging."""
         x = self.candidates
         charge = switching.charging(x.load.swing.charge, self._eta, strong.i_low, strong.i_be_high)
-        phi = switching.drive_for_crossing_on(x.load.swing.on, limit - charge)
+        phi = switching.drive_for_crossing_on(x.load.swing.on, limit - charge, switching.NEAR)
         yield scaled("delay_on", x.i_low, -phi.max(axis=1), -x.base.i_be_high)
 
     def _off_rows(self, limit: Array, weak: Extremes) -> Iterator[Rows]:
         """Delay off within `limit` (C, 2, n): the fall beside the shortest storage, and the storage beside the fall."""
         x, swing = self.candidates, self.candidates.load.swing
         held = switching.storage(x.tau_s, weak.i_high, weak.i_be_low, swing.i_sat, swing.hold, weak.i_rest)
-        rho = switching.extraction_for(swing.off, limit - held, weak.i_rest)
+        rho = switching.extraction_for(swing.off, limit - held, weak.i_rest, switching.NEAR)
         yield scaled("delay_off", np.zeros(self.sizes[0]), -rho.max(axis=1), x.base.i_be_low)
         fall = switching.time_off(swing.off, weak.i_be_low, weak.i_rest)
         with np.errstate(invalid="ignore"):
@@ -208,20 +212,20 @@ class TransistorModel:
             return switching.late_off(swing, tau_s, eta, at.i_eff, at.i_be, at.i_rest)
         return switching.late_on(swing, tau_s, eta, at.i_eff, at.i_be)
 
-    def _worst_times(self, family: Family, i: Index, j: Index, m: Index) -> Array:
-        """Times of K designs at every corner and load end, (C, 2, K) [s]."""
+    def _worst_times(self, family: Family, i: Index, swing: switching.Swing, m: Index) -> Array:
+        """Times of K designs at every corner and load end, (C, 2, K) [s]; swing: of their loads."""
         x = self.candidates
         light = (x.i_high if family.more_light_hurts else x.i_low)[:, None, i]
         taken = (x.base.i_be_high if family.more_base_hurts else x.base.i_be_low)[:, None, m]
         at = Point(light, taken, x.i_rest[:, None, i])
-        return self._time(family.name, x.load.swing.taken(j), self._eta, at)
+        return self._time(family.name, swing, self._eta, at)
 
     def scores(self, i: Index, j: Index, m: Index) -> Scores:
         """Worst-case goals of K designs, exactly."""
         x = self.candidates
         swing = x.load.swing.taken(j)
         on = switching.edge_on(swing.edge, x.i_low[:, None, i] - x.base.i_be_high[:, None, m], swing.i_sat)
-        by_name = {family.name: self._worst_times(family, i, j, m).max(axis=(0, 1)) for family in FAMILIES}
+        by_name = {family.name: self._worst_times(family, i, swing, m).max(axis=(0, 1)) for family in FAMILIES}
         p, q = self.power
         return Scores(
             edge=np.maximum(on.max(axis=(0, 1)), by_name["edge_off"]),
@@ -237,9 +241,10 @@ class TransistorModel:
         """
         blocks: list[Rows] = []
         others = _spread(np.arange(self.sizes[2]), STAIRCASES).tolist()
+        swing = self.candidates.load.swing.taken(np.array([j]))
         for family in FAMILIES:
             limit = getattr(ask, family.limit)
-            late = self._worst_times(family, *(np.array([k]) for k in (i, j, m)))[:, :, 0]
+            late = self._worst_times(family, np.array([i]), swing, np.array([m]))[:, :, 0]
             if late.max() > limit:
                 corner, end = (int(k) for k in np.unravel_index(int(late.argmax()), late.shape))
                 blocks.extend(self._staircase(family, limit, (corner, end), j, k) for k in sorted({m, *others}))

@@ -41,6 +41,9 @@ STEPS = 3
 ITERATIONS, CONVERGED = 30, 1e-13
 """Of Newton's method: the most, and the share of the time asked at which it stops."""
 
+NEAR = 1e-3
+"""The same where a bound will do: the method comes from the side on which it asks too little."""
+
 SAFE, LEAST_RISE = 1.0 + 1e-11, 1e-13
 """Factor that keeps a result of Newton's method on the safe side; least drive beyond the highest level [1]."""
 
@@ -162,9 +165,9 @@ def edge_off(s: Steps, cut: Cut, i_be: Real, i_rest: Real) -> Array:
     """Time from share cut.last to share cut.first of the way down to the state of rest [s]; `s` cut by `cut`.
 
     As `time_off`, but where i_rest exceeds hold*i_be by n, at the least hold, the output comes to rest at the share r
-    of the load current that n carries, and each level x becomes r + x*(1 - r). With i going as x^a between the levels,
-    a step's ratio i_high/i_low grows by [(r + x_b*(1 - r))^a - r^a]/[(r + x_a*(1 - r))^a - r^a]*(x_a/x_b)^a, never
-    taken below 1. Broadcasts.
+    of the load current that n carries, and each level x becomes y = r + x*(1 - r). With i going as x^a between the
+    levels, a step's ratio i_high/i_low grows by (y_b^a - r^a)/(y_a^a - r^a)*(x_a/x_b)^a, and its time constant, charge
+    over LED current, by (1 - r)*(x_b^a - x_a^a)/(y_b^a - y_a^a); neither is taken below 1. Broadcasts.
     """
     i_be, rest = np.asarray(i_be), np.asarray(i_rest)
     x = _levels(cut, s.i_low.ndim - 1)
@@ -172,9 +175,11 @@ def edge_off(s: Steps, cut: Cut, i_be: Real, i_rest: Real) -> Array:
     kept = np.clip((rest - s.hold[0] * i_be) / (s.i_high[-1] * x[-1] ** -a), 0.0, 1.0 - 1e-6)
     r = kept ** (1.0 / a)
     above = (r + x * (1.0 - r)) ** a - kept
-    grown = np.maximum(above[1:] / above[:-1] * (x[:-1] / x[1:]) ** a, 1.0)
+    powers = x**a
+    grown = np.maximum(above[1:] / above[:-1] * (powers[:-1] / powers[1:]), 1.0)
+    slower = np.maximum((1.0 - r) * np.diff(powers, axis=0) / np.diff(above, axis=0), 1.0)
     b = np.maximum(s.hold * i_be - rest, 0.0)
-    step = s.tau * np.log((s.i_high + b) / (s.i_low + b) * grown)
+    step = s.tau * slower * np.log((s.i_high + b) / (s.i_low + b) * grown)
     return np.asarray(np.sum(np.maximum(step, s.least), axis=0))
 
 
@@ -236,12 +241,15 @@ def drive_for_edge_on(s: Steps, time: Real, i_sat: Real) -> Array:
     return np.asarray(np.where(share <= 1.0, i_sat * share * SAFE, _least_drive(s, time, 0.0)))
 
 
-def drive_for_crossing_on(s: Steps, time: Real) -> Array:
-    """Least n [A] with crossing_on <= time; infinite for time <= 0. Broadcasts."""
-    return _least_drive(s, time, s.lag)
+def drive_for_crossing_on(s: Steps, time: Real, near: float = CONVERGED) -> Array:
+    """Least n [A] with crossing_on <= time; infinite for time <= 0. Broadcasts.
+
+    near: share of the time by which the answer may ask too little.
+    """
+    return _least_drive(s, time, s.lag, near)
 
 
-def _least_drive(s: Steps, time: Real, lag: Real) -> Array:
+def _least_drive(s: Steps, time: Real, lag: Real, near: float = CONVERGED) -> Array:
     """Least n [A] with time_on + lag/(n*time) <= time, by Newton's method, never below.
 
     The left side is convex and falls with n, so from a point too small the iterates climb to the answer. What the
@@ -257,16 +265,17 @@ def _least_drive(s: Steps, time: Real, lag: Real) -> Array:
         above = n - s.i_high
         drawn = lag / (n * t)
         late = np.maximum(np.sum(tau * np.log1p(width / above), axis=0) + drawn - t, 0.0)
-        if np.all(late <= CONVERGED * t):
+        if np.all(late <= near * t):
             break
         n = n + late / (np.sum(tau * width / (above * (above + width)), axis=0) + drawn / n)
     n = np.where(endless, last * SAFE, n * SAFE)
     return np.asarray(np.where(possible, n, np.inf))
 
 
-def extraction_for(s: Steps, time: Real, i_rest: Real = 0.0) -> Array:
+def extraction_for(s: Steps, time: Real, i_rest: Real = 0.0, near: float = CONVERGED) -> Array:
     """Least i_be [A] with time_off <= time: 0 where none is needed, infinite where none is enough. Broadcasts.
 
+    near: share of the time by which the answer may ask too little.
     By Newton's method, never above: time_off is convex and falls with i_be. The start is what one step alone needs.
     """
     t, rest = np.asarray(time, dtype=float), np.asarray(i_rest, dtype=float)
@@ -280,7 +289,7 @@ def extraction_for(s: Steps, time: Real, i_rest: Real = 0.0) -> Array:
         low = np.maximum(low, TINY * s.i_high)
         step = tau * np.log(high / low)
         late = np.where(possible, np.maximum(np.sum(np.maximum(step, s.least), axis=0) - t, 0.0), 0.0)
-        if np.all(late <= CONVERGED * np.abs(t)):
+        if np.all(late <= near * np.abs(t)):
             break
         slope = np.sum(np.where(step > s.least, tau * s.hold * (high - low) / (low * high), 0.0), axis=0)
         i_be = i_be + late / np.where(slope > 0, slope, np.inf)

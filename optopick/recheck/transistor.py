@@ -12,7 +12,7 @@ from optopick.coupler import Coupler, Kind, Transfer, Transistor
 from optopick.physics import switching
 from optopick.physics.charge import Base, Load
 from optopick.physics.heat import derated, output_dissipation, resistor_derated
-from optopick.physics.leakage import dark_current, dark_current_held
+from optopick.physics.leakage import dark_current, dark_current_held, raised
 from optopick.physics.saturation import junction_part, load_current, rise_with_current, v_ce_on
 from optopick.physics.transfer import (
     base_led_current,
@@ -94,7 +94,7 @@ def stage(brief: Brief, coupler: Coupler, box: Vertices, branch: LedBranch, dark
         i_eff=branch.i_f * branch.light,
         i_be=base_led_current(v_be, box.r_be, eta),
         i_dark=i_dark,
-        i_rest=branch.i_off + i_dark,
+        i_rest=(branch.i_off + i_dark) * raised(box.v_cc),
         i_input=i_input,
         j_s=j_s,
         i_sat=led_current_for(transfer, box.ctr, h, j_s),
@@ -178,7 +178,7 @@ def _input_off(brief: Brief) -> float:
 
 
 def _off_current(coupler: Coupler, box: Vertices, branch: LedBranch, s: Stage) -> Array:
-    """Collector current when off [A]: dark current, and what the light that is left adds to it.
+    """Collector current when off [A]: dark current, and what the light that is left adds to it, both at full supply.
 
     Below the CTR curve the light counts by the curve's first point or by its slope, whichever gives more.
     """
@@ -186,8 +186,9 @@ def _off_current(coupler: Coupler, box: Vertices, branch: LedBranch, s: Stage) -
     i_ceo = dark_current(transistor.i_ceo_1, transistor.t_1, transistor.i_ceo_2, transistor.t_2, box.t)
     dark = dark_current_held(i_ceo, s.eta * s.i_dark, box.r_be)
     g = relative_ctr(transfer, np.clip(branch.i_off, transfer.curve_i[0], transfer.curve_i[-1]))
-    both = collector_current(transfer, box.ctr, s.h, np.minimum(s.i_rest, transfer.curve_i[-1]))
-    return np.asarray(dark + np.maximum(box.ctr * s.h * g * branch.i_off, both - i_ceo))
+    both = collector_current(transfer, box.ctr, s.h, np.minimum(branch.i_off + s.i_dark, transfer.curve_i[-1]))
+    lit = np.maximum(box.ctr * s.h * g * branch.i_off, both - i_ceo)
+    return np.asarray((dark + lit) * raised(box.v_cc))
 
 
 def rating_checks(

@@ -50,12 +50,17 @@ class Vertices:
     def corner(self, margin: Array, flat: int) -> str:
         """The vertex at flat index `flat` of the margins, in words; what makes no difference there goes unsaid."""
         index = np.unravel_index(flat, margin.shape)
-        parts = []
+        here, parts = float(margin[index]), []
         for axis, k in enumerate(index):
             along = margin[tuple(slice(None) if n == axis else at for n, at in enumerate(index))]
-            if not np.allclose(along, margin[index], rtol=1e-9, atol=1e-12, equal_nan=True):
+            if not all(_same(other, here) for other in along.tolist()):
                 parts.append(self.words[axis][k])
         return ", ".join(_drive_as_one([part for part in parts if part]))
+
+
+def _same(other: float, here: float) -> bool:
+    """Whether two margins differ by rounding at the most; they are no not-a-number, and may be infinite."""
+    return other == here or abs(other - here) <= 1e-12 + 1e-9 * abs(here)
 
 
 WEAKEST = frozenset({"V_F max", "drive min", "drop max", "R_LED max"})

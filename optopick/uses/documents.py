@@ -97,7 +97,8 @@ def _front(brief: Brief, ranking: Ranking, progress: Progress) -> Front:
     goals = (brief.goal.minimize, brief.goal.then)
     designed = sorted((one.coupler for one in ranking.ranked), key=lambda coupler: coupler.row)
     couplers = designed if ranking.complete else None
-    return tradeoff(brief, goals, points=FRONT_POINTS, couplers=couplers, progress=progress)
+    floors = {one.coupler.part: one.objective.bound for one in ranking.ranked}
+    return tradeoff(brief, goals, points=FRONT_POINTS, couplers=couplers, progress=progress, floors=floors)
 
 
 def _walk(swept: Sweep) -> Walk:

@@ -151,11 +151,13 @@ def staged(
 ) -> Staged:
     """The least first goal over all couplers, then the least second goal within `give` of it."""
     goal, ask = brief.goal, ask_of(brief)
-    first = over_all(entries, goal.minimize, ask, clock, report, without=without)
+    floors: dict[str, float] = {}
+    first = over_all(entries, goal.minimize, ask, clock, report, without=without, floors=floors)
     if first.choice is None:
         return Staged(first, None)
     relaxed = ask.limited(goal.minimize, first.value * (1 + goal.give) * (1 + STEP))
-    return Staged(first, over_all(entries, goal.then, relaxed, clock, report, start=first, without=without))
+    left = [entry for entry in entries if np.isfinite(floors.get(entry.coupler.part, 0.0))]
+    return Staged(first, over_all(left, goal.then, relaxed, clock, report, start=first, without=without))
 
 
 def over_all(

@@ -2,20 +2,21 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Sequence
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
 
 from optopick.answers import Ranked, Ranking
-from optopick.brief import Brief
+from optopick.brief import Brief, GoalName
 from optopick.coupler import Coupler
-from optopick.model.kinds import LinkModel, model_of
-from optopick.model.search import exists, first_look
+from optopick.model.kinds import model_of
+from optopick.model.search import best, exists, first_look, refuted
 from optopick.model.solver import Clock
 from optopick.recheck import review
 from optopick.report.labels import check_label
 from optopick.result import NOT_CHOSEN, Check, Rejected, Status
+from optopick.uses.conflict import Contradicts, minimal_conflict
 from optopick.uses.engine import (
     Entry,
     Progress,
@@ -27,8 +28,14 @@ from optopick.uses.engine import (
     rechecked,
     staged,
 )
-from optopick.uses.why import limits_of
+from optopick.uses.why import GOAL_OF, limits_of
 from optopick.uses.workers import Processes, Workers
+
+MOST_TOGETHER, MOST_WAYS = 2, 3
+"""Limits that are named as rejecting a coupler together, and ways to let it in, at the most."""
+
+NEAREST_BY = {**GOAL_OF, "shortest_pulse": GoalName.DELAY}
+"""What the best try without a limit makes least."""
 
 
 def rank(
@@ -86,37 +93,58 @@ def rank_one(task: Task) -> Ranked | Rejected:
 
 
 def rejection(brief: Brief, entry: Entry) -> str:
-    """The limits that reject a coupler, and by how much: each that alone stands in the way, else the first pair."""
-    alone = [said for name in limits_of(brief) if (said := _without(brief, entry, frozenset({name})))]
-    if alone:
-        return "; or ".join(alone)
-    named = [check_label(name) for name in _standing(brief, entry)]
-    return named[0] if len(named) == 1 else "no single limit: " + ", ".join(named) + " together"
+    """The limits that reject a coupler, and by how much.
+
+    Each limit that alone stands in the way, or two together, by how far the best try without them misses. Where more
+    stand in the way: limits that contradict each other whatever the others say, and how far one is then missed.
+    """
+    names, ruled_out = limits_of(brief), _judge(brief, entry)
+    sets: list[tuple[str, ...]] = []
+    while len(sets) < MOST_TOGETHER:
+        dropped = [found[0] for found in sets]
+        found = minimal_conflict(names, frozenset(dropped), ruled_out)
+        if found is None:
+            break
+        alone = [said for name in found if (said := _without(brief, entry, [*dropped, name]))]
+        if alone:
+            return "; or ".join(alone[:MOST_WAYS])
+        sets.append(found)
+    return _at_least(brief, entry, sets[0]) + ", and more"
 
 
-def _without(brief: Brief, entry: Entry, names: frozenset[str]) -> str:
-    """How far the best try without a limit misses it; empty where the coupler fails without it too."""
-    ask = ask_of(brief, names)
-    look = first_look(entry.model, brief.goal.minimize, ask)
+def _at_least(brief: Brief, entry: Entry, conflict: Sequence[str]) -> str:
+    """How far a limit is missed where only those that it contradicts are kept beside it."""
+    others = [check_label(name) for name in conflict[1:]]
+    dropped = frozenset(limits_of(brief)) - frozenset(conflict[1:])
+    goal, ask = NEAREST_BY.get(conflict[0], brief.goal.minimize), ask_of(brief, dropped)
+    look = first_look(entry.model, goal, ask)
+    if look.choice is None and not np.isinf(look.bound):
+        look = best(entry.model, goal, ask, Clock())
+    if look.choice is None:
+        return ", ".join([check_label(conflict[0]), *others]) if others else f"{check_label(conflict[0])} never met"
+    reviewed = review(brief, entry.coupler, design_of(brief, entry, look.choice))
+    missed = _miss(next(check for check in reviewed.checks if check.name == conflict[0]))
+    return f"{missed} with {', '.join(others)} kept" if others else missed
+
+
+def _judge(brief: Brief, entry: Entry) -> Contradicts:
+    """Whether a coupler has no design without some limits: by ranges, or by the solver where ranges do not tell."""
+    if refuted(entry.model, ask_of(brief)):
+        return lambda dropped: refuted(entry.model, ask_of(brief, dropped))
+    return lambda dropped: exists(entry.model, ask_of(brief, dropped), Clock()) is False
+
+
+def _without(brief: Brief, entry: Entry, names: Sequence[str]) -> str:
+    """How far the best try without some limits misses them; empty where none is found without them either."""
+    goal = NEAREST_BY.get(names[-1], brief.goal.minimize)
+    look = first_look(entry.model, goal, ask_of(brief, frozenset(names)))
     if look.choice is None:
         return ""
     reviewed = review(brief, entry.coupler, design_of(brief, entry, look.choice))
-    return "; ".join(_miss(check) for check in reviewed.failing)
+    return " and ".join(_miss(check) for check in reviewed.failing)
 
 
 def _miss(check: Check) -> str:
+    if not np.isfinite(check.margin):
+        return f"{check_label(check.name)} never met"
     return f"{check_label(check.name)} {-100 * check.margin:.0f} % {'over' if check.sense == '<=' else 'short'}"
-
-
-def _standing(brief: Brief, entry: Entry) -> Iterator[str]:
-    """A minimal set of limits that reject the coupler together (deletion filter by ranges)."""
-    dropped: frozenset[str] = frozenset()
-    names = limits_of(brief)
-    for name in names:
-        if _ruled_out(entry.model, brief, dropped | {name}):
-            dropped = dropped | {name}
-    return (name for name in names if name not in dropped)
-
-
-def _ruled_out(model: LinkModel, brief: Brief, dropped: frozenset[str]) -> bool:
-    return exists(model, ask_of(brief, dropped), Clock()) is False

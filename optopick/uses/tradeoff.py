@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import replace
 
 import numpy as np
@@ -13,7 +13,18 @@ from optopick.coupler import Coupler
 from optopick.model.rows import Ask
 from optopick.model.search import STEP
 from optopick.model.solver import Clock
-from optopick.uses.engine import Best, Entry, Progress, ask_of, entries_of, goal_of, over_all, quiet, rechecked
+from optopick.uses.engine import (
+    Best,
+    Entry,
+    Progress,
+    ask_of,
+    entries_of,
+    goal_of,
+    guard_of,
+    over_all,
+    quiet,
+    rechecked,
+)
 
 
 def tradeoff(
@@ -24,14 +35,17 @@ def tradeoff(
     couplers: Sequence[Coupler] | None = None,
     progress: Progress = quiet,
     time_limit: float = np.inf,
+    floors: Mapping[str, float] | None = None,
 ) -> Front:
     """The front between two goals. points: that many at the most, evenly by the first goal; None: every one.
 
     Each point is the least second goal at its first goal, and the least first goal at that second: proved both ways.
-    Past `time_limit` [s] the points so far are given, complete False.
+    Past `time_limit` [s] the points so far are given, complete False. floors: by part, a first goal, guard included,
+    below which it is known to have no design.
     """
     brief = replace(brief, goal=Goal(goals[0], goals[1], 0.0))
-    walk = _Walk(brief, entries_of(brief, couplers)[0], Clock(time_limit))
+    known = {part: floor / guard_of(brief, goals[0]) for part, floor in (floors or {}).items()}
+    walk = _Walk(brief, entries_of(brief, couplers)[0], Clock(time_limit), known)
     found = walk.all(progress) if points is None else walk.some(points, progress)
     return Front(goals, tuple(found), points is None and not walk.clock.out, _knee(found), walk.clock.out)
 
@@ -39,10 +53,10 @@ def tradeoff(
 class _Walk:
     """Along the front: the first goal least, the second then least, then the second better than that, and again."""
 
-    def __init__(self, brief: Brief, entries: list[Entry], clock: Clock) -> None:
+    def __init__(self, brief: Brief, entries: list[Entry], clock: Clock, floors: dict[str, float]) -> None:
         self.brief, self.entries, self.clock = brief, entries, clock
         self.first, self.second = brief.goal.minimize, brief.goal.then
-        self.floors: dict[str, float] = {}
+        self.floors = floors
 
     def point(self, ask: Ask) -> tuple[Best, float, float] | None:
         """The point with the least first goal within `ask`; goals as the model has them."""
@@ -50,7 +64,9 @@ class _Walk:
         if first.choice is None:
             return None
         held = ask.limited(self.first, first.value * (1 + STEP))
-        second = over_all(self.entries, self.second, held, self.clock, start=first)
+        limit = held.limit(self.first) * (1 + STEP)
+        near = [entry for entry in self.entries if self.floors.get(entry.coupler.part, 0.0) <= limit]
+        second = over_all(near, self.second, held, self.clock, start=first)
         return None if self.clock.out else (second, first.value, second.value)
 
     def all(self, progress: Progress) -> list[Point]:

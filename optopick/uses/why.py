@@ -15,6 +15,7 @@ from optopick.coupler import Coupler
 from optopick.model.search import exists
 from optopick.model.solver import Clock
 from optopick.result import Result, Status
+from optopick.uses.conflict import minimal_conflict
 from optopick.uses.engine import BARRIER, Entry, Progress, ask_of, entries_of, guard_of, over_all, quiet
 from optopick.uses.limits import Limit, finer_stock, movable_limits
 from optopick.uses.pick import pick
@@ -113,7 +114,7 @@ def limits_of(brief: Brief) -> list[str]:
 
 
 def _conflicts(world: _World, brief: Brief, progress: Progress) -> list[tuple[str, ...]]:
-    """Minimal contradicting sets of limits: a deletion filter for each, the next sought with a limit of it left out."""
+    """Minimal contradicting sets of limits, the next sought with a limit of each one left out."""
     names = limits_of(brief)
     found: list[tuple[str, ...]] = []
     waiting: list[frozenset[str]] = [frozenset()]
@@ -135,14 +136,9 @@ def _conflicts(world: _World, brief: Brief, progress: Progress) -> list[tuple[st
 
 
 def _filtered(world: _World, brief: Brief, names: Sequence[str], out: frozenset[str]) -> tuple[str, ...] | None:
-    """A minimal contradicting set among the limits not in `out`; None where those do not contradict each other."""
-    if world.feasible(brief, out):
-        return None
-    dropped = out
-    for name in names:
-        if name not in dropped and not world.feasible(brief, dropped | {name}):
-            dropped = dropped | {name}
-    return None if world.clock.out else tuple(name for name in names if name not in dropped)
+    """A minimal contradicting set among the limits not in `out`; None where there is none, or no time."""
+    found = minimal_conflict(names, out, lambda dropped: not world.feasible(brief, dropped))
+    return None if world.clock.out else found
 
 
 def _changes(world: _World, brief: Brief, progress: Progress) -> Iterator[Change]:

@@ -19,6 +19,7 @@ class Circuit:
 
     pulled_up: load from supply to collector, output at the collector; else from emitter to ground, output at the
     emitter. v_cc [V], r_load [ohm], r_be [ohm] or None where absent, c_load on the output [F], i_f: LED current [A].
+    i_off: LED current left in the dark LED; i_dark: dark current into the base beyond the device's own [A].
     """
 
     pulled_up: bool
@@ -27,6 +28,8 @@ class Circuit:
     r_be: float | None
     c_load: float
     i_f: float
+    i_off: float = 0.0
+    i_dark: float = 0.0
 
 
 @dataclass(frozen=True)
@@ -73,12 +76,14 @@ def output_node(circuit: Circuit) -> str:
 def transient_deck(d: Device, circuit: Circuit, run: Run, raw: str) -> str:
     """A deck that writes output, base-emitter and collector-emitter voltage to the binary raw file `raw`."""
     step = run.end / (2000 * run.fineness)
-    light = f"pulse(0 {d.eta * circuit.i_f:.8g} {run.start:.6g} {LED_EDGE:g} {LED_EDGE:g} {run.lit:.8g} 1)"
+    dark, lit = (f"{d.eta * i:.8g}" for i in (circuit.i_off, circuit.i_f))
+    light = f"pulse({dark} {lit} {run.start:.6g} {LED_EDGE:g} {LED_EDGE:g} {run.lit:.8g} 1)"
     lines = [
         "optocoupler link",
         *transistor_lines(d),
         *output_lines(circuit),
         f"ilight c b {light}",
+        *([f"idark c b {circuit.i_dark:.6g}"] if circuit.i_dark > 0 else []),
         f".options temp={TEMPERATURE:g} reltol={1e-4 / run.fineness:g} vntol=1e-7 abstol=1e-14 chgtol=1e-16 gmin=1e-15",
         f".save v({output_node(circuit)}) v(b) v(c) v(e)",
         ".control",

@@ -1,4 +1,4 @@
-"""Make the records again: python -m tests.reference.generate.
+"""Make the records again: python -m tests.reference.generate [record | strangers | leaking ...].
 
 The same seeds and the same ngspice give the same files.
 """
@@ -8,29 +8,34 @@ from __future__ import annotations
 import math
 import multiprocessing
 import os
+import sys
 from collections.abc import Iterable
-from dataclasses import fields
+from dataclasses import fields, replace
 from multiprocessing.pool import Pool
 
 import numpy as np
 
-from tests.reference.circuits import Drawn, draw
+from tests.reference.circuits import Drawn, draw, draw_leaking
 from tests.reference.devices import DEVICES, Device, stranger
-from tests.reference.record import Entry, Record, write_record
-from tests.reference.sheet import Sheet, sheet
-from tests.reference.simulate import Times, ngspice_version, pulse
+from tests.reference.record import EVERY, LEAKING, Entry, Record, write_record
+from tests.reference.sheet import Sheet, dark_currents, sheet
+from tests.reference.simulate import SimulationError, Times, ngspice_version, pulse
 
-SEEDS = {"record": 20250611, "strangers": 20250612}
+SEEDS = {"record": 20250611, "strangers": 20250612, LEAKING: 20261201}
 COUNT, STRANGERS = 900, 20
 PROCESSES, NICE = 2, 10
 CTR, H_FE, TAU_100 = (0.45, 4.2), (140.0, 950.0), (0.9e-6, 5.2e-6)
 """Spans of CTR [1], gain [1] and time constant at 100 ohm [s] that a stranger must lie in to count as a coupler."""
 
 
-def main() -> None:
-    """Simulate both records and write them."""
+NEVER = Times(*(math.nan for _ in fields(Times)))
+"""Of a circuit whose output does not move, or never settles."""
+
+
+def main(names: tuple[str, ...] = EVERY) -> None:
+    """Simulate records and write them."""
     with multiprocessing.Pool(PROCESSES, initializer=os.nice, initargs=(NICE,)) as pool:
-        for name in SEEDS:
+        for name in names:
             record = simulate_record(name, pool)
             path = write_record(name, record)
             print(f"{path.name}: {len(record.entries)} circuits, {path.stat().st_size} bytes; {record.origin}")
@@ -42,15 +47,25 @@ def simulate_record(name: str, pool: Pool) -> Record:
     sheets = {s.name: s for s in pool.map(sheet, devices.values())}
     drawn = draw_all(name, sheets.values())
     times = pool.map(_times_of, [(devices[x.device], x) for x in drawn], chunksize=4)
-    entries = [Entry(x.device, x.overdrive, x.circuit, t) for x, t in zip(drawn, times, strict=True)]
-    whole = tuple(e for e in entries if complete(e.times))
-    origin = f"tests.reference.generate, seed {SEEDS[name]}, {len(whole)} of {COUNT} circuits work, {ngspice_version()}"
-    return Record(origin, sheets, whole)
+    entries = tuple(Entry(x.device, x.overdrive, x.circuit, t) for x, t in zip(drawn, times, strict=True))
+    working = tuple(e for e in entries if complete(e.times))
+    kept = with_dark_currents(entries, devices) if name == LEAKING else working
+    work = f"{len(working)} of {COUNT} circuits work"
+    return Record(f"tests.reference.generate, seed {SEEDS[name]}, {work}, {ngspice_version()}", sheets, kept)
+
+
+def with_dark_currents(entries: tuple[Entry, ...], devices: dict[str, Device]) -> tuple[Entry, ...]:
+    """The same with what a data sheet would state as the dark current."""
+    stated = {
+        name: iter(dark_currents(d, np.array([e.circuit.i_dark for e in entries if e.device == name])).tolist())
+        for name, d in devices.items()
+    }
+    return tuple(replace(e, i_ceo=next(stated[e.device])) for e in entries)
 
 
 def devices_of(name: str) -> dict[str, Device]:
     """Devices of a record by name."""
-    found = DEVICES if name == "record" else tuple(_strangers())
+    found = [*(DEVICES if name != "strangers" else ()), *(_strangers() if name != "record" else ())]
     return {d.name: d for d in found}
 
 
@@ -73,7 +88,8 @@ def looks_like_a_coupler(s: Sheet) -> bool:
 def draw_all(name: str, sheets: Iterable[Sheet]) -> list[Drawn]:
     """Circuits of every device in turn, the same for the same seed."""
     rng, every = np.random.default_rng(SEEDS[name]), list(sheets)
-    return [draw(rng, every[k % len(every)]) for k in range(COUNT)]
+    one = draw_leaking if name == LEAKING else draw
+    return [one(rng, every[k % len(every)]) for k in range(COUNT)]
 
 
 def _times_of(job: tuple[Device, Drawn]) -> Times:
@@ -81,8 +97,14 @@ def _times_of(job: tuple[Device, Drawn]) -> Times:
 
 
 def simulate_circuit(d: Device, drawn: Drawn) -> Times:
-    """Times of one circuit."""
-    return pulse(d, drawn.circuit, guess=200e-6)
+    """Times of one circuit; those of one in which something is left in the dark may all be nan."""
+    circuit = drawn.circuit
+    try:
+        return pulse(d, circuit, guess=200e-6)
+    except SimulationError:
+        if circuit.i_off > 0 or circuit.i_dark > 0:
+            return NEVER
+        raise
 
 
 def complete(times: Times) -> bool:
@@ -91,4 +113,4 @@ def complete(times: Times) -> bool:
 
 
 if __name__ == "__main__":
-    main()
+    main(tuple(sys.argv[1:]) or EVERY)

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Iterable
-from dataclasses import dataclass, fields, replace
+from dataclasses import dataclass, replace
 
 import numpy as np
 
@@ -14,11 +14,12 @@ from optopick.gaps import Filled, Unit
 from optopick.gaps_switching import SwitchingConstants, saturated_voltage, switching_constants
 from optopick.physics import switching
 from optopick.physics.charge import Base, Load
+from optopick.physics.leakage import raised
 from optopick.physics.saturation import load_current
-from optopick.physics.transfer import base_led_current
+from optopick.physics.transfer import base_led_current, led_current_for
 from optopick.physics.types import Array
 from optopick.switching_rows import PlainRow, SaturatedRow, TypicalUnit
-from tests.reference.deck import Circuit
+from tests.reference.record import Entry
 from tests.reference.sheet import (
     CURVE_I,
     I_REF,
@@ -50,7 +51,7 @@ T = 25.0
 
 @dataclass(frozen=True)
 class Links:
-    """Circuits of one device as arrays; see Circuit. An absent base resistor is infinite."""
+    """Circuits of one device as arrays; see Circuit and Entry. An absent base resistor is infinite."""
 
     pulled_up: Array
     v_cc: Array
@@ -58,6 +59,8 @@ class Links:
     r_be: Array
     c_load: Array
     i_f: Array
+    i_off: Array
+    i_ceo: Array
 
 
 @dataclass(frozen=True)
@@ -74,16 +77,35 @@ class Predicted:
 Predictor = Callable[[Sheet, Links], Predicted]
 
 
-def links(circuits: Iterable[Circuit]) -> Links:
+def links(entries: Iterable[Entry]) -> Links:
     """Arrays of circuits."""
-    found = list(circuits)
-    rows = [[np.inf if getattr(c, f.name) is None else getattr(c, f.name) for c in found] for f in fields(Links)]
-    return Links(*(np.array(row, dtype=float) for row in rows))
+    found = list(entries)
+
+    def of_circuits(name: str) -> Array:
+        return np.array([getattr(e.circuit, name) for e in found], dtype=float)
+
+    return Links(
+        pulled_up=of_circuits("pulled_up"),
+        v_cc=of_circuits("v_cc"),
+        r_load=of_circuits("r_load"),
+        r_be=np.array([np.inf if e.circuit.r_be is None else e.circuit.r_be for e in found]),
+        c_load=of_circuits("c_load"),
+        i_f=of_circuits("i_f"),
+        i_off=of_circuits("i_off"),
+        i_ceo=np.array([e.i_ceo for e in found]),
+    )
 
 
 def transfer_of(sheet: Sheet) -> Transfer:
     """Transfer of the typical unit."""
     return Transfer(sheet.ctr, sheet.ctr, I_REF, CURVE_I, sheet.curve_g, (25.0,), (1.0,), 0.0)
+
+
+def rest_of(sheet: Sheet, x: Links) -> Array:
+    """LED current that the light left and the dark current amount to [A]."""
+    dark = x.i_ceo > 0
+    i_dark = led_current_for(transfer_of(sheet), sheet.ctr, 1.0, np.where(dark, x.i_ceo, 1.0))
+    return np.asarray(x.i_off + np.where(dark, i_dark, 0.0))
 
 
 def threshold_shares(x: Links, v_ce: float) -> tuple[Array, Array]:
@@ -127,16 +149,16 @@ def predicted(sheet: Sheet, x: Links, constants: SwitchingConstants) -> Predicte
     base = Base(constants.tau_0 / sheet.h_fe, constants.c_m / sheet.h_fe, C_BE, V_BE, eta)
     j_s = load_current(x.v_cc, sheet.v_ce_sat, x.r_load)
     load = Load(j_s, x.v_cc, x.v_cc - sheet.v_ce_sat, x.r_load, x.c_load, T)
-    i_be = base_led_current(V_BE, x.r_be, eta)
+    i_be, i_rest = base_led_current(V_BE, x.r_be, eta), rest_of(sheet, x) * raised(x.v_cc)
     swung = switching.swing(base, load, transfer, sheet.ctr, *threshold_shares(x, sheet.v_ce_sat))
     tenth = switching.steps(base, load, transfer, sheet.ctr, switching.FIRST_TENTH)
-    held = switching.storage(constants.tau_s, x.i_f, i_be, swung.i_sat, swung.hold)
+    held = switching.storage(constants.tau_s, x.i_f, i_be, swung.i_sat, swung.hold, i_rest)
     return Predicted(
         edge_on=switching.edge_on(swung.edge, x.i_f - i_be, swung.i_sat),
-        edge_off=switching.edge_off(swung.edge, switching.EDGE, i_be, 0.0),
-        storage=held + switching.edge_off(tenth, switching.FIRST_TENTH, i_be, 0.0),
+        edge_off=switching.edge_off(swung.edge, switching.EDGE, i_be, i_rest),
+        storage=held + switching.edge_off(tenth, switching.FIRST_TENTH, i_be, i_rest),
         delay_on=switching.delay_on(swung, eta, x.i_f, i_be),
-        delay_off=switching.delay_off(swung, constants.tau_s, x.i_f, i_be, 0.0),
+        delay_off=switching.delay_off(swung, constants.tau_s, x.i_f, i_be, i_rest),
     )
 
 

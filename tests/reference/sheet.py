@@ -20,6 +20,9 @@ I_REF, V_CE_REF = 5e-3, 5.0
 PLAIN_V_CC, PLAIN_I_C, PLAIN_R_L = 10.0, 2e-3, 100.0
 SAT_V_CC, SAT_I_F, SAT_R_L = 5.0, 16e-3, 1900.0
 V_CE_SAT_I_F, V_CE_SAT_I_C = 10e-3, 1e-3
+I_CEO_V = 10.0
+"""Collector-emitter voltage at which the dark current is stated [V]."""
+
 C_CB_V = 5.0
 """Reverse voltage at which C_CB is stated [V]."""
 
@@ -76,6 +79,11 @@ def currents(d: Device, i_f: Array, v_ce: float) -> Array:
         lines += [f"vc{k} c{k} 0 {v_ce:g}", f"q{k} c{k} b{k} 0 q", f"il{k} c{k} b{k} {d.eta * i + d.i_cbo:.10g}"]
     found = _operating_point(lines, [f"i(vc{k})" for k in range(len(i_f))])
     return np.asarray([-value for value in found])
+
+
+def dark_currents(d: Device, i_dark: Array) -> Array:
+    """Dark currents [A] of the collector with the base open, `i_dark` [A] beyond the device's own at the base."""
+    return currents(d, i_dark / d.eta, I_CEO_V)
 
 
 def _current_for(d: Device, i_c: float) -> float:

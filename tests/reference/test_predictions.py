@@ -12,7 +12,7 @@ from optopick.keys import brief_sections
 from optopick.physics import switching
 from optopick.physics.charge import Base, Load
 from optopick.physics.transfer import led_current_for
-from tests.reference.compare import BEYOND, GUARDED, Ratios, guard, product_ratios, ratios, report, summary
+from tests.reference.compare import BEYOND, GUARDED, LATE, Ratios, guard, product_ratios, ratios, report, summary
 from tests.reference.predict import (
     C_BE,
     PREDICTORS,
@@ -93,6 +93,7 @@ def test_the_default_guard_covers_all_but_one_in_five_hundred() -> None:
     assert late.size == 1800 * 4
     assert np.mean(late > least * (1 + 1e-12)) <= BEYOND < np.mean(late >= least * (1 - 1e-12))
     assert default == pytest.approx(math.ceil(least / 0.05) * 0.05)
+    assert default == LATE
 
 
 def default_guard() -> float:
