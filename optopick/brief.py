@@ -162,11 +162,12 @@ class Stock:
 
 @dataclass(frozen=True)
 class CouplerChoice:
-    """Where the coupler table is and which rows may be used."""
+    """Where the coupler table is and which rows may be used; kinds: names of `coupler.Kind`, all where None."""
 
     table: Path
     only: tuple[str, ...] | None
     at_least_channels: int
+    kinds: tuple[str, ...] | None = None
 
 
 @dataclass(frozen=True)

@@ -120,7 +120,8 @@ def _text(_key: Key) -> Json:
 
 
 def _texts(key: Key) -> Json:
-    return {"type": "array", "items": _text(key), "minItems": 1, "uniqueItems": True}
+    item = {"enum": list(key.choices)} if key.choices else _text(key)
+    return {"type": "array", "items": item, "minItems": 1, "uniqueItems": True}
 
 
 def _stock(key: Key) -> Json:

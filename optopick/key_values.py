@@ -129,6 +129,8 @@ def _texts(key: Key, value: object, _base: Path) -> tuple[str, ...]:
     for item in value:
         if not isinstance(item, str) or not item.strip():
             raise QuantityError(f"{shown(item)} in the list", f"texts such as {shown(key.example)}")
+        if key.choices and item.strip() not in key.choices:
+            raise QuantityError(f"{shown(item)} in the list", one_of(key.choices) + nearest(item, key.choices))
     texts = tuple(item.strip() for item in value)
     _refuse_twice(texts, value)
     return texts

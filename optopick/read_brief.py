@@ -149,6 +149,7 @@ def _couplers(values: Values) -> CouplerChoice:
         table=cast(Path, values.get("couplers.table")),
         only=cast("tuple[str, ...] | None", values.get("couplers.only")),
         at_least_channels=cast(int, values.get("couplers.at_least.channels")),
+        kinds=cast("tuple[str, ...] | None", values.get("couplers.kinds")),
     )
 
 

@@ -104,6 +104,7 @@ r_load = { series = "E24" }
 r_shunt = { series = "E24", absent = true }
 [couplers]
 table = "parts.csv"
+kinds = ["phototransistor", "darlington"]
 [goal]
 minimize = "power"
 """

@@ -16,7 +16,12 @@ def admitted(brief: Brief, coupler: Coupler) -> bool:
     choice = brief.couplers
     named = choice.only is None or coupler.part in choice.only
     fits = coupler.kind is not Kind.LOGIC or brief.output.circuit is OutputCircuit.PULL_UP
-    return named and fits and coupler.channels >= choice.at_least_channels
+    return (
+        named
+        and fits
+        and (choice.kinds is None or coupler.kind.value in choice.kinds)
+        and coupler.channels >= choice.at_least_channels
+    )
 
 
 def grid_of(brief: Brief, coupler: Coupler, failing: bool = False, every_vertex: bool = False) -> Grid:

@@ -18,6 +18,7 @@ from optopick.model.solver import Clock
 from optopick.read_couplers import read_couplers
 from optopick.recheck import review
 from optopick.result import NOT_CHOSEN, Design, Objective, Rejected, Review
+from optopick.units import format_quantity
 
 Progress = Callable[[str, int, int], None]
 """Told the stage in words, and how many of how many it has done."""
@@ -99,18 +100,30 @@ def couplers_of(
 
 def unusable(brief: Brief, coupler: Coupler, dropped: Collection[str] = ()) -> str:
     """Why a coupler cannot serve this brief whatever the resistors; empty where it may."""
-    choice, needed, barrier = brief.couplers, brief.limits.isolation, coupler.barrier
+    choice = brief.couplers
     if choice.only is not None and coupler.part not in choice.only:
+        return NOT_CHOSEN
+    if choice.kinds is not None and coupler.kind.value not in choice.kinds:
         return NOT_CHOSEN
     if coupler.channels < choice.at_least_channels:
         return f"{coupler.channels} channels, {choice.at_least_channels} needed"
     if coupler.kind is Kind.LOGIC and brief.output.circuit is OutputCircuit.EMITTER_LOAD:
         return "a logic output pulls low only: it needs a pull-up"
+    return _too_thin(brief, coupler, dropped) or _out_of_curve(brief, coupler)
+
+
+def _too_thin(brief: Brief, coupler: Coupler, dropped: Collection[str]) -> str:
+    """What the coupler's barrier lacks."""
     for check, name in BARRIER.items():
-        limit, has = getattr(needed, name), getattr(barrier, name)
-        if check not in dropped and limit is not None and (has is None or has < limit):
-            return f"{name}: the table has no figure" if has is None else f"{name} {has:g} below {limit:g}"
-    return _out_of_curve(brief, coupler)
+        limit, has = getattr(brief.limits.isolation, name), getattr(coupler.barrier, name)
+        if check in dropped or limit is None:
+            continue
+        if has is None:
+            return f"{name}: the table has no figure"
+        unit = "m" if check == "creepage" else "V"
+        if has < limit:
+            return f"{name} {format_quantity(has, unit)} below {format_quantity(limit, unit)}"
+    return ""
 
 
 def _out_of_curve(brief: Brief, coupler: Coupler) -> str:

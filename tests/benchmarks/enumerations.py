@@ -160,7 +160,8 @@ class _Pairs:
         return lambda i, j, m: self._late(family, i, j, m) <= limit
 
     def _late(self, family: Family, i: Index, j: Index, m: Index) -> np.ndarray:
-        return self.model._worst_times(family, i, j, m).max(axis=(0, 1))
+        swing = self.model.candidates.load.swing.taken(j)
+        return self.model._worst_times(family, i, swing, m).max(axis=(0, 1))
 
     def _crossing(self, goal: GoalName, low: Index, high: Index, j: Index, m: Index) -> list[Index]:
         """Where the time that light shortens meets the one that light stretches: the least of the longer is there."""
