@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import io
 import time
 from dataclasses import dataclass
 from enum import StrEnum
@@ -115,6 +116,113 @@ def _chosen(model: Any) -> tuple[int, int, int]:
     parts = (model.pick_led, model.pick_load, model.pick_base)
     picked = [max(part, key=lambda index: part[index].value) for part in parts]
     return picked[0], picked[1], picked[2]
+
+
+@dataclass(frozen=True)
+class Program:
+    """Any program over columns that are 0 or 1: costs (n,), and rows low <= sum of entries <= high, (R,) each.
+
+    row_of, column_of, entries: the rows' entries, (E,) each, in the order of the rows, no place twice.
+    """
+
+    costs: Array
+    row_of: np.ndarray
+    column_of: np.ndarray
+    entries: Array
+    low: Array
+    high: Array
+
+
+@dataclass(frozen=True)
+class Solution:
+    """What a solver call established of a program: the columns chosen (None without any), the costs' lower bound.
+
+    proved: no other choice has costs lower than these by more than the gap asked for.
+    """
+
+    answer: Answer
+    chosen: np.ndarray | None
+    costs: float
+    bound: float
+    proved: bool
+
+
+def solve_program(
+    program: Program, seconds: float = np.inf, *, gap: float = 0.0, nodes: int | None = None, start: Array | None = None
+) -> Solution:
+    """Least costs, with one thread and a fixed seed.
+
+    Ends within `gap` [1] of the bound, after `seconds`, or after so many nodes. start: a choice to begin with, (n,).
+    Goes to HiGHS without Pyomo, which has no way to hand over a start and rebuilds large programs term by term.
+    """
+    solver = _quiet_highs()
+    options = {
+        "output_flag": False,
+        "threads": 1,
+        "random_seed": 7,
+        "mip_rel_gap": gap,
+        "mip_abs_gap": 1e-9,
+        "mip_feasibility_tolerance": FEASIBILITY,
+        "primal_feasibility_tolerance": FEASIBILITY,
+    }
+    if np.isfinite(seconds):
+        options["time_limit"] = max(seconds, 0.01)
+    if nodes is not None:
+        options["mip_max_nodes"] = nodes
+    for name, value in options.items():
+        solver.setOptionValue(name, value)
+    solver.passModel(_as_highs(program))
+    if start is not None:
+        import highspy  # noqa: PLC0415 - as above
+
+        known = highspy.HighsSolution()
+        known.col_value = start.tolist()
+        solver.setSolution(known)
+    solver.run()
+    return _solution(solver, program)
+
+
+def _quiet_highs() -> Any:
+    """HiGHS, whose banner goes past Python to the terminal when it is first made."""
+    import highspy  # noqa: PLC0415 - as above
+    from pyomo.common.tee import capture_output  # noqa: PLC0415 - as above
+
+    with capture_output(io.StringIO(), capture_fd=True):
+        return highspy.Highs()
+
+
+def _as_highs(program: Program) -> Any:
+    import highspy  # noqa: PLC0415 - as above
+
+    columns, rows = len(program.costs), len(program.low)
+    lp = highspy.HighsLp()
+    lp.num_col_, lp.num_row_ = columns, rows
+    lp.col_cost_ = program.costs
+    lp.col_lower_, lp.col_upper_ = np.zeros(columns), np.ones(columns)
+    lp.row_lower_, lp.row_upper_ = program.low, program.high
+    lp.integrality_ = [highspy.HighsVarType.kInteger] * columns
+    lp.a_matrix_.format_ = highspy.MatrixFormat.kRowwise
+    lp.a_matrix_.num_col_, lp.a_matrix_.num_row_ = columns, rows
+    lp.a_matrix_.start_ = np.searchsorted(program.row_of, np.arange(rows + 1)).astype(np.int32)
+    lp.a_matrix_.index_ = program.column_of.astype(np.int32)
+    lp.a_matrix_.value_ = program.entries
+    return lp
+
+
+def _solution(solver: Any, program: Program) -> Solution:
+    import highspy  # noqa: PLC0415 - as above
+
+    status, info = solver.getModelStatus(), solver.getInfo()
+    if status in (highspy.HighsModelStatus.kInfeasible, highspy.HighsModelStatus.kUnboundedOrInfeasible):
+        return Solution(Answer.NONE, None, np.inf, np.inf, proved=True)
+    ended = highspy.HighsModelStatus
+    if status not in (ended.kOptimal, ended.kTimeLimit, ended.kSolutionLimit, ended.kIterationLimit):
+        raise RuntimeError(f"the solver stopped without an answer: {solver.modelStatusToString(status)}")
+    bound = float(info.mip_dual_bound)
+    if info.primal_solution_status != int(highspy.SolutionStatus.kSolutionStatusFeasible):
+        return Solution(Answer.OUT_OF_TIME, None, np.inf, bound, proved=False)
+    chosen = np.asarray(solver.getSolution().col_value) > 0.5
+    return Solution(Answer.FOUND, chosen, float(program.costs @ chosen), bound, status == ended.kOptimal)
 
 
 class Clock:

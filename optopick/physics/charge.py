@@ -68,14 +68,14 @@ def junction_charge(c_0: Real, v: Real) -> Array:
     return np.asarray(c_0 * (V_J / (1.0 - M_J) * (u ** (1.0 - M_J) - 1.0) + beyond))
 
 
-def base_charge(base: Base, load: Load, x: Real) -> Array:
+def base_charge(base: Base, load: Load, x: Real, v_b: Real | None = None) -> Array:
     """Charge that the base has taken up from rest to level `x` > 0, a share of the load current [C].
 
     transit*x*j_s + c_be*v_b + the charge of the collector junction between v_cc and v_cc - x*swing - v_b, with v_b of
-    `base_voltage`. The same for a pull-up and for an emitter load. Broadcasts.
+    `base_voltage` where it is not given [V]. The same for a pull-up and for an emitter load. Broadcasts.
     """
     j = np.asarray(x) * load.j_s
-    v_b = base_voltage(base, j, load.t)
+    v_b = base_voltage(base, j, load.t) if v_b is None else np.asarray(v_b)
     v_cb = load.v_cc - np.asarray(x) * load.swing - v_b
     collector = junction_charge(base.c_cb, load.v_cc) - junction_charge(base.c_cb, v_cb)
     return np.asarray(base.transit * j + base.c_be * v_b + collector)

@@ -109,9 +109,9 @@ def steps(base: Base, load: Load, transfer: Transfer, carried: Real, cut: Cut) -
     i = led_current_for(transfer, carried, 1.0, x * load.j_s)
     reached = np.isfinite(i[-1:])
     i = np.where(reached, i, x * transfer.curve_i[-1])
-    q = base_charge(base, load, x) / base.eta
+    v_b = base_voltage(base, x * load.j_s, load.t)
+    q, v = base_charge(base, load, x, v_b) / base.eta, v_b / base.v_be
     rc = np.asarray(load.r_load) * load.c_load
-    v = base_voltage(base, x * load.j_s, load.t) / base.v_be
     shape = np.broadcast_shapes(q.shape, i.shape, rc.shape, v.shape)
     q, i, v = (np.broadcast_to(part, shape) for part in (q, i, v))
     return Steps(
@@ -352,10 +352,11 @@ class Swing:
         return self.at((..., values))
 
 
-def swing(base: Base, load: Load, transfer: Transfer, carried: Real, on: Real, off: Real) -> Swing:
+def swing(base: Base, load: Load, transfer: Transfer, carried: Real, on: Real, off: Real, early: bool = True) -> Swing:
     """The swing of a load; on, off: shares of it from rest until the receiver has surely seen the change [1].
 
-    Lit, it may have seen it from the share 1 - off on; dark, from 1 - on. Broadcasts.
+    Lit, it may have seen it from the share 1 - off on; dark, from 1 - on: without `early` that is left out, and the
+    sure thresholds stand in its place. Broadcasts.
     """
     i_sat = led_current_for(transfer, carried, 1.0, load.j_s)
     sure_on, sure_off = np.asarray(on), np.asarray(off)
@@ -368,12 +369,13 @@ def swing(base: Base, load: Load, transfer: Transfer, carried: Real, on: Real, o
     def falling(share: Array) -> Steps:
         return steps(base, load, transfer, carried, Cut(np.clip(1.0 - share, 1e-4, 0.9999), 1.0, STEPS))
 
+    up, down = rising(sure_on), falling(sure_off)
     return Swing(
         edge=edge,
-        on=rising(sure_on),
-        off=falling(sure_off),
-        on_early=rising(1.0 - sure_off),
-        off_early=falling(1.0 - sure_on),
+        on=up,
+        off=down,
+        on_early=rising(1.0 - sure_off) if early else up,
+        off_early=falling(1.0 - sure_on) if early else down,
         charge=np.broadcast_to(base_charge(base, load, FIRST), shape),
         hold=np.broadcast_to(base_voltage(base, load.j_s, load.t) / base.v_be, shape),
         i_sat=np.broadcast_to(np.minimum(i_sat, transfer.curve_i[-1]), shape),

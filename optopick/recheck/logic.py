@@ -19,8 +19,10 @@ from optopick.recheck.vertices import Vertices
 from optopick.result import Design
 
 
-def review_stage(brief: Brief, coupler: Coupler, design: Design, box: Vertices, branch: LedBranch) -> StageReview:
-    """Every check, the times and the power of a logic output."""
+def review_stage(
+    brief: Brief, coupler: Coupler, design: Design, box: Vertices, branch: LedBranch, checks_only: bool = False
+) -> StageReview:
+    """Every check, the times and the power of a logic output; its times are too quick to leave any out."""
     logic = logic_of(coupler)
     i_sink = load_current(box.v_cc, logic.v_ol, box.r_load, _input_on(brief))
     heat = box.v_cc * logic.i_cc + logic.v_ol * i_sink

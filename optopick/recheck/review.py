@@ -37,10 +37,13 @@ class Evaluation:
     output_power: Array
 
 
-def evaluate(brief: Brief, coupler: Coupler, design: Design, box: Vertices) -> Evaluation:
-    """Every check of a design at every point of a box: the vertices, or samples."""
+def evaluate(brief: Brief, coupler: Coupler, design: Design, box: Vertices, checks_only: bool = False) -> Evaluation:
+    """Every check of a design at every point of a box: the vertices, or samples.
+
+    checks_only: times that no check asks for need not be computed.
+    """
     branch = led_branch(brief, coupler, box)
-    stage = STAGES[coupler.kind](brief, coupler, design, box, branch)
+    stage = STAGES[coupler.kind](brief, coupler, design, box, branch, checks_only)
     checks = (
         *stage.checks,
         *timing_checks(brief, stage.times),

@@ -14,7 +14,7 @@ from optopick.result import Timing
 
 @dataclass(frozen=True)
 class Times:
-    """Times at every vertex [s], without guard."""
+    """Times at every vertex [s], without guard; those that no check asks for may be left zero."""
 
     edge_on: Array
     edge_off: Array

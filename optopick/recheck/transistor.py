@@ -63,14 +63,16 @@ def parts_of(coupler: Coupler) -> tuple[Transfer, Transistor]:
     return coupler.transfer, coupler.transistor
 
 
-def review_stage(brief: Brief, coupler: Coupler, design: Design, box: Vertices, branch: LedBranch) -> StageReview:
-    """Every check, the times and the power of a transistor output."""
+def review_stage(
+    brief: Brief, coupler: Coupler, design: Design, box: Vertices, branch: LedBranch, checks_only: bool = False
+) -> StageReview:
+    """Every check, the times and the power of a transistor output; checks_only: see `evaluate`."""
     s = stage(brief, coupler, box, branch)
     checks = [
         *static_checks(brief, coupler, box, branch, s),
         *rating_checks(brief, coupler, design, box, branch, s),
     ]
-    return StageReview(tuple(checks), times(brief, coupler, box, s), brief.signal.lit * box.v_cc * s.j_s)
+    return StageReview(tuple(checks), times(brief, coupler, box, s, checks_only), brief.signal.lit * box.v_cc * s.j_s)
 
 
 def stage(brief: Brief, coupler: Coupler, box: Vertices, branch: LedBranch, dark: float = 1.0) -> Stage:
@@ -210,24 +212,32 @@ def rating_checks(
     return checks
 
 
-def times(brief: Brief, coupler: Coupler, box: Vertices, s: Stage) -> Times:
-    """Edges, storage and delays at every vertex, without guard [s]; storage as in sheets, until 10 % of the swing."""
+def times(brief: Brief, coupler: Coupler, box: Vertices, s: Stage, checks_only: bool = False) -> Times:
+    """Edges, storage and delays at every vertex, without guard [s]; storage as in sheets, until 10 % of the swing.
+
+    checks_only: no storage, and distortion only where it has a limit.
+    """
     transfer, transistor = parts_of(coupler)
     base, load = _charged(brief, transistor, box, s)
     carried = box.ctr * s.h
-    swung = switching.swing(base, load, transfer, carried, *_fractions(brief, transistor, box, s))
-    tenth = switching.steps(base, load, transfer, carried, switching.FIRST_TENTH)
+    skewed = not checks_only or brief.limits.distortion is not None
+    swung = switching.swing(base, load, transfer, carried, *_fractions(brief, transistor, box, s), early=skewed)
     tau_s, lit = transistor.tau_s, (s.eta, s.i_eff, s.i_be)
-    late_off = switching.late_off(swung, tau_s, *lit, s.i_rest)
-    late_on = switching.late_on(swung, tau_s, *lit)
-    held = switching.storage(tau_s, s.i_eff, s.i_be, swung.i_sat, swung.hold, s.i_rest)
+    distortion, storage = np.zeros(1), np.zeros(1)
+    if skewed:
+        late_off = switching.late_off(swung, tau_s, *lit, s.i_rest)
+        distortion = np.maximum(late_off, switching.late_on(swung, tau_s, *lit))
+    if not checks_only:
+        tenth = switching.steps(base, load, transfer, carried, switching.FIRST_TENTH)
+        held = switching.storage(tau_s, s.i_eff, s.i_be, swung.i_sat, swung.hold, s.i_rest)
+        storage = held + switching.edge_off(tenth, switching.FIRST_TENTH, s.i_be, s.i_rest)
     return Times(
         edge_on=switching.edge_on(swung.edge, s.i_eff - s.i_be, swung.i_sat),
         edge_off=switching.edge_off(swung.edge, switching.EDGE, s.i_be, s.i_rest),
-        storage=held + switching.edge_off(tenth, switching.FIRST_TENTH, s.i_be, s.i_rest),
+        storage=storage,
         delay_on=switching.delay_on(swung, *lit),
         delay_off=switching.delay_off(swung, tau_s, s.i_eff, s.i_be, s.i_rest),
-        distortion=np.maximum(late_off, late_on),
+        distortion=distortion,
     )
 
 
