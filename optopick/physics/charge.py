@@ -53,7 +53,12 @@ class Load:
 
 def base_voltage(base: Base, j: Real, t: Real) -> Array:
     """Base-emitter voltage at collector current `j` [A]: v_be + (kT/q)*ln(j/J_V_BE) [V]. Broadcasts."""
-    return np.asarray(base.v_be + thermal_voltage(t) * np.log(np.asarray(j) / J_V_BE))
+    return base_voltage_of_log(base, np.log(np.asarray(j)), t)
+
+
+def base_voltage_of_log(base: Base, log_j: Real, t: Real) -> Array:
+    """The same from ln(j), j in A."""
+    return np.asarray(base.v_be + thermal_voltage(t) * (np.asarray(log_j) - np.log(J_V_BE)))
 
 
 def junction_charge(c_0: Real, v: Real) -> Array:

@@ -25,8 +25,8 @@ from typing import Any
 import numpy as np
 
 from optopick.coupler import Transfer
-from optopick.physics.charge import FIRST, Base, Load, base_charge, base_voltage
-from optopick.physics.transfer import led_current_for
+from optopick.physics.charge import FIRST, Base, Load, base_charge, base_voltage, base_voltage_of_log
+from optopick.physics.transfer import led_current_for, led_current_of_log
 from optopick.physics.types import Array, Real
 
 Index = tuple[Any, ...]
@@ -105,11 +105,13 @@ def steps(base: Base, load: Load, transfer: Transfer, carried: Real, cut: Cut) -
     Where the CTR curve does not reach the highest level the time constants are infinite, and so is every time.
     Broadcasts; the steps lie on a new first axis.
     """
-    x = _levels(cut, np.asarray(load.j_s * np.asarray(carried)).ndim)
-    i = led_current_for(transfer, carried, 1.0, x * load.j_s)
+    x, log_x = _levels(cut, np.asarray(load.j_s * np.asarray(carried)).ndim)
+    log_j = np.log(load.j_s) + log_x
+    i = led_current_of_log(transfer, log_j - np.log(carried))
     reached = np.isfinite(i[-1:])
-    i = np.where(reached, i, x * transfer.curve_i[-1])
-    v_b = base_voltage(base, x * load.j_s, load.t)
+    if not reached.all():
+        i = np.where(reached, i, x * transfer.curve_i[-1])
+    v_b = base_voltage_of_log(base, log_j, load.t)
     q, v = base_charge(base, load, x, v_b) / base.eta, v_b / base.v_be
     rc = np.asarray(load.r_load) * load.c_load
     shape = np.broadcast_shapes(q.shape, i.shape, rc.shape, v.shape)
@@ -119,7 +121,7 @@ def steps(base: Base, load: Load, transfer: Transfer, carried: Real, cut: Cut) -
         i_low=i[:-1],
         i_high=i[1:],
         hold=np.asarray((v[1:] + v[:-1]) / 2),
-        least=np.broadcast_to(rc * np.diff(np.log(x), axis=0), (shape[0] - 1, *shape[1:])),
+        least=np.broadcast_to(rc * np.diff(log_x, axis=0), (shape[0] - 1, *shape[1:])),
         lag=np.broadcast_to(_lag(base, load, cut), shape[1:]),
     )
 
@@ -128,11 +130,17 @@ def _lag(base: Base, load: Load, cut: Cut) -> Array:
     return np.asarray(base.transit * load.c_load * load.swing * (np.asarray(cut.last) - cut.first) / base.eta)
 
 
-def _levels(cut: Cut, dimensions: int) -> Array:
-    """Shares of the swing on a new first axis, before `dimensions` others."""
+def _levels(cut: Cut, dimensions: int) -> tuple[Array, Array]:
+    """Shares of the swing on a new first axis, before `dimensions` others, and their logarithms."""
     first, last = np.asarray(cut.first, dtype=float), np.asarray(cut.last, dtype=float)
-    share = np.linspace(0.0, 1.0, cut.count + 1).reshape(-1, *(1,) * max(dimensions, first.ndim, last.ndim))
-    return np.asarray(first * (last / first) ** share)
+    step = np.log(last / first) / cut.count
+    at = np.arange(cut.count + 1.0).reshape(-1, *(1,) * max(dimensions, first.ndim, last.ndim))
+    ratio = np.exp(step)
+    levels = [np.broadcast_to(first, np.broadcast_shapes(ratio.shape, at.shape[1:]))]
+    for _ in range(cut.count):
+        levels.append(levels[-1] * ratio)
+    x = np.stack(levels)
+    return x, np.log(first) + at * step
 
 
 def time_on(s: Steps, n: Real) -> Array:
@@ -170,7 +178,7 @@ def edge_off(s: Steps, cut: Cut, i_be: Real, i_rest: Real) -> Array:
     over LED current, by (1 - r)*(x_b^a - x_a^a)/(y_b^a - y_a^a); neither is taken below 1. Broadcasts.
     """
     i_be, rest = np.asarray(i_be), np.asarray(i_rest)
-    x = _levels(cut, s.i_low.ndim - 1)
+    x, _ = _levels(cut, s.i_low.ndim - 1)
     a = np.log(s.i_high[-1] / s.i_low[0]) / np.log(x[-1] / x[0])
     kept = np.clip((rest - s.hold[0] * i_be) / (s.i_high[-1] * x[-1] ** -a), 0.0, 1.0 - 1e-6)
     r = kept ** (1.0 / a)

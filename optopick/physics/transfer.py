@@ -7,6 +7,9 @@ import numpy as np
 from optopick.coupler import Transfer
 from optopick.physics.types import Array, Real
 
+ROUNDING = 1e-12
+"""Share by which a current may exceed the curve's last point."""
+
 
 def relative_ctr(transfer: Transfer, i: Real) -> Array:
     """CTR at LED current `i` over CTR at the test current [1], log-log through the table's points.
@@ -33,14 +36,18 @@ def led_current_for(transfer: Transfer, ctr: Real, h: Real, j: Real) -> Array:
 
     Infinite where the curve's last point does not reach `j`. Broadcasts.
     """
+    return led_current_of_log(transfer, np.log(np.asarray(j, dtype=float) / (np.asarray(ctr) * h)))
+
+
+def led_current_of_log(transfer: Transfer, wanted: Array) -> Array:
+    """The same from ln[j/(ctr*h)], j/(ctr*h) in A."""
     log_i = np.log(transfer.curve_i)
     log_ig = log_i + np.log(transfer.curve_g)
-    wanted = np.log(np.asarray(j, dtype=float) / (np.asarray(ctr) * h))
     slope = (log_i[1] - log_i[0]) / (log_ig[1] - log_ig[0])
     inside = np.interp(wanted, log_ig, log_i)
     below = log_i[0] + slope * (wanted - log_ig[0])
     found = np.exp(np.where(wanted < log_ig[0], below, inside))
-    return np.asarray(np.where(wanted > log_ig[-1] * (1 + 1e-12), np.inf, found))
+    return np.asarray(np.where(wanted > log_ig[-1] + ROUNDING, np.inf, found))
 
 
 def temperature_factor(transfer: Transfer, t: Real) -> Array:
@@ -68,4 +75,4 @@ def _log_curve(i: Array, transfer: Transfer) -> Array:
     at = np.log(i)
     slope = (log_g[1] - log_g[0]) / (log_i[1] - log_i[0])
     g = np.where(at < log_i[0], log_g[0] + slope * (at - log_i[0]), np.interp(at, log_i, log_g))
-    return np.asarray(np.where(i > transfer.curve_i[-1] * (1 + 1e-12), np.nan, np.exp(at + g)))
+    return np.asarray(np.where(i > transfer.curve_i[-1] * (1 + ROUNDING), np.nan, np.exp(at + g)))
