@@ -18,6 +18,7 @@ from optopick.physics.saturation import (
     smallest_base_resistor,
     smallest_load,
     v_ce_on,
+    v_ce_on_load_line,
 )
 
 UNHURRIED = settings(deadline=None, max_examples=60)
@@ -123,3 +124,26 @@ def test_everything_broadcasts():
     assert v.shape == (4, 2, 3)
     assert overdrive_to_hold(v + 0.01, 0.3, 4.0, h_fe, 5.0, t).shape == (4, 2, 3)
     assert v[1, 1, 2] == v_ce_on(0.3, 4.0, float(k[1, 0, 0]), 900.0, 5.0, 60.0)
+
+
+@pytest.mark.parametrize("seed", range(4))
+def test_on_the_load_line(seed):
+    """Against bisection, drives from hardly enough to plenty, and too little ones, which stay at the supply's end."""
+    rng = np.random.default_rng(seed)
+    n = 400
+    v_cc, r_load = rng.uniform(3.0, 24.0, n), 10 ** rng.uniform(2.5, 5.0, n)
+    drive, h_fe, t = (
+        (v_cc / r_load) * 10 ** rng.uniform(-0.7, 2.0, n),
+        rng.uniform(60, 900, n),
+        rng.uniform(-40, 100, n),
+    )
+    v_sat, i_input = rng.uniform(0.1, 0.4, n), float(rng.choice([0.0, 20e-6]))
+    found = v_ce_on_load_line(v_sat, 6.0, drive, h_fe, 4.0, t, v_cc, r_load, i_input)
+
+    low, high = np.zeros(n), v_cc.copy()
+    for _ in range(60):
+        v = (low + high) / 2
+        above = v_ce_on(v_sat, 6.0, drive / load_current(v_cc, v, r_load, i_input), h_fe, 4.0, t) > v
+        low, high = np.where(above, v, low), np.where(above, high, v)
+    assert found == pytest.approx((low + high) / 2, abs=1e-9)
+    assert np.ptp(found) > 1.0

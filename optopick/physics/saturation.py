@@ -7,6 +7,12 @@ import numpy as np
 from optopick.physics.led import thermal_voltage
 from optopick.physics.types import Array, Real
 
+NO_DRIVE = 1e-18
+"""Collector current that stands for none [A]."""
+
+STEPS_TO_MEET, MEETS = 100, 1e-12
+"""Of `v_ce_on_load_line`: the most steps, and the last step at which it stops [V]."""
+
 
 def load_current(v_cc: Real, v_ce: Real, r_load: Real, i_input: Real = 0.0) -> Array:
     """Current the output must carry at `v_ce` [A]: (v_cc - v_ce)/r_load + i_input.
@@ -57,6 +63,46 @@ def v_ce_on(v_ce_sat: Real, overdrive_sheet: Real, overdrive: Real, h_fe: Real, 
     safe = np.where(k > 1, k, 2.0)
     ratio = saturation_shape(safe, h_fe, beta_r) / saturation_shape(overdrive_sheet, h_fe, beta_r)
     return np.asarray(np.where(k > 1, v_ce_sat + thermal_voltage(t) * np.maximum(np.log(ratio), 0.0), np.inf))
+
+
+def v_ce_on_load_line(  # noqa: PLR0913, PLR0917 - the transistor's and the load line's quantities
+    v_ce_sat: Real,
+    overdrive_sheet: float,
+    drive: Real,
+    h_fe: Real,
+    beta_r: float,
+    t: Real,
+    v_cc: Real,
+    r_load: Real,
+    i_input: float,
+) -> Array:
+    """Collector-emitter voltage where `v_ce_on` meets the load line [V], from 0 to v_cc, to within MEETS.
+
+    v = v_ce_on(drive/load_current(v)): the left side rises, the right side falls, so there is one such v. drive [A]:
+    collector current that the light could drive. By Newton's method, and by halving where that leaves the bracket.
+    Broadcasts.
+    """
+    parts = np.broadcast_arrays(*(np.asarray(x, dtype=float) for x in (v_ce_sat, drive, h_fe, t, v_cc, r_load)))
+    floor, drive, h_fe, t, v_cc, r_load = parts
+    drive = np.maximum(drive, NO_DRIVE)
+    v_t, slope, inverse_alpha = thermal_voltage(t), 1.0 / (r_load * drive), (1.0 + beta_r) / beta_r
+    sheet = saturation_shape(overdrive_sheet, h_fe, beta_r)
+    low, high, v = np.zeros_like(floor), np.array(v_cc), np.minimum(floor, v_cc)
+    for _ in range(STEPS_TO_MEET):
+        y = load_current(v_cc, v, r_load, i_input) / drive
+        left, lost = inverse_alpha + y * h_fe / beta_r, 1.0 - y
+        carries = lost > 0
+        rise = v_t * np.log(left / (np.where(carries, lost, 1.0) * sheet))
+        above = np.where(carries, floor + np.maximum(rise, 0.0) - v, np.inf)
+        low, high = np.where(above > 0, v, low), np.where(above > 0, high, v)
+        fall = np.where(rise > 0, v_t * slope * (h_fe / beta_r / left + 1.0 / np.where(carries, lost, 1.0)), 0.0)
+        guess = v + np.where(carries, above, 0.0) / (1.0 + fall)
+        inside = carries & (guess >= low) & (guess <= high)
+        moved = np.where(inside, guess, (low + high) / 2)
+        if np.all(np.abs(moved - v) <= MEETS):
+            return np.asarray(moved)
+        v = moved
+    return np.asarray(v)
 
 
 def overdrive_to_hold(v_ce: Real, v_ce_sat: Real, overdrive_sheet: Real, h_fe: Real, beta_r: float, t: Real) -> Array:

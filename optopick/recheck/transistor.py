@@ -13,7 +13,7 @@ from optopick.physics import switching
 from optopick.physics.charge import Base, Load
 from optopick.physics.heat import derated, output_dissipation, resistor_derated
 from optopick.physics.leakage import dark_current, dark_current_held, raised
-from optopick.physics.saturation import junction_part, load_current, rise_with_current, v_ce_on
+from optopick.physics.saturation import junction_part, load_current, rise_with_current, v_ce_on_load_line
 from optopick.physics.transfer import (
     base_led_current,
     collector_current,
@@ -29,9 +29,6 @@ from optopick.recheck.measured import Measured
 from optopick.recheck.stage import StageReview, Times
 from optopick.recheck.vertices import Vertices, rating_of
 from optopick.result import Design
-
-BISECTIONS = 48
-"""Halvings of the supply: far below a microvolt."""
 
 
 @dataclass(frozen=True)
@@ -134,7 +131,7 @@ def static_checks(brief: Brief, coupler: Coupler, box: Vertices, branch: LedBran
 def _v_ce(coupler: Coupler, box: Vertices, s: Stage, drive: Array) -> Array:
     """Collector-emitter voltage on [V]: where the transistor's saturation curve meets the load line.
 
-    The sheet's own figure wherever the drive there is at least the sheet's; elsewhere by bisection.
+    The sheet's own figure wherever the drive there is at least the sheet's.
     """
     transfer, transistor = parts_of(coupler)
     sheet = float(collector_current(transfer, transfer.ctr_min, 1.0, transistor.sat_i_f)) / transistor.sat_i_c
@@ -146,29 +143,10 @@ def _v_ce(coupler: Coupler, box: Vertices, s: Stage, drive: Array) -> Array:
     weak = drive < sheet * load_current(box.v_cc, v_sat, box.r_load, s.i_input)
     if np.any(weak):
         mask = np.broadcast_to(weak, found.shape)
-        found[mask] = _bisected(transistor, sheet, s.i_input, *(part[mask] for part in wide))
+        j, v, h_fe, v_cc, r_load, t = (part[mask] for part in wide)
+        found[mask] = v_ce_on_load_line(v, sheet, j, h_fe, transistor.beta_r, t, v_cc, r_load, s.i_input)
     found[np.isnan(wide[0])] = np.nan  # beyond the CTR curve nothing is known
     return found
-
-
-def _bisected(  # noqa: PLR0913, PLR0917 - the load line's and the transistor's quantities
-    transistor: Transistor,
-    sheet: float,
-    i_input: float,
-    drive: Array,
-    v_sat: Array,
-    h_fe: Array,
-    v_cc: Array,
-    r_load: Array,
-    t: Array,
-) -> Array:
-    low, high = np.zeros_like(v_cc), v_cc.copy()
-    for _ in range(BISECTIONS):
-        v = (low + high) / 2
-        overdrive = drive / load_current(v_cc, v, r_load, i_input)
-        above = v_ce_on(v_sat, sheet, overdrive, h_fe, transistor.beta_r, t) > v
-        low, high = np.where(above, v, low), np.where(above, high, v)
-    return np.asarray((low + high) / 2)
 
 
 def _input_off(brief: Brief) -> float:
