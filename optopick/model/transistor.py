@@ -130,7 +130,10 @@ class TransistorModel:
         return self.brief.output.circuit == "pull-up"
 
     def _static(self, dropped: frozenset[str]) -> Iterator[Rows]:
-        return (block for block in self._all_static if block.names[0] not in dropped)
+        level_on = "output_low" if self._pulled_up else "output_high"
+        # that the output conducts at all is part of the level that it must reach
+        left_out = dropped | {"conducts"} if level_on in dropped else dropped
+        return (block for block in self._all_static if block.names[0] not in left_out)
 
     def _edges(self, ask: Ask) -> Iterator[Rows]:
         """Edge on: i_eff - i_be >= phi[j], exact; edge off: i_be >= rho[j], exact where all branches leave alike."""
@@ -182,19 +185,17 @@ class TransistorModel:
         """Delay on within `limit` (C, 2, n): the crossing beside the shortest charging."""
         x = self.candidates
         charge = switching.charging(x.load.swing.charge, self._eta, strong.i_low, strong.i_be_high)
-        phi = switching.drive_for_crossing_on(x.load.swing.on, limit - charge, switching.NEAR)
+        phi = switching.drive_for_crossing_on(x.load.swing.on, _left(limit, charge), switching.NEAR)
         yield scaled("delay_on", x.i_low, -phi.max(axis=1), -x.base.i_be_high)
 
     def _off_rows(self, limit: Array, weak: Extremes) -> Iterator[Rows]:
         """Delay off within `limit` (C, 2, n): the fall beside the shortest storage, and the storage beside the fall."""
         x, swing = self.candidates, self.candidates.load.swing
         held = switching.storage(x.tau_s, weak.i_high, weak.i_be_low, swing.i_sat, swing.hold, weak.i_rest)
-        rho = switching.extraction_for(swing.off, limit - held, weak.i_rest, switching.NEAR)
+        rho = switching.extraction_for(swing.off, _left(limit, held), weak.i_rest, switching.NEAR)
         yield scaled("delay_off", np.zeros(self.sizes[0]), -rho.max(axis=1), x.base.i_be_low)
         fall = switching.time_off(swing.off, weak.i_be_low, weak.i_rest)
-        with np.errstate(invalid="ignore"):
-            left = np.nan_to_num((limit - fall) / x.tau_s, nan=50.0)
-        stretch = np.exp(np.clip(left, -50.0, 50.0))
+        stretch = np.exp(np.clip(_left(limit, fall) / x.tau_s, -50.0, 50.0))
         room = (stretch * (swing.i_sat - weak.i_rest)).min(axis=1)
         most = (stretch * swing.hold).max(axis=(1, 2))[:, None]
         yield scaled("storage", -x.i_high, room, most * x.base.i_be_low)
@@ -270,6 +271,11 @@ class TransistorModel:
         need = fails.sum(axis=1) / len(order)
         worse = taken >= taken[m] if family.more_base_hurts else taken <= taken[m]
         return Rows((family.name,), rank[None, :], -need[None, :], np.where(worse, 0.0, 1.0)[None, :])
+
+
+def _left(limit: Array, spent: Array) -> Array:
+    """What is left of a limit; of an endless one, all."""
+    return np.where(np.isposinf(limit), np.inf, limit - np.where(np.isposinf(limit), 0.0, spent))
 
 
 def _spread(live: Index, count: int) -> Index:

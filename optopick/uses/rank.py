@@ -114,17 +114,18 @@ def rejection(brief: Brief, entry: Entry) -> str:
 
 def _at_least(brief: Brief, entry: Entry, conflict: Sequence[str]) -> str:
     """How far a limit is missed where only those that it contradicts are kept beside it."""
-    others = [check_label(name) for name in conflict[1:]]
+    kept = " and ".join(check_label(name) for name in conflict[1:])
     dropped = frozenset(limits_of(brief)) - frozenset(conflict[1:])
     goal, ask = NEAREST_BY.get(conflict[0], brief.goal.minimize), ask_of(brief, dropped)
     look = first_look(entry.model, goal, ask)
     if look.choice is None and not np.isinf(look.bound):
         look = best(entry.model, goal, ask, Clock())
     if look.choice is None:
-        return ", ".join([check_label(conflict[0]), *others]) if others else f"{check_label(conflict[0])} never met"
-    reviewed = review(brief, entry.coupler, design_of(brief, entry, look.choice))
-    missed = _miss(next(check for check in reviewed.checks if check.name == conflict[0]))
-    return f"{missed} with {', '.join(others)} kept" if others else missed
+        missed = check_label(conflict[0]) + ("" if kept else " never met")
+    else:
+        reviewed = review(brief, entry.coupler, design_of(brief, entry, look.choice))
+        missed = _miss(next(check for check in reviewed.checks if check.name == conflict[0]))
+    return f"{missed} with {kept} kept" if kept else missed
 
 
 def _judge(brief: Brief, entry: Entry) -> Contradicts:
