@@ -163,7 +163,7 @@ def times(coupler: Coupler, x: Lot, s: Swing, i_eff, i_off, r_be) -> Times:
         np.where(np.isinf(a) & np.isinf(c), np.inf, a - c) for a, c in ((off, on_soon), (charge + to_late, off_soon))
     ]
     return Times(
-        edge_on=np.where(n > 0, climb(s.edge, enough) * enough / np.where(n > 0, n, 1.0), np.inf),
+        edge_on=np.where(n < s.i_sat, np.inf, climb(s.edge, enough)),
         edge_off=slide(s.edge, (0.1, 0.9, STEPS), b, rest),
         storage=held + slide(s.tenth, (0.9, 1.0, 1), b, rest),
         delay_on=charge + to_late,

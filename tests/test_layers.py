@@ -21,13 +21,13 @@ PACKAGE = ROOT / "optopick"
 # Lowest first. A module may import what stands on a lower line, and its own package; `of_package` finds its line.
 LAYERS: tuple[tuple[str, ...], ...] = (
     ("errors", "units", "eseries", "toml_lines", "toml_text"),
-    ("brief", "coupler"),
+    ("brief", "coupler", "board"),
     ("physics",),
     (
         *("keys", "stock", "key_values", "read_keys", "brief_rules", "brief_stock", "read_brief", "brief_schema"),
         *("coupler_columns", "coupler_curves", "coupler_files", "coupler_cells", "gaps", "gaps_switching"),
         *("coupler_rows", "coupler_sheets", "read_couplers", "switching_rows", "switching_fit"),
-        *("corners", "result", "answers", "cautions"),
+        *("board_keys", "read_board", "corners", "result", "answers", "board_answers", "cautions"),
     ),
     ("model", "recheck", "simulate"),
     ("report",),

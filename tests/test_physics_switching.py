@@ -260,11 +260,11 @@ def test_extraction_against_what_is_left(rest, share, transfer):
 # --- ends ------------------------------------------------------------------------------------------------------------
 
 
-def test_the_on_edge_where_the_output_does_not_saturate_grows_as_the_drive_lacks():
+def test_the_on_edge_of_an_output_that_does_not_saturate_never_ends():
     s = whole(load=wide(LOAD, 1))
-    edge = switching.edge_on(s.edge, s.i_sat * np.array([1.0, 0.7, 1e-9, 0.0, -1.0]), s.i_sat)
-    assert edge[1:3] == pytest.approx(edge[0] / np.array([0.7, 1e-9]), rel=1e-12)
-    assert np.isinf(edge[3:]).all()
+    edge = switching.edge_on(s.edge, s.i_sat * np.array([1.0, 0.999, 1e-9, 0.0, -1.0]), s.i_sat)
+    assert np.isfinite(edge[0])
+    assert np.isinf(edge[1:]).all()
     assert switching.edge_on(s.edge, 1e3, s.i_sat) < 1e-9
 
 
@@ -313,7 +313,7 @@ def test_drive_for_edge_on_undoes_it(n, transfer):
     found = switching.drive_for_edge_on(s.edge, switching.edge_on(s.edge, drive, s.i_sat), s.i_sat)
     assert found == pytest.approx(drive, rel=1e-6)
     longer = 1.25 * switching.edge_on(s.edge, s.i_sat, s.i_sat)
-    assert switching.drive_for_edge_on(s.edge, longer, s.i_sat) == pytest.approx(0.8 * s.i_sat, rel=1e-9)
+    assert switching.drive_for_edge_on(s.edge, longer, s.i_sat) == s.i_sat
 
 
 @UNHURRIED

@@ -2,6 +2,7 @@
 
 from optopick.cli import (  # noqa: F401 - their commands join the group
     commands_bench,
+    commands_board,
     commands_design,
     commands_files,
     commands_start,

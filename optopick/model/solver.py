@@ -3,9 +3,12 @@
 from __future__ import annotations
 
 import io
+import sys
 import time
 from dataclasses import dataclass
 from enum import StrEnum
+from functools import cache
+from importlib import import_module
 from typing import Any
 
 import numpy as np
@@ -50,8 +53,33 @@ def solver_name() -> str:
     return f"HiGHS {version('highspy')} through Pyomo {version('pyomo')}"
 
 
+def highs_name() -> str:
+    """The solver of programs that go to HiGHS directly, and its version."""
+    from importlib.metadata import version  # noqa: PLC0415
+
+    return f"HiGHS {version('highspy')}"
+
+
+@cache
+def _load_pyomo() -> None:
+    """Import Pyomo as if scipy were not loaded yet.
+
+    Where it is, Pyomo imports scipy.stats and more of it at once, which it never needs for these models and which takes
+    longer than Pyomo itself; where it is not, Pyomo leaves that until first use.
+    """
+    scipy = {name: module for name, module in sys.modules.items() if name == "scipy" or name.startswith("scipy.")}
+    for name in scipy:
+        del sys.modules[name]
+    try:
+        import_module("pyomo.environ")
+        import_module("pyomo.contrib.solver.solvers.highs")
+    finally:
+        sys.modules.update(scipy)
+
+
 def build(problem: Problem) -> Any:
     """The Pyomo model: binaries `pick_led`, `pick_load`, `pick_base`, one chosen in each, and the rows in order."""
+    _load_pyomo()
     import pyomo.environ as pyo  # noqa: PLC0415 - half a second that help and input errors must not pay
     from pyomo.core.expr.numeric_expr import LinearExpression  # noqa: PLC0415
 
@@ -86,6 +114,7 @@ def _costs(problem: Problem) -> list[float]:
 
 def solve(problem: Problem, seconds: float) -> Outcome:
     """Solve with one thread and a fixed seed, within `seconds`. Infinite row entries must have been ranged out."""
+    _load_pyomo()
     from pyomo.contrib.solver.common.results import SolutionStatus, TerminationCondition  # noqa: PLC0415
     from pyomo.contrib.solver.solvers.highs import Highs  # noqa: PLC0415
 
@@ -147,13 +176,12 @@ class Solution:
     proved: bool
 
 
-def solve_program(
-    program: Program, seconds: float = np.inf, *, gap: float = 0.0, nodes: int | None = None, start: Array | None = None
-) -> Solution:
+def solve_program(program: Program, seconds: float = np.inf, *, gap: float = 0.0, nodes: int | None = None) -> Solution:
     """Least costs, with one thread and a fixed seed.
 
-    Ends within `gap` [1] of the bound, after `seconds`, or after so many nodes. start: a choice to begin with, (n,).
-    Goes to HiGHS without Pyomo, which has no way to hand over a start and rebuilds large programs term by term.
+    Ends within `gap` [1] of the bound, after `seconds`, or after so many nodes. Goes to HiGHS without Pyomo, which
+    builds large programs term by term. No start is handed over: with one, HiGHS 1.16.0 has been seen to give the start
+    back as the optimum, with costs and a bound that belong to nothing, where its presolve left nothing to do.
     """
     solver = _quiet_highs()
     options = {
@@ -172,12 +200,6 @@ def solve_program(
     for name, value in options.items():
         solver.setOptionValue(name, value)
     solver.passModel(_as_highs(program))
-    if start is not None:
-        import highspy  # noqa: PLC0415 - as above
-
-        known = highspy.HighsSolution()
-        known.col_value = start.tolist()
-        solver.setSolution(known)
     solver.run()
     return _solution(solver, program)
 
@@ -188,7 +210,7 @@ def _quiet_highs() -> Any:
     from pyomo.common.tee import capture_output  # noqa: PLC0415 - as above
 
     with capture_output(io.StringIO(), capture_fd=True):
-        return highspy.Highs()
+        return highspy.Highs()  # type: ignore[no-untyped-call]
 
 
 def _as_highs(program: Program) -> Any:
@@ -222,7 +244,12 @@ def _solution(solver: Any, program: Program) -> Solution:
     if info.primal_solution_status != int(highspy.SolutionStatus.kSolutionStatusFeasible):
         return Solution(Answer.OUT_OF_TIME, None, np.inf, bound, proved=False)
     chosen = np.asarray(solver.getSolution().col_value) > 0.5
-    return Solution(Answer.FOUND, chosen, float(program.costs @ chosen), bound, status == ended.kOptimal)
+    costs = float(program.costs @ chosen)
+    if bound > costs + 1e-6 * max(1.0, abs(costs)) or not np.isclose(costs, info.objective_function_value, rtol=1e-6):
+        raise RuntimeError(
+            f"the solver contradicts itself: costs {costs}, {info.objective_function_value}, bound {bound}"
+        )
+    return Solution(Answer.FOUND, chosen, costs, bound, status == ended.kOptimal)
 
 
 class Clock:

@@ -194,13 +194,11 @@ def edge_off(s: Steps, cut: Cut, i_be: Real, i_rest: Real) -> Array:
 def edge_on(s: Steps, n: Real, i_sat: Real) -> Array:
     """10 to 90 % of the swing as the LED lights [s], `s` cut by EDGE: `time_on`.
 
-    Where the drive does not saturate the output, i_sat/n times as long as at the edge of saturation: as long as of a
-    unit whose CTR lets this drive just saturate, so that no unit between two is slower than both. Infinite where
-    n <= 0. Broadcasts.
+    Infinite where n < i_sat: an output that does not saturate never ends its swing, and a unit whose CTR lets the drive
+    just saturate is slower than those at both ends of its bin. Broadcasts.
     """
-    n = np.asarray(n, dtype=float)
-    enough = np.maximum(n, i_sat)
-    return np.asarray(np.where(n > 0, time_on(s, enough) * enough / np.where(n > 0, n, 1.0), np.inf))
+    n, least = np.asarray(n, dtype=float), np.asarray(i_sat, dtype=float)
+    return np.asarray(np.where(n >= least, time_on(s, np.maximum(n, least)), np.inf))
 
 
 def charging(charge: Real, eta: Real, i_eff: Real, i_be: Real) -> Array:
@@ -243,10 +241,8 @@ def storage(tau_s: Real, i_eff: Real, i_be: Real, i_sat: Real, hold: Real = 1.0,
 
 
 def drive_for_edge_on(s: Steps, time: Real, i_sat: Real) -> Array:
-    """Least n [A] with edge_on <= time, below i_sat where the edge of saturation is fast enough. Broadcasts."""
-    slowest = time_on(s, i_sat)
-    share = np.where(np.isfinite(slowest), slowest, np.inf) / np.asarray(time, dtype=float)
-    return np.asarray(np.where(share <= 1.0, i_sat * share * SAFE, _least_drive(s, time, 0.0)))
+    """Least n [A] with edge_on <= time, i_sat where the edge of saturation is fast enough. Broadcasts."""
+    return np.asarray(np.maximum(_least_drive(s, time, 0.0), i_sat))
 
 
 def drive_for_crossing_on(s: Steps, time: Real, near: float = CONVERGED) -> Array:

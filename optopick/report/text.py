@@ -25,7 +25,7 @@ from optopick.report.words import (
     set_aside,
     verdict,
 )
-from optopick.result import Check, Design, Result, Review
+from optopick.result import Check, Design, Result, Review, Status
 
 
 def result_text(result: Result, title: str) -> RenderableType:
@@ -36,6 +36,8 @@ def result_text(result: Result, title: str) -> RenderableType:
 def _result_parts(result: Result, title: str) -> Iterator[RenderableType]:
     yield Text(title, style="bold")
     yield Text(_verdict(result), style="green" if result.review else "red")
+    if result.status is Status.INFEASIBLE:
+        yield Text("optopick why tells which limits stand in the way, and how far each would have to move.")
     if result.review:
         yield Text()
         yield from review_parts(result.review)

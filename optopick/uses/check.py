@@ -23,7 +23,7 @@ def design_from_text(coupler: str, texts: Mapping[str, str | None]) -> Design:
     for name, text in texts.items():
         try:
             counted = text.partition("x") if name == "r_led" and text else None
-            if counted and counted[1] and counted[0].strip() in ("1", "2", "3"):
+            if counted and counted[1] and counted[0].strip() in ("2", "3"):
                 pieces, text = int(counted[0]), counted[2]  # noqa: PLW2901
             ohms[name] = None if text is None else _positive(text)
         except QuantityError as error:

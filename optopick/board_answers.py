@@ -1,0 +1,67 @@
+"""What `board` answers: a design for every link, what they share, and how far that is proved. Frozen; SI throughout."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from optopick.board import BoardLink
+from optopick.result import Objective, Review, Status
+
+
+@dataclass(frozen=True)
+class LinkChoice:
+    """A link with its design, checked again, and the least power that it could have alone on a board [W]."""
+
+    link: BoardLink
+    review: Review
+    alone: float
+
+    @property
+    def power(self) -> float:
+        """Worst average power of one of it [W]."""
+        return self.review.power.worst
+
+    @property
+    def gave(self) -> float:
+        """What it gave up: how much more power than alone [1]."""
+        return self.power / self.alone - 1.0
+
+
+@dataclass(frozen=True)
+class BoardProof:
+    """How the answer was established: size of the last model, cuts, solver calls, seconds, the solver."""
+
+    columns: int
+    rows: int
+    cuts: int
+    solves: int
+    seconds: float
+    solver: str
+
+
+@dataclass(frozen=True)
+class BoardResult:
+    """The answer for a board.
+
+    goals: the first and the second, empty where there is no design. reels: the distinct resistances [ohm], ascending;
+    couplers: the distinct parts. hopeless: links that have no design even alone.
+    """
+
+    status: Status
+    goals: tuple[Objective, ...]
+    links: tuple[LinkChoice, ...]
+    reels: tuple[float, ...]
+    couplers: tuple[str, ...]
+    hopeless: tuple[str, ...]
+    proof: BoardProof
+    cautions: tuple[str, ...]
+
+    @property
+    def power(self) -> float:
+        """Worst average power of all links together [W]."""
+        return sum(one.link.count * one.power for one in self.links)
+
+    @property
+    def alone(self) -> float:
+        """The same with every link as if it were alone [W]."""
+        return sum(one.link.count * one.alone for one in self.links)

@@ -1,0 +1,45 @@
+"""`board`: every link of a product at once."""
+
+from __future__ import annotations
+
+import sys
+from pathlib import Path
+
+import click
+
+from optopick.cli.app import exit_code, json_option, main, progress, show, show_json, time_option
+
+# Imports stand inside the command: --help and input errors must not wait for the numerical libraries.
+# ruff: noqa: PLC0415
+
+
+@main.command()
+@click.argument("file", metavar="BOARD", type=click.Path(path_type=Path))
+@json_option
+@time_option
+@click.option("--csv", "csv_path", type=click.Path(path_type=Path), metavar="FILE", help="Write the bill of materials.")
+def board(file: Path, as_json: bool, time_limit: float, csv_path: Path | None) -> None:
+    """Choose every link of BOARD together, from a limited number of resistor values and couplers.
+
+    BOARD (TOML) names the links, each with its brief and count, and the limits that they share. Every link is checked
+    again alone.
+
+    Example: optopick board examples/plant/board.toml --csv parts.csv
+    """
+    from optopick.read_board import read_board
+
+    read = read_board(file)
+
+    from optopick.report.board import board_bill, board_object, board_text
+    from optopick.uses.board import solve_board
+
+    result = solve_board(read, time_limit=time_limit, progress=progress())
+    if csv_path is not None and result.links:
+        from optopick.cli.files import write_text
+
+        write_text(csv_path, board_bill(result))
+    if as_json:
+        show_json(board_object(result, read.title, read.limits))
+    else:
+        show(board_text(result, read.title, read.limits))
+    sys.exit(exit_code(result.status))

@@ -1,0 +1,248 @@
+"""The best board under caps, with its proof: narrow, solve, evaluate exactly, cut, and solve again."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass, replace
+
+import numpy as np
+
+from optopick.board import BoardGoalName
+from optopick.brief import GoalName
+from optopick.coupler import Coupler
+from optopick.model.board import BoardProgram, Caps, Seat, Taken, narrower, repaired, seat_of, sharpened, with_cuts
+from optopick.model.kinds import LinkModel
+from optopick.model.rows import Ask
+from optopick.model.search import STEP, first_look
+from optopick.model.solver import Answer, Clock, Solution, solve_program
+
+LOOSE = 0.01
+"""Gap [1] to which the first rounds are solved, until the exact times refuse nothing."""
+
+SKETCH_GAP = 0.05
+"""Gap [1] to which a first board is looked for among a few couplers."""
+
+SKETCH_NODES = 200
+"""Nodes after which each round over a few couplers ends: a good board to start from is all that is wanted."""
+
+SKETCH_SEATS = 3
+"""Couplers a link that such a round sees, besides those that serve most links."""
+
+Told = Callable[[str, int, int], None]
+
+
+@dataclass(frozen=True)
+class Place:
+    """One link of the model: couplers that may serve it with their models, what is asked, how many there are.
+
+    least: a bound on the power of one of it [W].
+    """
+
+    couplers: tuple[tuple[Coupler, LinkModel], ...]
+    ask: Ask
+    count: int
+    least: float
+
+
+@dataclass(frozen=True)
+class BoardFound:
+    """The best board, the goal's value (infinite without one), and the bound below which there is none."""
+
+    taken: tuple[Taken, ...] | None
+    value: float
+    bound: float
+
+    @property
+    def proved(self) -> bool:
+        """Whether nothing better exists; nothing at all where there is no board."""
+        return self.bound >= self.value * (1 - 4 * STEP)
+
+
+@dataclass
+class Size:
+    """Size of the last program, and the cuts made."""
+
+    columns: int = 0
+    rows: int = 0
+    cuts: int = 0
+
+
+class BoardSearch:
+    """Searches over the same links for one goal after the other; what one finds out the next uses."""
+
+    def __init__(self, places: Sequence[Place], clock: Clock, told: Told) -> None:
+        self.places, self.clock, self.told = places, clock, told
+        self.counts = [place.count for place in places]
+        self.floor = sum(place.count * place.least for place in places)
+        self.scale = self.floor or 1.0
+        self.size = Size()
+        self.kept: tuple[float, list[Seat]] = (0.0, [])
+
+    def least(self, goal: BoardGoalName, caps: Caps, start: Sequence[Taken] | None = None) -> BoardFound:
+        """The least `goal` under `caps`; start: a board that keeps them."""
+        best = BoardFound(None, np.inf, self.floor if goal is BoardGoalName.POWER else 1.0)
+        if start is not None:
+            best = replace(best, taken=tuple(start), value=self.value(start, goal))
+        if self.clock.out:
+            return best
+        if goal is BoardGoalName.POWER and (best.taken is None or not np.isfinite(caps.power)):
+            best = self._sketched(caps, best)
+        power = min(caps.power, best.value) if goal is BoardGoalName.POWER else caps.power
+        seats = self._seats(power)
+        if seats is None:
+            return replace(best, bound=best.value)
+        if not seats:
+            return best
+        self.kept = (power, seats)
+        return self._rounds(seats, goal, caps, best, LOOSE if goal is BoardGoalName.POWER else 0.0)
+
+    def value(self, taken: Sequence[Taken], goal: BoardGoalName) -> float:
+        """What a board comes to in a goal."""
+        if goal is BoardGoalName.POWER:
+            return float(sum(count * one.power for count, one in zip(self.counts, taken, strict=True)))
+        if goal is BoardGoalName.REELS:
+            return float(len(set().union(*(one.reels for one in taken))))
+        return float(len({one.seat.coupler.part for one in taken}))
+
+    def _room(self, link: int, power: float) -> float:
+        """The most that one of a link may take where all together take `power` at most [W]."""
+        place = self.places[link]
+        return (power * (1 + 2 * STEP) - (self.floor - place.count * place.least)) / place.count
+
+    def _seats(self, power: float) -> list[Seat] | None:
+        """Every seat that is left where the board takes `power` at most; None where a link has none.
+
+        Empty where time ran out first.
+        """
+        found: list[Seat] = []
+        # seats narrowed for more power hold all that less power leaves
+        before = self.kept[1] if power <= self.kept[0] else []
+        for link, place in enumerate(self.places):
+            if self.clock.out:
+                return []
+            self.told("narrowing links", link, len(self.places))
+            asked = place.ask.limited(GoalName.POWER, self._room(link, power))
+            if before:
+                mine = [narrower(seat, asked) for seat in before if seat.link == link]
+            else:
+                mine = [seat_of(link, coupler, model, asked) for coupler, model in place.couplers]
+            kept = _sharp(mine)
+            if not kept:
+                return None
+            found += kept
+        return found
+
+    def _sketched(self, caps: Caps, best: BoardFound) -> BoardFound:
+        """A good board from few couplers, if they have a better one than `best`; the bound stays as it was."""
+        seats = self._few(caps, min(caps.power, best.value))
+        if seats is None:
+            return best
+        found = self._rounds(seats, BoardGoalName.POWER, caps, best, SKETCH_GAP, nodes=SKETCH_NODES)
+        return replace(found, bound=best.bound)
+
+    def _few(self, caps: Caps, power: float) -> list[Seat] | None:
+        """Seats of the couplers that look best for each link, and of those that look best for most."""
+        looks: list[list[tuple[float, Coupler, LinkModel]]] = []
+        for link, place in enumerate(self.places):
+            asked = place.ask.limited(GoalName.POWER, self._room(link, power))
+            found = [(first_look(m, GoalName.POWER, asked), c, m) for c, m in place.couplers]
+            mine = [(look.value, c, m) for look, c, m in found if look.choice is not None]
+            looks.append(sorted(mine, key=lambda one: one[0]))
+        shared = self._shared(looks, caps)
+        seats: list[Seat] = []
+        for link, mine in enumerate(looks):
+            if self.clock.out:
+                return None
+            self.told("a first board", link, len(looks))
+            picked = [(c, m) for n, (_, c, m) in enumerate(mine) if n < SKETCH_SEATS or c.part in shared]
+            asked = self.places[link].ask.limited(GoalName.POWER, self._room(link, power))
+            kept = _sharp([seat_of(link, coupler, model, asked) for coupler, model in picked])
+            if not kept:
+                return None
+            seats += kept
+        return seats
+
+    def _shared(self, looks: Sequence[Sequence[tuple[float, Coupler, LinkModel]]], caps: Caps) -> set[str]:
+        """Parts taken one by one, each the one that brings the total of the first looks down most."""
+        values = [{coupler.part: value for value, coupler, _ in mine} for mine in looks]
+        # a link that no part taken serves counts as ten times its best
+        now = [10 * min(mine.values(), default=0.0) for mine in values]
+        taken: list[str] = []
+        while len(taken) < min(caps.couplers, SKETCH_SEATS):
+            gains = {
+                part: sum(
+                    count * max(0.0, old - mine.get(part, np.inf))
+                    for count, old, mine in zip(self.counts, now, values, strict=True)
+                )
+                for part in sorted({part for mine in values for part in mine} - set(taken))
+            }
+            if not gains:
+                break
+            part = max(gains, key=lambda name: gains[name])
+            taken.append(part)
+            now = [min(old, mine.get(part, np.inf)) for old, mine in zip(now, values, strict=True)]
+        return set(taken)
+
+    def _rounds(
+        self,
+        seats: list[Seat],
+        goal: BoardGoalName,
+        caps: Caps,
+        best: BoardFound,
+        gap: float,
+        nodes: int | None = None,
+    ) -> BoardFound:
+        """Solver calls, with cuts for what the exact times refuse, until one answer stands."""
+        while not self.clock.out:
+            built = BoardProgram(seats, self.counts, caps, goal, self.scale)
+            program = built.program()
+            self.size.columns, self.size.rows = built.size, len(program.low)
+            solution = solve_program(program, self.clock.left, gap=gap, nodes=nodes)
+            self.clock.solves += 1
+            best = replace(best, bound=max(best.bound, self._bound(solution, goal)))
+            if solution.answer is Answer.NONE:
+                # nothing but what is known already
+                return replace(best, bound=best.value)
+            if solution.chosen is None:
+                return best
+            taken = built.taken(solution.chosen)
+            refused = [one for one in taken if not one.sound]
+            self.told(f"least {goal.value}, links that fail", len(refused), len(taken))
+            if refused:
+                best = self._better(best, repaired(seats, taken), goal, caps)
+                if nodes is not None and best.taken is not None:
+                    return best
+                seats = self._cut(seats, refused)
+                continue
+            value = self.value(taken, goal)
+            if value < best.value:
+                best = replace(best, taken=tuple(taken), value=value)
+            if nodes is not None or best.proved or (solution.proved and gap <= STEP):
+                return replace(best, bound=min(best.bound, best.value))
+            if solution.proved:
+                gap = STEP
+        return best
+
+    def _better(self, best: BoardFound, taken: Sequence[Taken] | None, goal: BoardGoalName, caps: Caps) -> BoardFound:
+        """The better of the best so far and a board that keeps the caps but for that on power, which may not."""
+        if taken is None or self.value(taken, BoardGoalName.POWER) > caps.power:
+            return best
+        value = self.value(taken, goal)
+        return replace(best, taken=tuple(taken), value=value) if value < best.value else best
+
+    def _bound(self, solution: Solution, goal: BoardGoalName) -> float:
+        """The solver's bound in the goal's unit; whole numbers are rounded up."""
+        if goal is BoardGoalName.POWER:
+            return solution.bound * self.scale
+        return float(np.ceil(solution.bound - 1e-6)) if np.isfinite(solution.bound) else solution.bound
+
+    def _cut(self, seats: Sequence[Seat], refused: Sequence[Taken]) -> list[Seat]:
+        self.size.cuts += len(refused)
+        by_seat = {id(one.seat): one.choice for one in refused}
+        return [with_cuts(seat, by_seat[id(seat)]) if id(seat) in by_seat else seat for seat in seats]
+
+
+def _sharp(seats: Sequence[Seat | None]) -> list[Seat]:
+    """The seats that have a design, small ones sharpened."""
+    found = (sharpened(seat) for seat in seats if seat is not None)
+    return [seat for seat in found if seat is not None]

@@ -1,0 +1,150 @@
+"""`board` as a user meets it: exit codes, terminal, JSON, the bill of materials, limits that cannot be kept."""
+
+from __future__ import annotations
+
+import csv
+from pathlib import Path
+
+import pytest
+from cli_links import CHECK, FIELDS, TINY, json_of
+from command import run
+
+TWO = """\
+title = "Two links"
+[limits]
+{limits}
+[goal]
+minimize = "{goal}"
+[[link]]
+name = "first"
+brief = "{first}"
+count = 3
+[[link]]
+name = "second"
+brief = "{second}"
+"""
+
+
+def tighter(folder: Path, name: str, *changes: tuple[str, str]) -> Path:
+    """The tiny brief with texts replaced."""
+    text = TINY.read_text(encoding="utf-8").replace('"tiny.csv"', f'"{TINY.with_name("tiny.csv")}"')
+    for old, new in changes:
+        assert old in text, old
+        text = text.replace(old, new, 1)
+    path = folder / name
+    path.write_text(text, encoding="utf-8")
+    return path
+
+
+@pytest.fixture
+def board(tmp_path):
+    """Writes a board of two links, the second of which is slower."""
+
+    def write(limits: str = "", goal: str = "power", second: tuple[tuple[str, str], ...] = ()) -> Path:
+        one = tighter(tmp_path, "one.toml")
+        slower = (("edge_time", "#edge_time"), ("delay", "#delay"), ('["2k2", "4k7", "10k"]', '["4k7", "10k", "12k"]'))
+        two = tighter(tmp_path, "two.toml", *slower, *second)
+        path = tmp_path / "board.toml"
+        path.write_text(TWO.format(limits=limits, goal=goal, first=one.name, second=two.name), encoding="utf-8")
+        return path
+
+    return write
+
+
+def test_the_terminal(board):
+    ran = run("board", board("reels = 4"))
+    assert ran.code == 0, ran
+    assert ran.err == ""
+    for words in ("Two links", "Least power", "(proved)", "first", "3 ×", "second", "Reels", "of 4", "Caution"):
+        assert words in ran.out
+
+
+def test_json(board):
+    found = json_of(run("board", board("reels = 4\ncouplers = 2"), "--json"))
+    assert found["status"] == "optimal"
+    assert [goal["name"] for goal in found["goals"]] == ["power", "reels"]
+    assert set(found["goals"][0]) == FIELDS["objective"]
+    assert [(link["name"], link["count"]) for link in found["links"]] == [("first", 3), ("second", 1)]
+    for link in found["links"]:
+        assert FIELDS["design"] <= set(link["design"])
+        assert all(set(check) == CHECK and check["passed"] for check in link["checks"])
+        assert link["gave"] == pytest.approx(link["power"]["worst"] / link["power_alone"] - 1)
+    total = sum(link["count"] * link["power"]["worst"] for link in found["links"])
+    assert found["power"] == pytest.approx(total) == pytest.approx(found["goals"][0]["value"])
+    assert len(found["reels"]) <= 4
+    assert found["limits"] == {"reels": 4, "couplers": 2, "power": None}
+
+
+def test_fewer_reels_cost_power(board):
+    free, few = (json_of(run("board", board(limits), "--json")) for limits in ("", "reels = 3"))
+    assert len(few["reels"]) == 3 < len(free["reels"])
+    assert few["power"] > free["power"]
+
+
+def test_the_bill(board, tmp_path):
+    path = tmp_path / "parts.csv"
+    found = json_of(run("board", board(), "--json", "--csv", path))
+    lines = list(csv.DictReader(path.read_text(encoding="utf-8").splitlines()))
+    assert set(lines[0]) == {"quantity", "value", "tolerance", "rating", "used"}
+    couplers = lines[: len(found["couplers"])]
+    assert [line["value"] for line in couplers] == found["couplers"]
+    assert sum(int(line["quantity"]) for line in couplers) == 4
+    resistors = lines[len(found["couplers"]) :]
+    assert len(resistors) == len(found["reels"])
+    names = ("r_led", "r_load", "r_be", "r_shunt")
+    placed = sum(link["count"] for link in found["links"] for name in names if link["design"][name] is not None)
+    assert sum(int(line["quantity"]) for line in resistors) == placed
+    assert all(line["tolerance"] == "1 %" for line in resistors)
+    assert "first r_load" in "".join(line["used"] for line in resistors)
+
+
+def test_too_few_reels(board, tmp_path):
+    path = board("reels = 2")
+    ran = run("board", path, "--csv", tmp_path / "parts.csv")
+    assert ran.code == 3
+    assert "though every link has designs alone" in ran.out
+    assert not (tmp_path / "parts.csv").exists()
+    found = json_of(run("board", path, "--json"))
+    assert (found["status"], found["links"], found["power"]) == ("infeasible", [], None)
+
+
+def test_a_link_without_any_design(board):
+    path = board(second=(('power = "40 mW"', 'power = "1 mW"'),))
+    ran = run("board", path)
+    assert ran.code == 3
+    assert "second has no design even alone" in ran.out
+    assert json_of(run("board", path, "--json"))["hopeless"] == ["second"]
+
+
+def test_out_of_time(board):
+    ran = run("board", board(), "--time-limit", "0")
+    assert ran.code == 4
+    assert "Out of time" in ran.out
+
+
+def test_least_reels_then_power(board):
+    found = json_of(run("board", board(goal="reels"), "--json"))
+    assert [goal["name"] for goal in found["goals"]] == ["reels", "power"]
+    assert found["goals"][0]["value"] == len(found["reels"]) == 3
+
+
+@pytest.mark.parametrize(
+    ("arguments", "said"),
+    [
+        (("board", "none.toml"), "none.toml"),
+        (("board",), "Missing argument"),
+        (("board", "none.toml", "--reels", "3"), "No such option"),
+    ],
+)
+def test_wrong_input(arguments, said):
+    ran = run(*arguments)
+    assert ran.code == 2
+    assert said in ran.err
+    assert "Traceback" not in ran.err + ran.out
+
+
+def test_a_bill_that_cannot_be_written(board, tmp_path):
+    ran = run("board", board(), "--csv", tmp_path / "none" / "parts.csv")
+    assert ran.code == 2
+    assert "parts.csv" in ran.err
+    assert ran.out == ""
