@@ -158,7 +158,11 @@ def times(coupler: Coupler, x: Lot, s: Swing, i_eff, i_off, r_be) -> Times:
     to_soon = to_threshold(s.on_soon, s.lag_soon, n)
     off = held + fall(s.off, b, rest)
     off_soon = saturated_for(coupler, s, i_eff, s.hold * b) + fall(s.off_soon, b, 0.0)
-    on_soon = to_soon + np.where(np.isinf(charge), np.inf, np.where(s.hold * b < rest, 0.0, charge))
+    on_soon = to_soon + np.where(
+        np.isinf(charge),
+        np.inf,
+        charge * np.where(rest > 0, np.clip(1 - rest / np.maximum(s.hold * b, 1e-30), 0, 1), 1.0),
+    )
     skews = [
         np.where(np.isinf(a) & np.isinf(c), np.inf, a - c) for a, c in ((off, on_soon), (charge + to_late, off_soon))
     ]

@@ -12,6 +12,7 @@ import optopick
 from optopick.coupler import Kind
 from optopick.read_brief import brief_from_text
 from optopick.result import NOT_CHOSEN, Status
+from optopick.uses.check import check_design, design_from_text
 
 
 @pytest.mark.parametrize("name", optopick.__all__)
@@ -43,3 +44,11 @@ def test_a_brief_names_the_kinds(tmp_path):
     (tmp_path / "parts.csv").touch()
     brief = brief_from_text(FIELD, tmp_path / "link.toml")
     assert brief.couplers.kinds == ("phototransistor", "darlington")
+
+
+def test_a_check_says_that_the_brief_would_not_take_the_coupler():
+    brief = optopick.load_brief(ROOT / "examples/fastest.toml")
+    told = check_design(brief, design_from_text("QUIL31", {"r_led": "680", "r_load": "390"}))
+    assert told.notes == ("the brief would not take QUIL31: not among the brief's couplers",)
+    none = check_design(brief, design_from_text("PYRA60-H", {"r_led": "270", "r_load": "13k", "r_be": "47k"}))
+    assert none.notes == ()

@@ -399,11 +399,14 @@ def delay_off(s: Swing, tau_s: Real, i_eff: Real, i_be: Real, i_rest: Real) -> A
 def late_off(s: Swing, tau_s: Real, eta: Real, i_eff: Real, i_be: Real, i_rest: Real) -> Array:
     """By how much the LED's dark edge is seen later than its lit edge [s], at the threshold where that is most.
 
-    `delay_off` less the delay on to the earlier threshold, whose `charging` counts only where the base resistor takes
-    all of i_rest: else the base may be charged beforehand. -infinite where the output never turns on. Broadcasts.
+    `delay_off` less the delay on to the earlier threshold, whose `charging` counts by the share 1 - i_rest/(hold*i_be)
+    that the base resistor leaves to be charged: none where it does not take all of i_rest. -infinite where the output
+    never turns on. Broadcasts.
     """
-    charged = charging(s.charge, eta, i_eff, i_be)
-    start = np.where(s.hold * np.asarray(i_be) >= i_rest, charged, np.where(np.isfinite(charged), 0.0, np.inf))
+    charged, rest = charging(s.charge, eta, i_eff, i_be), np.asarray(i_rest, dtype=float)
+    pull = np.maximum(s.hold * np.asarray(i_be), TINY * np.maximum(rest, TINY))
+    left = np.where(rest > 0, np.maximum(1.0 - rest / pull, 0.0), 1.0)
+    start = np.where(np.isfinite(charged), left * np.where(np.isfinite(charged), charged, 0.0), np.inf)
     on = start + crossing_on(s.on_early, np.asarray(i_eff) - i_be)
     return _difference(delay_off(s, tau_s, i_eff, i_be, i_rest), on)
 

@@ -72,7 +72,7 @@ def checked_text(checked: Checked, title: str, near: Nearest | None = None) -> R
     parts = [Text(title, style="bold"), Text(f"{said[:1].upper()}{said[1:]}.", style=style), Text()]
     notes = [Text("Note: " + note) for note in checked.notes]
     warned = [Padding(Text("Caution: " + caution, style="yellow"), (1, 0, 0, 0)) for caution in checked.cautions]
-    return Group(*parts, *review_parts(review), *_near(review, near), *notes, *_assumed(checked.assumed), *warned)
+    return Group(*parts, *review_parts(review), *notes, *_near(review, near), *_assumed(checked.assumed), *warned)
 
 
 def _near(review: Review, near: Nearest | None) -> Iterator[RenderableType]:

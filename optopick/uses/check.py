@@ -13,7 +13,8 @@ from optopick.errors import InputError, Mistake
 from optopick.read_couplers import read_couplers
 from optopick.recheck import review
 from optopick.result import Design
-from optopick.units import QuantityError, parse_quantity
+from optopick.units import QuantityError, format_resistor, parse_quantity
+from optopick.uses.engine import unusable
 
 
 def design_from_text(coupler: str, texts: Mapping[str, str | None]) -> Design:
@@ -69,19 +70,20 @@ def coupler_named(brief: Brief, part: str) -> Coupler:
                 [Mistake("--coupler", f'"{part}", set aside: {aside.reason}', "a complete row of the table")]
             )
     parts = [coupler.part for coupler in table.couplers]
-    near = get_close_matches(part, parts, n=1, cutoff=0.4) or parts[:1]
+    near = get_close_matches(part.upper(), parts, n=1, cutoff=0.4) or parts[:1]
     expected = f'a part of {table.path.name} such as "{near[0]}"' if near else "a table with usable couplers"
     raise InputError([Mistake("--coupler", f'"{part}"', expected)])
 
 
 def _notes(brief: Brief, coupler: Coupler, design: Design) -> tuple[str, ...]:
-    """Resistor values that the brief does not stock."""
-    notes = []
+    """What the design has that the brief's stock and choice of couplers do not."""
+    unfit = unusable(brief, coupler)
+    notes = [f"the brief would not take {coupler.part}: {unfit}"] if unfit else []
     for name in ("r_led", "r_load", "r_be", "r_shunt"):
         ohms, stock = getattr(design, name), getattr(brief.stock, name)
         if ohms is not None and (stock is None or not any(abs(v / ohms - 1) < 1e-6 for v in stock.values)):
             where = (
                 f"not in the stock ({stock.described})" if stock else "at a position that the brief has no stock for"
             )
-            notes.append(f"{name} is {where}")
+            notes.append(f"{name}, {format_resistor(ohms)}, is {where}")
     return tuple(notes)
