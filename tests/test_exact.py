@@ -85,7 +85,7 @@ class Designs:
         order = sorted(zip(*(self.goals[name].tolist() for name in goals), strict=True))
         kept: list[tuple[float, float]] = []
         for first, second in order:
-            if not np.isfinite(first) or (kept and second >= kept[-1][1] * (1 - FIRST_SLACK)):
+            if not (np.isfinite(first) and np.isfinite(second)) or (kept and second >= kept[-1][1] * (1 - FIRST_SLACK)):
                 continue
             if kept and first <= kept[-1][0] * (1 + FIRST_SLACK):
                 kept.pop()

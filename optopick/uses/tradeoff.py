@@ -11,7 +11,7 @@ from optopick.answers import Front, Point
 from optopick.brief import Brief, Goal, GoalName
 from optopick.coupler import Coupler
 from optopick.model.rows import Ask
-from optopick.model.search import STEP
+from optopick.model.search import NEVER, STEP
 from optopick.model.solver import Clock
 from optopick.uses.engine import (
     Best,
@@ -57,6 +57,8 @@ class _Walk:
         self.brief, self.entries, self.clock = brief, entries, clock
         self.first, self.second = brief.goal.minimize, brief.goal.then
         self.floors = floors
+        # a design of which one of the goals never ends has no place on the front
+        self.ask = ask_of(brief).limited(self.first, NEVER).limited(self.second, NEVER)
 
     def point(self, ask: Ask) -> tuple[Best, float, float] | None:
         """The point with the least first goal within `ask`; goals as the model has them."""
@@ -71,7 +73,7 @@ class _Walk:
 
     def all(self, progress: Progress) -> list[Point]:
         """Every point."""
-        found, ask = [], ask_of(self.brief)
+        found, ask = [], self.ask
         while (at := self.point(ask)) is not None:
             found.append(self._told(at[0]))
             progress("points of the front", len(found), len(found) + 1)
@@ -80,14 +82,14 @@ class _Walk:
 
     def some(self, count: int, progress: Progress) -> list[Point]:
         """Both ends, and the points at first goals evenly between them by ratio."""
-        start = self.point(ask_of(self.brief))
+        start = self.point(self.ask)
         if start is None:
             return []
-        least = over_all(self.entries, self.second, ask_of(self.brief), self.clock)
+        least = over_all(self.entries, self.second, self.ask, self.clock)
         found = [start]
         for done, limit in enumerate(np.geomspace(start[2], least.value * (1 + STEP), count)[1:]):
             progress("points of the front", done + 1, count)
-            at = self.point(ask_of(self.brief).limited(self.second, float(limit)))
+            at = self.point(self.ask.limited(self.second, float(limit)))
             if at is not None and at[2] < found[-1][2] * (1 - STEP):
                 found.append(at)
         return [self._told(at[0]) for at in found]
