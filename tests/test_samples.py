@@ -54,10 +54,10 @@ def test_failing_checks_fail_in_some_samples():
     assert seen > 5
 
 
-def test_threads_and_chunks_do_not_change_the_answer():
+def test_workers_and_chunks_do_not_change_the_answer():
     brief, coupler, design = random_design(0)
-    count = 2 * CHUNK + 17
-    once = sample(brief, coupler, design, count=count, threads=1)
-    assert once == sample(brief, coupler, design, count=count, threads=3)
+    count = 9 * CHUNK + 17
+    once = sample(brief, coupler, design, count=count, workers=1)
+    assert once == sample(brief, coupler, design, count=count, workers=3)
     assert once.count == count
     assert all(sum(passing.histogram) == count for passing in once.checks)

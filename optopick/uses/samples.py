@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Iterator
-from concurrent.futures import ThreadPoolExecutor
+from dataclasses import dataclass
 
 import numpy as np
 from scipy.stats import truncnorm
@@ -17,9 +17,13 @@ from optopick.recheck.measured import Measured
 from optopick.recheck.review import evaluate
 from optopick.recheck.vertices import RESISTORS, Vertices, rating_of
 from optopick.result import Design
+from optopick.uses.workers import Here, Processes, Workers
 
 CHUNK = 1 << 14
 """Samples evaluated at once: few enough to stay in the processor's cache."""
+
+WORTH_SHARING = 8
+"""Chunks from which on other processes take their part."""
 
 SIGMAS = 3.0
 """A truncated normal reaches the stated extremes at this many standard deviations."""
@@ -37,18 +41,35 @@ def sample(
     count: int = 1_000_000,
     normal: bool = False,
     seed: int = 1,
-    threads: int = 2,
+    workers: int | None = None,
 ) -> Yield:
     """The share of `count` random units that pass each check, and all of them.
 
     Every uncertain quantity is drawn between its stated extremes, independently: uniform, or a normal truncated there
     at three standard deviations; CTR and light by their logarithms. The wear of "end of life" is that of the hardest
-    driven sample, as in the checks. The same seed gives the same answer whatever the threads.
+    driven sample, as in the checks. The same seed gives the same answer whatever the number of workers, processes
+    of this machine: one a core, or as told.
     """
-    chunks = [(min(CHUNK, count - start), seed + start) for start in range(0, count, CHUNK)]
-    with ThreadPoolExecutor(threads) as pool:
-        parts = list(pool.map(lambda chunk: _chunk(brief, coupler, design, normal, *chunk), chunks))
-    return _together(parts, count)
+    starts = range(0, count, CHUNK)
+    chunks = [_Chunk(brief, coupler, design, normal, min(CHUNK, count - start), seed + start) for start in starts]
+    hands: Workers = Processes(workers) if len(chunks) >= WORTH_SHARING else Here()
+    return _together(list(hands.map(_counted, chunks)), count)
+
+
+@dataclass(frozen=True)
+class _Chunk:
+    """Samples to draw and evaluate at once."""
+
+    brief: Brief
+    coupler: Coupler
+    design: Design
+    normal: bool
+    count: int
+    seed: int
+
+
+def _counted(chunk: _Chunk) -> tuple[int, list[Passing]]:
+    return _chunk(chunk.brief, chunk.coupler, chunk.design, chunk.normal, chunk.count, chunk.seed)
 
 
 def _chunk(
