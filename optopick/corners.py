@@ -29,7 +29,7 @@ class Axis:
 
 
 def temperatures(environment: Environment, transfer: Transfer | None) -> Axis:
-    """Coldest, 25 degC, hottest, and the every bend of the CTR curve over temperature between [degC]."""
+    """Coldest, 25 degC, hottest, and every bend of the CTR curve over temperature between [degC]."""
     low, high = environment.temperature.low, environment.temperature.high
     inner = {25.0} | set(_bends(transfer) if transfer else ())
     values = sorted({low, high} | {t for t in inner if low < t < high})

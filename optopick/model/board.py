@@ -17,7 +17,7 @@ from optopick.coupler import Coupler
 from optopick.model.box import Box, Choice, narrowed, whole_box
 from optopick.model.kinds import LinkModel
 from optopick.model.ranges import undominated
-from optopick.model.rows import EASE, Ask, Rows, stack
+from optopick.model.rows import EASE, Ask, Rows, all_but, stack
 from optopick.model.solver import Program
 from optopick.physics.types import Array
 
@@ -96,7 +96,7 @@ def with_cuts(seat: Seat, choice: Choice) -> Seat:
     cuts = box.model.cuts(seat.ask, *choice)
     index = tuple(np.array([k]) for k in choice)
     if not len(cuts) or bool(cuts.holds(*index)[0]):
-        cuts = stack([cuts, _only(choice, box.model.sizes)], box.model.sizes)
+        cuts = stack([cuts, all_but(choice, box.model.sizes)], box.model.sizes)
     return replace(seat, box=box.with_cuts(_that_may_fail(cuts)))
 
 
@@ -127,16 +127,6 @@ def _held(box: Box) -> tuple[np.ndarray, np.ndarray, np.ndarray]:
     i, j, m = (axis.ravel() for axis in np.meshgrid(*(np.arange(n) for n in box.model.sizes), indexing="ij"))
     keep = box.rows.holds(i, j, m)
     return i[keep], j[keep], m[keep]
-
-
-def _only(choice: Choice, sizes: tuple[int, int, int]) -> Rows:
-    """A row that forbids one combination and no other."""
-    parts = []
-    for k, n in zip(choice, sizes, strict=True):
-        part = np.ones(n)
-        part[k] = -0.3
-        parts.append(part[None, :])
-    return Rows(("one_combination",), *parts)
 
 
 def _that_may_fail(rows: Rows) -> Rows:

@@ -122,6 +122,16 @@ def scaled(name: str, a: Array, b: Array, c: Array) -> Rows:
     return Rows((name,) * count, *(part / scale for part in parts))
 
 
+def all_but(choice: tuple[int, int, int], sizes: tuple[int, int, int]) -> Rows:
+    """A row that forbids one combination and no other."""
+    parts = []
+    for k, n in zip(choice, sizes, strict=True):
+        part = np.ones(n)
+        part[k] = -0.3
+        parts.append(part[None, :])
+    return Rows(("one_combination",), *parts)
+
+
 def stack(blocks: Iterable[Rows], sizes: Sequence[int]) -> Rows:
     """All blocks as one; `sizes` where there is none."""
     found = list(blocks)

@@ -11,7 +11,7 @@ from optopick.brief import GoalName
 from optopick.model.box import Box, Choice, halves, narrowed, tightened, whole_box
 from optopick.model.kinds import LinkModel
 from optopick.model.ranges import undominated
-from optopick.model.rows import Ask, Rows, stack
+from optopick.model.rows import Ask, Rows, all_but, stack
 from optopick.model.solver import Answer, Clock, Outcome, Problem, solve
 
 STEP = 1e-6
@@ -101,7 +101,7 @@ class _Search:
         self.any = goal is None
         self.ask = ask if self.goal is GoalName.POWER else ask.limited(self.goal, NEVER)
         self.boxes: list[Box] = []
-        self.box = whole_box(model, self.ask, stack([_only(choice, model.sizes) for choice in without], model.sizes))
+        self.box = whole_box(model, self.ask, stack([all_but(choice, model.sizes) for choice in without], model.sizes))
         self.scale = float(sum(np.median(part) for part in model.power))
 
     def run(self, below: float) -> Found:
@@ -180,17 +180,7 @@ def _cuts(box: Box, wanted: Ask, choice: Choice) -> Rows:
     """Rows that forbid a combination the exact times refuse, and as many like it as can be."""
     cuts = box.model.cuts(wanted, *choice)
     index = tuple(np.array([k]) for k in choice)
-    return _only(choice, box.model.sizes) if not len(cuts) or bool(cuts.holds(*index)[0]) else cuts
-
-
-def _only(choice: Choice, sizes: tuple[int, int, int]) -> Rows:
-    """A row that forbids one combination and no other."""
-    parts = []
-    for k, n in zip(choice, sizes, strict=True):
-        part = np.ones(n)
-        part[k] = -0.3
-        parts.append(part[None, :])
-    return Rows(("one_combination",), *parts)
+    return all_but(choice, box.model.sizes) if not len(cuts) or bool(cuts.holds(*index)[0]) else cuts
 
 
 def _look(box: Box, goal: GoalName, wanted: Ask) -> tuple[Choice, float] | None:

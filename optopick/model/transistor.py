@@ -118,7 +118,7 @@ class TransistorModel:
         blocks = []
         if x.load.for_margin is not None:
             blocks.append(scaled("ctr_margin", x.i_low, -x.load.for_margin, -x.base.i_be_high))
-        level_on, level_off = ("output_low", "output_high") if self._pulled_up else ("output_high", "output_low")
+        level_on, level_off = self._levels
         blocks.append(scaled(level_on, x.i_low, -x.load.for_level, -x.base.i_be_high))
         blocks.append(scaled(level_off, -x.i_lit_off, x.load.leak_room - x.i_input_off, -x.base.leak))
         total = scaled("total_power", x.total_room.reshape(-1, 1) - x.led.heat, -x.load.heat, zero_base)
@@ -126,11 +126,13 @@ class TransistorModel:
         return (*blocks, total, conducts)
 
     @property
-    def _pulled_up(self) -> bool:
-        return self.brief.output.circuit == "pull-up"
+    def _levels(self) -> tuple[str, str]:
+        """The checks of the level that the conducting output must reach, and of the one that leakage must not spoil."""
+        pulled_up = self.brief.output.circuit == "pull-up"
+        return ("output_low", "output_high") if pulled_up else ("output_high", "output_low")
 
     def _static(self, dropped: frozenset[str]) -> Iterator[Rows]:
-        level_on = "output_low" if self._pulled_up else "output_high"
+        level_on, _ = self._levels
         # that the output conducts at all is part of the level that it must reach
         left_out = dropped | {"conducts"} if level_on in dropped else dropped
         return (block for block in self._all_static if block.names[0] not in left_out)
