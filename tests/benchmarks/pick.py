@@ -157,7 +157,9 @@ def verdicts(lines: list[Line], commands: dict[str, Spent]) -> str:
             reached = line.proved and line.plain / line.pick >= times
             said.append((f"{series} {line.goal}: {times:g} times faster than plain enumeration", reached))
     whole_table = commands["pick examples/fastest.toml"].wall
-    said.append(("examples/fastest.toml, every phototransistor of the table at E24, within 3 s, whole process", whole_table < 3))
+    said.append(
+        ("examples/fastest.toml, every phototransistor of the table at E24, within 3 s, whole process", whole_table < 3)
+    )
     said.append(("--help within 0.3 s, whole process", commands["--help"].wall < 0.3))
     said.append(("peak memory below 400 MB", max(s.memory for s in commands.values()) < 400))
     slower = [f"{line.series} {line.goal}" for line in lines if line.clever < line.pick]
