@@ -64,6 +64,16 @@ def light_axis(spread: float) -> Axis:
     return two_ends("light", Span(1.0 / spread, spread), "dim LED", "bright LED")
 
 
+def v_be_axis(spread: float) -> Axis:
+    """How far a unit's base-emitter voltage lies from the typical one [V]."""
+    return two_ends("v_be", Span(-spread, spread), "low V_BE", "high V_BE")
+
+
+def storage_axis(spread: float) -> Axis:
+    """Storage constant over that of a typical unit [1]."""
+    return two_ends("storage", Span(1.0 / spread, spread), "short storage", "long storage")
+
+
 def v_f_axis(coupler: Coupler) -> Axis:
     """Both ends of the LED's forward voltage [V]."""
     return two_ends("v_f", Span(coupler.led.v_f_min, coupler.led.v_f_max), "V_F min", "V_F max")

@@ -79,17 +79,20 @@ class Transistor:
     """Output transistor.
 
     h_fe: typical gain [1] at the mid of the CTR bin, at Transfer.i_ref and 25 degC; light_spread [1] >= 1: gain at a
-    given CTR lies within h_fe*(ctr/ctr_mid)*[1/spread, spread]. v_be [V], v_be_tc [V/K].
+    given CTR lies within h_fe*(ctr/ctr_mid)*[1/spread, spread]. v_be [V], v_be_tc [V/K]; v_be_spread [V] >= 0: a unit's
+    lies within v_be -/+ v_be_spread.
     v_ce_sat [V] max at sat_i_f, sat_i_c [A]; beta_r [1] reverse gain. i_c_max [A], v_ceo [V].
     i_ceo_1, i_ceo_2 [A] max at t_1, t_2 [degC]. c_be [F] charged before conduction.
     tau_0 [s], c_m [F], tau_s [s]: switching constants of a typical unit, gain h_fe: h_fe times the transit time, h_fe
-    times the collector-base capacitance at 0 V, and the storage constant.
+    times the collector-base capacitance at 0 V, and the storage constant; tau_s_spread [1] >= 1: a unit's lies within
+    tau_s*[1/spread, spread].
     """
 
     h_fe: float
     light_spread: float
     v_be: float
     v_be_tc: float
+    v_be_spread: float
     v_ce_sat: float
     sat_i_f: float
     sat_i_c: float
@@ -104,6 +107,7 @@ class Transistor:
     tau_0: float
     c_m: float
     tau_s: float
+    tau_s_spread: float
 
 
 @dataclass(frozen=True)

@@ -45,6 +45,7 @@ UNITS: Mapping[str, TableUnit] = {
     "mA": TableUnit("A", -3, "mA"),
     "µA": TableUnit("A", -6, "µA"),
     "nA": TableUnit("A", -9, "nA"),
+    "mV": TableUnit("V", -3, "mV"),
     "mW": TableUnit("W", -3, "mW"),
     "mA/K": TableUnit("A/K", -3, "mA/K"),
     "mW/K": TableUnit("W/K", -3, "mW/K"),

@@ -198,6 +198,7 @@ def _transistor(r: _Reader, transfer: Transfer, bin_: Bin) -> Transistor:
         light_spread=r.note(gaps.light_spread(r.unit, transfer.ctr_max / transfer.ctr_min, h_min, h_max)),
         v_be=v_be,
         v_be_tc=r.get("v_be_tc"),
+        v_be_spread=r.get("v_be_spread"),
         v_ce_sat=r.get("v_ce_sat"),
         sat_i_f=sat_i_f,
         sat_i_c=sat_i_c,
@@ -212,6 +213,7 @@ def _transistor(r: _Reader, transfer: Transfer, bin_: Bin) -> Transistor:
         tau_0=times.tau_0,
         c_m=times.c_m,
         tau_s=times.tau_s,
+        tau_s_spread=r.get("tau_s_spread"),
     )
 
 

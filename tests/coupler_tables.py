@@ -58,6 +58,8 @@ PHOTOTRANSISTOR = {
     "c_be": "12",
     "v_be": "0.6",
     "v_be_tc": "-1.9",
+    "v_be_spread": "40",
+    "tau_s_spread": "1.3",
     "sw_t_r": "2",
     "sw_t_f": "3",
     "sw_v_cc": "10",

@@ -168,12 +168,14 @@ def resistor_ends(values: np.ndarray, tolerance: np.ndarray, drift: float, t: fl
 
 
 def lots(brief: Brief, coupler: Coupler) -> Iterator[out.Lot]:
-    """Every vertex that no resistor and no LED changes; CTR and light vary along an axis before all others."""
-    spread = coupler.transistor.light_spread
-    ends_ = product((coupler.transfer.ctr_min, coupler.transfer.ctr_max), (1.0 / spread, spread))
-    ctr, light = (np.array(c).reshape(-1, 1, 1, 1, 1) for c in zip(*ends_, strict=True))
+    """Every vertex that no resistor and no LED changes; CTR, light and V_BE vary along an axis before all others."""
+    spread, off = coupler.transistor.light_spread, coupler.transistor.v_be_spread
+    ends_ = product(
+        (coupler.transfer.ctr_min, coupler.transfer.ctr_max), sorted({1.0 / spread, spread}), sorted({-off, off})
+    )
+    ctr, light, v_be = (np.array(c).reshape(-1, 1, 1, 1, 1) for c in zip(*ends_, strict=True))
     for t, v_cc in product(temperatures(brief, coupler.transfer)[::-1], ends(brief.output.supply)[::-1]):
-        yield out.lot(brief, coupler, np.float64(t), ctr, light, np.float64(v_cc))
+        yield out.lot(brief, coupler, np.float64(t), ctr, light, np.float64(v_cc), v_be)
 
 
 def over(values: np.ndarray) -> np.ndarray:
@@ -309,7 +311,7 @@ def bases(brief: Brief, coupler: Coupler) -> Bases:
     rooms: dict[str, np.ndarray] = {}
     for x in lots(brief, coupler):
         r_be = at[float(x.t)]
-        held = {"r_be_power": led_side.below(x.v_be**2 / r_be, power * led_side.chip_share(x.t))}
+        held = {"r_be_power": led_side.below(x.v_base**2 / r_be, power * led_side.chip_share(x.t))}
         worst_of(rooms, held, len(r))
     return Bases(r, at, rooms)
 

@@ -66,11 +66,13 @@ class Lot:
     eta: np.ndarray
     h_fe: np.ndarray
     v_be: np.ndarray
+    v_base: np.ndarray
     v_il: np.ndarray
     v_ih: np.ndarray
 
 
-def lot(brief: Brief, coupler: Coupler, t, ctr, light, v_cc) -> Lot:
+def lot(brief: Brief, coupler: Coupler, t, ctr, light, v_cc, off=0.0) -> Lot:
+    """off: how far the base-emitter voltage lies from the typical unit's [V]."""
     transfer, transistor = coupler.transfer, coupler.transistor
     h = at_temperature(transfer, t)
     dimming = np.maximum(1.0 + transfer.light_tc * (t - 25.0), 0.1)
@@ -80,6 +82,7 @@ def lot(brief: Brief, coupler: Coupler, t, ctr, light, v_cc) -> Lot:
     return Lot(
         t, ctr, light, v_cc, h, eta, ctr * h / eta,
         transistor.v_be + transistor.v_be_tc * (t - 25.0),
+        transistor.v_be + transistor.v_be_tc * (t - 25.0) + off,
         brief.output.v_il.low + share * (brief.output.v_il.high - brief.output.v_il.low),
         brief.output.v_ih.low + share * (brief.output.v_ih.high - brief.output.v_ih.low),
     )  # fmt: skip
@@ -128,7 +131,7 @@ def output_heat(brief: Brief, x: Lot, r_load) -> np.ndarray:
 
 def base_taken(x: Lot, r_be) -> np.ndarray:
     """LED current whose light the base resistor takes."""
-    return x.v_be / r_be / x.eta
+    return x.v_base / r_be / x.eta
 
 
 def sheet_overdrive(coupler: Coupler) -> float:
@@ -142,14 +145,18 @@ def ebers_moll(h_fe, beta_r: float, overdrive):
     return (1.0 + (1.0 + forced) / beta_r) / (1.0 - forced / h_fe)
 
 
-def floor_of(coupler: Coupler, j_s) -> np.ndarray:
-    """The sheet's V_CE(sat); beyond its current all that its junctions do not explain grows like a resistor's."""
+def floor_of(coupler: Coupler, j_s, t) -> np.ndarray:
+    """The sheet's V_CE(sat); beyond its current all that its junctions do not explain grows like a resistor's.
+
+    What the junctions explain but for the inner base grows with absolute temperature above 25 degC."""
     x, k = coupler.transistor, sheet_overdrive(coupler)
+    hotter = 0.0
     explained = x.v_be / 2 if coupler.kind is Kind.DARLINGTON else 0.0
     if k > 1:
         explained += K_OVER_Q * (25.0 + KELVIN) * np.log(ebers_moll(x.h_fe, x.beta_r, k))
+        hotter = K_OVER_Q * np.maximum(t - 25.0, 0.0) * np.log(ebers_moll(x.h_fe, x.beta_r, k))
     ohms = max(x.v_ce_sat - explained, 0.0) / x.sat_i_c
-    return x.v_ce_sat + ohms * np.maximum(j_s - x.sat_i_c, 0.0)
+    return x.v_ce_sat + hotter + ohms * np.maximum(j_s - x.sat_i_c, 0.0)
 
 
 def saturated(coupler: Coupler, x: Lot, j_s, overdrive) -> np.ndarray:
@@ -157,7 +164,7 @@ def saturated(coupler: Coupler, x: Lot, j_s, overdrive) -> np.ndarray:
     beta_r, held = coupler.transistor.beta_r, overdrive > 1
     shapes = [ebers_moll(x.h_fe, beta_r, k) for k in (np.where(held, overdrive, 2.0), sheet_overdrive(coupler))]
     rise = K_OVER_Q * (x.t + KELVIN) * np.log(shapes[0] / shapes[1])
-    return np.where(held, floor_of(coupler, j_s) + np.maximum(rise, 0.0), np.inf)
+    return np.where(held, floor_of(coupler, j_s, x.t) + np.maximum(rise, 0.0), np.inf)
 
 
 def v_ce_bisected(brief: Brief, coupler: Coupler, x: Lot, j, r_load, steps: int = 44) -> np.ndarray:

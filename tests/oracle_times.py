@@ -152,12 +152,14 @@ def times(coupler: Coupler, x: Lot, s: Swing, i_eff, i_off, r_be) -> Times:
     """i_off: LED current left in the dark."""
     b, rest = base_taken(x, r_be), (i_off + dark_as_light(coupler, x)) * early(x)
     n = i_eff - b
-    held = saturated_for(coupler, s, i_eff, s.hold * b - rest)
+    tau_s, spread = coupler.transistor.tau_s, coupler.transistor.tau_s_spread
+    # storage takes a time in proportion to its constant: long where the fall must be early, short where it must be late
+    held = saturated_for(tau_s * spread, s, i_eff, s.hold * b - rest)
     enough = np.maximum(n, s.i_sat)
     charge, to_late = start(x, s.started, i_eff, r_be), to_threshold(s.on, s.lag, n)
     to_soon = to_threshold(s.on_soon, s.lag_soon, n)
     off = held + fall(s.off, b, rest)
-    off_soon = saturated_for(coupler, s, i_eff, s.hold * b) + fall(s.off_soon, b, 0.0)
+    off_soon = saturated_for(tau_s / spread, s, i_eff, s.hold * b) + fall(s.off_soon, b, 0.0)
     on_soon = to_soon + np.where(
         np.isinf(charge),
         np.inf,
@@ -176,12 +178,10 @@ def times(coupler: Coupler, x: Lot, s: Swing, i_eff, i_off, r_be) -> Times:
     )
 
 
-def saturated_for(coupler: Coupler, s: Swing, i_eff, pull) -> np.ndarray:
+def saturated_for(tau_s, s: Swing, i_eff, pull) -> np.ndarray:
     """Time until the charge that a saturated base holds too much is gone, the base losing `pull` more than it gets."""
     left = s.i_sat + pull
-    return np.where(
-        left > 0, coupler.transistor.tau_s * np.log(np.maximum(i_eff / np.where(left > 0, left, 1), 1)), np.inf
-    )
+    return np.where(left > 0, tau_s * np.log(np.maximum(i_eff / np.where(left > 0, left, 1), 1)), np.inf)
 
 
 def climb(w: Way, n) -> np.ndarray:
@@ -230,7 +230,7 @@ def to_threshold(w: Way, lag, n) -> np.ndarray:
 def start(x: Lot, charge, i_eff, r_be) -> np.ndarray:
     """Time until a photocurrent, less what the base resistor takes of it at V_BE, has brought the first charge."""
     photo = x.eta * i_eff
-    share = np.maximum(np.where(np.isinf(r_be), 0.0, x.v_be / (photo * r_be)), 1e-9)
+    share = np.maximum(np.where(np.isinf(r_be), 0.0, x.v_base / (photo * r_be)), 1e-9)
     return np.where(share < 1, charge / photo * -np.log1p(-np.minimum(share, 1 - 1e-15)) / share, np.inf)
 
 

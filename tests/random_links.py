@@ -30,6 +30,7 @@ from optopick.eseries import series_values
 
 def coupler(rng: np.random.Generator, part: str = "RND-1") -> Coupler:
     """A random phototransistor coupler."""
+    aside = rng.spawn(1)[0]
     ctr_min = float(rng.choice([0.2, 0.5, 0.8, 1.0, 1.6]))
     ctr_max = ctr_min * float(rng.uniform(1.5, 4))
     h_fe = float(rng.uniform(150, 900))
@@ -58,6 +59,7 @@ def coupler(rng: np.random.Generator, part: str = "RND-1") -> Coupler:
             light_spread=float(rng.choice([1.0, 1.25, 1.5])),
             v_be=0.65,
             v_be_tc=-2e-3,
+            v_be_spread=float(aside.choice([0.0, 0.05])),
             v_ce_sat=float(rng.uniform(0.2, 0.4)),
             sat_i_f=10e-3,
             sat_i_c=float(rng.uniform(0.5e-3, 1.5e-3)),
@@ -72,6 +74,7 @@ def coupler(rng: np.random.Generator, part: str = "RND-1") -> Coupler:
             tau_0=tau_100 - 100 * c_m if tau_100 > 150 * c_m else tau_100 / 3,
             c_m=c_m,
             tau_s=float(rng.uniform(5e-6, 20e-6)),
+            tau_s_spread=float(aside.choice([1.0, 1.5])),
         ),
         logic=None,
         price=None,

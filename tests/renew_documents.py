@@ -1,4 +1,5 @@
-"""Run every command that the documents show and write its output anew: `python -m tests.renew_documents`.
+"""Run every command that the documents show and write its output anew, and the page of columns:
+`python -m tests.renew_documents`.
 
 Read the difference before committing it.
 """
@@ -13,8 +14,14 @@ sys.path.insert(0, str(Path(__file__).parent))
 from command import ROOT
 from documents import DOCUMENTS, renewed
 
+from optopick.coupler_columns import columns_markdown
+
+COLUMNS = ROOT / "catalogs" / "README.md"
+
 
 def main() -> None:
+    page = COLUMNS.read_text(encoding="utf-8")
+    COLUMNS.write_text(page[: page.index("### Columns")] + columns_markdown() + "\n", encoding="utf-8")
     for path in DOCUMENTS:
         before = path.read_text(encoding="utf-8")
         after = renewed(before)

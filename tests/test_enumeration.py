@@ -233,7 +233,7 @@ def test_extremes_of_light_say_as_much_as_all_of_it(seed):
         assert short.goals[name][kept] == pytest.approx(goal[held], rel=1e-12)
 
 
-@pytest.mark.parametrize("seed", [29, 44, 47, 50, 54])
+@pytest.mark.parametrize("seed", [29, 44, 47, 17, 54])
 def test_what_is_given_stays_within_the_first_goals_own_limit(seed):
     """With more given than the brief's own limit on the first goal leaves, the limit decides."""
     brief, couplers = case(seed)

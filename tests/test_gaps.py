@@ -86,6 +86,9 @@ ONE_ROW = [
     (DARLINGTON, {"v_be": ""}, {"v_be": "1.3 V"}),
     (PHOTOTRANSISTOR, {"v_be_tc": ""}, {"v_be_tc": "-2 mV/K"}),
     (DARLINGTON, {"v_be_tc": ""}, {"v_be_tc": "-4 mV/K"}),
+    (PHOTOTRANSISTOR, {"v_be_spread": ""}, {"v_be_spread": "50 mV"}),
+    (DARLINGTON, {"v_be_spread": ""}, {"v_be_spread": "100 mV"}),
+    (PHOTOTRANSISTOR, {"tau_s_spread": ""}, {"tau_s_spread": "1.5"}),
     (PHOTOTRANSISTOR, {"c_cb": ""}, {}),  # both switching rows are there: nobody asks
     (PHOTOTRANSISTOR, {"sw_v_cc": ""}, {"sw_v_cc": "10 V"}),
     (PHOTOTRANSISTOR, {"sw_i_c": ""}, {"sw_i_c": "2 mA"}),

@@ -48,6 +48,7 @@ def test_a_phototransistor_row_in_si(tmp_path):
     assert transfer.curve_g == pytest.approx((0.6, 0.75, 1, 0.98, 0.9))
     assert (transfer.curve_t, transfer.curve_h) == ((-40.0, 25.0, 100.0), (0.8, 1.0, 0.6))
     assert (transistor.h_fe, transistor.v_be, transistor.v_be_tc, transistor.beta_r) == (400.0, 0.6, -0.0019, 4.0)
+    assert (transistor.v_be_spread, transistor.tau_s_spread) == (0.04, 1.3)
     assert (transistor.v_ce_sat, transistor.sat_i_f, transistor.sat_i_c) == (0.3, 0.01, 0.002)
     assert (transistor.i_c_max, transistor.v_ceo, transistor.c_be) == (0.05, 70.0, 12e-12)
     assert (transistor.i_ceo_1, transistor.t_1, transistor.i_ceo_2, transistor.t_2) == (1e-7, 25.0, 2e-5, 85.0)
@@ -82,6 +83,7 @@ def test_a_logic_row_in_si(tmp_path):
         ("i_ceo", "50", "0.05 uA"),
         ("i_ceo_hot", "500", "500 µA"),
         ("c_be", "8", "8 pF"),
+        ("v_be_spread", "30", "0.03 V"),
         ("sat_r_l", "1.9", "1k9"),
         ("sat_t_s", "25", "25 us"),
         ("withstand", "3.75", "3750 V"),

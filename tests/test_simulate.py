@@ -122,12 +122,21 @@ def test_device_saturates_where_the_table_says():
     assert v_ce == pytest.approx(TRANSISTOR.v_ce_sat, abs=5e-3)
 
 
-@pytest.mark.parametrize("t", [-20.0, 25.0, 85.0])
-def test_device_takes_the_tables_base_voltage_at_two_milliamperes(t):
-    d = device_at(COUPLER, replace(TYPICAL, t=t))
+@pytest.mark.parametrize(("t", "off"), [(-20.0, 0.0), (25.0, 0.0), (85.0, 0.0), (25.0, -0.05), (85.0, 0.04)])
+def test_device_takes_the_base_voltage_of_its_unit_at_two_milliamperes(t, off):
+    d = device_at(COUPLER, replace(TYPICAL, t=t, v_be=off))
     i_f = brentq(lambda i: collector_current_of(d, i) - 2e-3, 1e-4, 30e-3)
     v_be, _ = at_rest(d, Circuit(True, 5.0, 1.0, math.inf, 0.0), photocurrent(d, i_f))
-    assert v_be == pytest.approx(TRANSISTOR.v_be + TRANSISTOR.v_be_tc * (t - 25.0), abs=2e-4)
+    assert v_be == pytest.approx(TRANSISTOR.v_be + off + TRANSISTOR.v_be_tc * (t - 25.0), abs=2e-4)
+
+
+@pytest.mark.parametrize("storage", [1 / 1.5, 1.0, 1.5])
+def test_device_stores_what_its_unit_does(storage):
+    """Moll's storage constant of the device's own figures; see `reverse_transit`."""
+    d, both = device_at(COUPLER, replace(TYPICAL, storage=storage)), 1 + 1 / TRANSISTOR.beta_r
+    gain = TYPICAL.ctr / d.eta
+    held = (d.tau_f * both + d.tau_r) / (both / gain + 1 / d.beta_r)
+    assert held == pytest.approx(storage * TRANSISTOR.tau_s, rel=1e-9)
 
 
 def test_device_leaks_what_the_table_says():

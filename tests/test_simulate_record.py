@@ -84,6 +84,7 @@ def device_of_rows(e: Entry, sheet: Sheet) -> Device:
     corner = Corner(
         words="", t=25.0, age=0.0, ctr=sheet.ctr, light=1.0, left=1.0, v_f=1.2, drive=5.0, drop=0.0, v_cc=circuit.v_cc,
         r_led=1e3, r_load=circuit.r_load, r_be=math.inf, r_shunt=math.inf, i_f=circuit.i_f, i_off=0.0, dark=0.0,
+            v_be=0.0, storage=1.0,
     )  # fmt: skip
     return device_at(coupler, corner)
 

@@ -48,6 +48,7 @@ class Points:
     age: np.ndarray
     ctr: np.ndarray
     light: np.ndarray
+    v_be: np.ndarray
     v_f: np.ndarray
     drive: np.ndarray
     drop: np.ndarray
@@ -60,7 +61,7 @@ class Points:
 
 def inside(rng: np.random.Generator, brief: Brief, coupler: Coupler, design: Design) -> Points:
     """Random points; most coordinates sit at an end, so that edges of the box are met too, where trouble would be."""
-    transfer, spread = coupler.transfer, coupler.transistor.light_spread
+    transfer, spread, off = coupler.transfer, coupler.transistor.light_spread, coupler.transistor.v_be_spread
 
     def share() -> np.ndarray:
         return np.where(rng.random(SAMPLES) < 0.7, rng.integers(0, 2, SAMPLES), rng.random(SAMPLES))
@@ -81,6 +82,7 @@ def inside(rng: np.random.Generator, brief: Brief, coupler: Coupler, design: Des
         age=share(),
         ctr=between(Span(transfer.ctr_min, transfer.ctr_max)),
         light=between(Span(1.0 / spread, spread)),
+        v_be=between(Span(-off, off)),
         v_f=between(Span(coupler.led.v_f_min, coupler.led.v_f_max)),
         drive=between(brief.drive.supply),
         drop=between(brief.drive.drop),
@@ -126,11 +128,11 @@ def rooms_at(brief: Brief, coupler: Coupler, design: Design, p: Points) -> tuple
     s = oracle_led.led_state(brief, coupler.led, p.t, p.v_f, p.drive, p.drop, p.r_led, p.r_shunt)
     ratings = worn(stock.r_led, design.r_led), worn(stock.r_shunt, design.r_shunt)
     held = dict(oracle_led.led_checks(brief, coupler, s, p.t, p.r_led, p.r_shunt, *ratings))
-    x = out.lot(brief, coupler, p.t, p.ctr, p.light, p.v_cc)
+    x = out.lot(brief, coupler, p.t, p.ctr, p.light, p.v_cc, p.v_be)
     held |= out.load_checks(brief, coupler, x, p.r_load, worn(stock.r_load, design.r_load))
     if design.r_be is not None:
         most = worn(stock.r_be, design.r_be).power * oracle_led.chip_share(p.t)
-        held["r_be_power"] = oracle_led.below(x.v_be**2 / p.r_be, most)
+        held["r_be_power"] = oracle_led.below(x.v_base**2 / p.r_be, most)
     i_eff = s.i_f * (1.0 + p.age * (light_at_end_of_life(brief, coupler, design) - 1.0))
     held |= output_rooms(brief, coupler, x, s, i_eff, p)
     times = oracle_times.times(coupler, x, oracle_times.swing(brief, coupler, x, p.r_load), i_eff, s.i_off, p.r_be)

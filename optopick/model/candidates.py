@@ -19,7 +19,13 @@ from optopick.model.taking import taken
 from optopick.physics.charge import Base, Load
 from optopick.physics.heat import derated, output_dissipation, resistor_derated
 from optopick.physics.leakage import dark_current, dark_current_held, raised
-from optopick.physics.saturation import junction_part, load_current, overdrive_to_hold, rise_with_current
+from optopick.physics.saturation import (
+    junction_part,
+    load_current,
+    overdrive_to_hold,
+    rise_with_current,
+    rise_with_heat,
+)
 from optopick.physics.switching import Swing, swing
 from optopick.physics.transfer import base_led_current, collector_current, led_current_for, relative_ctr
 from optopick.physics.types import Array
@@ -49,8 +55,8 @@ class LoadCandidates:
 class BaseCandidates:
     """Base-emitter resistors in stock, infinite where the position may stay empty. r_be: (n,) [ohm].
 
-    i_be_low, i_be_high: LED current it takes at its largest and at its least resistance [A]; leak: dark current [A];
-    all (C, n). keep: check name to (n,) mask.
+    i_be_low, i_be_high: LED current it takes at its largest resistance and the least base-emitter voltage, and the
+    other way round [A]; leak: dark current [A]; all (C, n). keep: check name to (n,) mask.
     """
 
     r_be: Array
@@ -67,7 +73,7 @@ class Candidates:
     i_low, i_high: (C, n_led) least light, worn, and most, new [A]; i_lit_off: (C, n_led) collector current that the
     light left in the dark LED adds [A]; i_rest: (C, n_led) LED current which that light and the dark current amount to
     [A].
-    total_room: (T,) package dissipation allowed [W]; tau_s [s], i_input_off [A].
+    total_room: (T,) package dissipation allowed [W]; tau_s_least, tau_s_most: of units [s]; i_input_off [A].
     """
 
     corners: CornerList
@@ -79,7 +85,8 @@ class Candidates:
     i_lit_off: Array
     i_rest: Array
     total_room: Array
-    tau_s: float
+    tau_s_least: float
+    tau_s_most: float
     i_input_off: float
 
     @property
@@ -121,7 +128,8 @@ def candidates(brief: Brief, coupler: Coupler) -> Candidates:
         i_lit_off=_lit_off(transfer, transistor, c, i_off, i_dark),
         i_rest=(i_off + i_dark) * raised(c.v_cc),
         total_room=derated(coupler.p_total, t),
-        tau_s=transistor.tau_s,
+        tau_s_least=transistor.tau_s / transistor.tau_s_spread,
+        tau_s_most=transistor.tau_s * transistor.tau_s_spread,
         i_input_off=input_current(brief, on=False),
     )
 
@@ -217,8 +225,9 @@ def _for_level(
     sheet = float(collector_current(transfer, transfer.ctr_min, 1.0, transistor.sat_i_f)) / transistor.sat_i_c
     inner = transistor.v_be / 2 if coupler.kind is Kind.DARLINGTON else 0.0
     junctions = junction_part(sheet, transistor.h_fe, transistor.beta_r, inner)
-    v_sat = rise_with_current(transistor.v_ce_sat, j_s, transistor.sat_i_c, junctions)
     t, h_fe = c.t[:, :, None], c.h_fe[:, :, None]
+    v_sat = rise_with_current(transistor.v_ce_sat, j_s, transistor.sat_i_c, junctions)
+    v_sat = v_sat + rise_with_heat(sheet, transistor.h_fe, transistor.beta_r, t)
     overdrive = overdrive_to_hold(v_ce, v_sat, sheet, h_fe, transistor.beta_r, t)
     carried = np.maximum(load_current(c.v_cc[:, :, None], v_ce, r, input_current(brief, on=True)), 1e-12)
     i = led_current_for(transfer, c.ctr[:, :, None], c.h[:, :, None], overdrive * carried)
@@ -268,12 +277,13 @@ def _base(brief: Brief, coupler: Coupler, transistor: Transistor, c: CornerList,
     tolerance, rating = np.append(stock.tolerance, [0.0] * pad), np.append(stock.power, [1e9] * pad)
     low, high = resistor_span(values, tolerance, brief.stock.drift, c.t)
     leak = [dark_current_held(_dark(transistor, c), i_cbo, r) for r in (low, high)]
+    least, most = c.v_be - transistor.v_be_spread, c.v_be + transistor.v_be_spread
     return BaseCandidates(
         r_be=values,
-        i_be_low=base_led_current(c.v_be, high, c.eta),
-        i_be_high=base_led_current(c.v_be, low, c.eta),
+        i_be_low=base_led_current(least, high, c.eta),
+        i_be_high=base_led_current(most, low, c.eta),
         leak=np.maximum(*leak) * raised(c.v_cc),
-        keep={"r_be_power": np.asarray((c.v_be**2 / low <= resistor_derated(rating, c.t)).all(axis=0))},
+        keep={"r_be_power": np.asarray((most**2 / low <= resistor_derated(rating, c.t)).all(axis=0))},
     )
 
 

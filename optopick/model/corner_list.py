@@ -21,8 +21,8 @@ from optopick.physics.types import Array
 class CornerList:
     """Arrays of shape (C, 1), an entry for each corner.
 
-    Temperature [degC] and its index, CTR [1], light relative to
-    typical [1], supply [V], receiver thresholds [V], CTR over temperature h [1], eta [1], gain h_fe [1], v_be [V].
+    Temperature [degC] and its index, CTR [1], light relative to typical [1], supply [V], receiver thresholds [V], CTR
+    over temperature h [1], eta [1], gain h_fe [1], v_be of a typical unit [V].
     """
 
     t: Array

@@ -88,6 +88,12 @@ class TransistorModel:
         """Worst average power of each LED branch and of each load resistor [W]."""
         return self.candidates.led.power, self.candidates.load.power
 
+    @property
+    def heat(self) -> tuple[Array, Array, Array]:
+        """Heat of each LED branch (T, n), of the output with each load (T, n), and of the package at most (T,) [W]."""
+        x = self.candidates
+        return x.led.heat, x.load.heat, x.total_room
+
     def start(self, dropped: frozenset[str] = frozenset()) -> Live:
         """The values that hold the limits on one value alone."""
         x = self.candidates
@@ -155,7 +161,7 @@ class TransistorModel:
         """
         if not ask.has_delays:
             return
-        swing, eta, tau_s = self.candidates.load.swing, self._eta, self.candidates.tau_s
+        swing, eta, tau_s = self.candidates.load.swing, self._eta, self.candidates.tau_s_most
         strong, weak = self._extremes(light_most=True), self._extremes(light_most=False)
         # a limit on lateness bounds one delay by the other's longest, at whichever threshold: the sure one is later
         longest_on = switching.delay_on(swing, eta, weak.i_high, weak.i_be_low)
@@ -193,18 +199,18 @@ class TransistorModel:
     def _off_rows(self, limit: Array, weak: Extremes) -> Iterator[Rows]:
         """Delay off within `limit` (C, 2, n): the fall beside the shortest storage, and the storage beside the fall."""
         x, swing = self.candidates, self.candidates.load.swing
-        held = switching.storage(x.tau_s, weak.i_high, weak.i_be_low, swing.i_sat, swing.hold, weak.i_rest)
+        held = switching.storage(x.tau_s_most, weak.i_high, weak.i_be_low, swing.i_sat, swing.hold, weak.i_rest)
         rho = switching.extraction_for(swing.off, _left(limit, held), weak.i_rest, switching.NEAR)
         yield scaled("delay_off", np.zeros(self.sizes[0]), -rho.max(axis=1), x.base.i_be_low)
         fall = switching.time_off(swing.off, weak.i_be_low, weak.i_rest)
-        stretch = np.exp(np.clip(_left(limit, fall) / x.tau_s, -50.0, 50.0))
+        stretch = np.exp(np.clip(_left(limit, fall) / x.tau_s_most, -50.0, 50.0))
         room = (stretch * (swing.i_sat - weak.i_rest)).min(axis=1)
         most = (stretch * swing.hold).max(axis=(1, 2))[:, None]
         yield scaled("storage", -x.i_high, room, most * x.base.i_be_low)
 
     def _time(self, family: str, swing: switching.Swing, eta: Array, at: Point) -> Array:
         """The time of a family [s]; every argument broadcasts."""
-        tau_s = self.candidates.tau_s
+        tau_s = self.candidates.tau_s_most
         if family == "edge_off":
             return switching.edge_off(swing.edge, switching.EDGE, at.i_be, at.i_rest)
         if family == "delay_on":
@@ -213,7 +219,7 @@ class TransistorModel:
             return switching.delay_off(swing, tau_s, at.i_eff, at.i_be, at.i_rest)
         if family == "late_off":
             return switching.late_off(swing, tau_s, eta, at.i_eff, at.i_be, at.i_rest)
-        return switching.late_on(swing, tau_s, eta, at.i_eff, at.i_be)
+        return switching.late_on(swing, self.candidates.tau_s_least, eta, at.i_eff, at.i_be)
 
     def _worst_times(self, family: Family, i: Index, swing: switching.Swing, m: Index) -> Array:
         """Times of K designs at every corner and load end, (C, 2, K) [s]; swing: of their loads."""

@@ -51,9 +51,10 @@ def led_current_of_leak(led: Led, v_f_ref: Real, i_leak: Real, t: Real, r_shunt:
 
     i_leak = i_f + v_f(i_f)/r_shunt. i_leak >= 0 [A], v_f_ref [V], t [degC], r_shunt > 0 [ohm]. Broadcasts.
     """
-    r = np.minimum(np.asarray(r_shunt, dtype=float), 1e12)
+    placed = np.isfinite(r_shunt)
+    r = np.where(placed, r_shunt, 1.0)
     shared = led_current(led, v_f_ref, np.asarray(i_leak) * r, r, t)
-    return np.asarray(np.minimum(shared, i_leak))
+    return np.asarray(np.where(placed, np.minimum(shared, i_leak), i_leak))
 
 
 def branch_current(i_f: Real, v_f: Real, r_shunt: Real) -> Array:

@@ -130,6 +130,18 @@ def junction_part(overdrive_sheet: float, h_fe: float, beta_r: float, v_inner: f
     return v_inner + float(thermal_voltage(25.0)) * float(np.log(shape))
 
 
+def rise_with_heat(overdrive_sheet: float, h_fe: float, beta_r: float, t: Real) -> Array:
+    """By how much a sheet's v_ce_sat of 25 degC is larger when hot [V]: (k/q)*max(0, t - 25)*ln(saturation_shape).
+
+    The junctions' part goes with absolute temperature; below 25 degC the sheet's figure stays. overdrive_sheet, h_fe,
+    beta_r as in `junction_part` (no rise for overdrive_sheet <= 1), t [degC]. Broadcasts. See `saturation_shape`.
+    """
+    if overdrive_sheet <= 1:
+        return np.zeros_like(np.asarray(t, dtype=float))
+    shape = float(saturation_shape(overdrive_sheet, h_fe, beta_r))
+    return np.asarray((thermal_voltage(np.maximum(t, 25.0)) - thermal_voltage(25.0)) * np.log(shape))
+
+
 def rise_with_current(v_ce_sat: float, i_c: Real, i_c_sheet: float, v_junctions: float = 0.0) -> Array:
     """The sheet's v_ce_sat [V] carried to a larger collector current: flat up to `i_c_sheet` [A], then rising.
 

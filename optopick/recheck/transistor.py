@@ -13,7 +13,13 @@ from optopick.physics import switching
 from optopick.physics.charge import Base, Load
 from optopick.physics.heat import derated, output_dissipation, resistor_derated
 from optopick.physics.leakage import dark_current, dark_current_held, raised
-from optopick.physics.saturation import junction_part, load_current, rise_with_current, v_ce_on_load_line
+from optopick.physics.saturation import (
+    junction_part,
+    load_current,
+    rise_with_current,
+    rise_with_heat,
+    v_ce_on_load_line,
+)
 from optopick.physics.transfer import (
     base_led_current,
     collector_current,
@@ -91,7 +97,7 @@ def stage(brief: Brief, coupler: Coupler, box: Vertices, branch: LedBranch, dark
         h_fe=box.ctr * h / eta,
         v_be=v_be,
         i_eff=branch.i_f * branch.light,
-        i_be=base_led_current(v_be, box.r_be, eta),
+        i_be=base_led_current(v_be + box.v_be, box.r_be, eta),
         i_dark=i_dark,
         i_rest=(branch.i_off + i_dark) * raised(box.v_cc),
         i_input=i_input,
@@ -131,13 +137,14 @@ def static_checks(brief: Brief, coupler: Coupler, box: Vertices, branch: LedBran
 def _v_ce(coupler: Coupler, box: Vertices, s: Stage, drive: Array) -> Array:
     """Collector-emitter voltage on [V]: where the transistor's saturation curve meets the load line.
 
-    The sheet's own figure wherever the drive there is at least the sheet's.
+    The sheet's own figure, moved by current and heat, wherever the drive there is at least the sheet's.
     """
     transfer, transistor = parts_of(coupler)
     sheet = float(collector_current(transfer, transfer.ctr_min, 1.0, transistor.sat_i_f)) / transistor.sat_i_c
     inner = transistor.v_be / 2 if coupler.kind is Kind.DARLINGTON else 0.0
     junctions = junction_part(sheet, transistor.h_fe, transistor.beta_r, inner)
     v_sat = rise_with_current(transistor.v_ce_sat, s.j_s, transistor.sat_i_c, junctions)
+    v_sat = v_sat + rise_with_heat(sheet, transistor.h_fe, transistor.beta_r, box.t)
     wide = np.broadcast_arrays(drive, v_sat, s.h_fe, box.v_cc, box.r_load, box.t)
     found = np.array(wide[1])
     weak = drive < sheet * load_current(box.v_cc, v_sat, box.r_load, s.i_input)
@@ -186,7 +193,8 @@ def rating_checks(
     ]
     if design.r_be is not None:
         _, power, _ = rating_of(brief, "r_be", design.r_be)
-        checks.append(Measured("r_be_power", s.v_be**2 / box.r_be, resistor_derated(power, box.t), "<=", "W"))
+        heat_be = (s.v_be + box.v_be) ** 2 / box.r_be
+        checks.append(Measured("r_be_power", heat_be, resistor_derated(power, box.t), "<=", "W"))
     return checks
 
 
@@ -200,7 +208,7 @@ def times(brief: Brief, coupler: Coupler, box: Vertices, s: Stage, checks_only: 
     carried = box.ctr * s.h
     skewed = not checks_only or brief.limits.distortion is not None
     swung = switching.swing(base, load, transfer, carried, *_fractions(brief, transistor, box, s), early=skewed)
-    tau_s, lit = transistor.tau_s, (s.eta, s.i_eff, s.i_be)
+    tau_s, lit = transistor.tau_s * box.storage, (s.eta, s.i_eff, s.i_be)
     distortion, storage = np.zeros(1), np.zeros(1)
     if skewed:
         late_off = switching.late_off(swung, tau_s, *lit, s.i_rest)

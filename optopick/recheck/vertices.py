@@ -16,8 +16,10 @@ from optopick.corners import (
     drop_axis,
     light_axis,
     resistor_span,
+    storage_axis,
     supply_axis,
     temperatures,
+    v_be_axis,
     v_f_axis,
 )
 from optopick.coupler import Coupler
@@ -26,17 +28,23 @@ from optopick.recheck.measured import Measured
 from optopick.result import Check, Design
 
 RESISTORS = ("r_led", "r_load", "r_be", "r_shunt")
-ORDER = ("temperature", "age", "ctr", "light", "v_f", "drive", "drop", "supply", *RESISTORS)
+CONDITIONS = ("temperature", "age", "ctr", "light", "v_be", "storage", "v_f", "drive", "drop", "supply")
+ORDER = (*CONDITIONS, *RESISTORS)
 
 
 @dataclass(frozen=True)
 class Vertices:
-    """All ends of all ranges. Each array is shaped to lie along its own axes of `ORDER`; `words` names the ends."""
+    """All ends of all ranges. Each array is shaped to lie along its own axes of `ORDER`; `words` names the ends.
+
+    v_be: how far from the typical unit's [V]; storage: storage constant over the typical unit's [1].
+    """
 
     t: Array
     age: Array
     ctr: Array
     light: Array
+    v_be: Array
+    storage: Array
     v_f: Array
     drive: Array
     drop: Array
@@ -78,7 +86,7 @@ def _drive_as_one(parts: list[str]) -> list[str]:
 
 
 def vertices(brief: Brief, coupler: Coupler, design: Design, nominal: Collection[str] = ()) -> Vertices:
-    """The box of a design; lots without a transistor have a single point on the CTR and light axes.
+    """The box of a design; lots without a transistor have a single point on the axes of a transistor.
 
     nominal: axes of `ORDER` that stand at their nominal value alone (25 degC, new, typical, mid supply, no tolerance).
     """
@@ -89,13 +97,16 @@ def vertices(brief: Brief, coupler: Coupler, design: Design, nominal: Collection
         "age": AGES,
         "ctr": ctr_axis(transfer) if transfer else one,
         "light": light_axis(transistor.light_spread) if transistor else one,
+        # the base-emitter voltage matters by what the base resistor takes
+        "v_be": v_be_axis(transistor.v_be_spread if transistor and design.r_be is not None else 0.0),
+        "storage": storage_axis(transistor.tau_s_spread) if transistor else one,
         "v_f": v_f_axis(coupler),
         "drive": drive_axis(brief),
         "drop": drop_axis(brief),
         "supply": supply_axis(brief),
     }
     axes |= {name: Axis(name, (_nominal(brief, coupler, name),), ("",)) for name in nominal if name in axes}
-    placed = [_placed(k, axes[name].values) for k, name in enumerate(ORDER[:8])]
+    placed = [_placed(k, axes[name].values) for k, name in enumerate(CONDITIONS)]
     resistors = [
         _placed(ORDER.index(name), (_ohms(design, name),))
         if name in nominal
@@ -103,8 +114,8 @@ def vertices(brief: Brief, coupler: Coupler, design: Design, nominal: Collection
         for name in RESISTORS
     ]
     ends = tuple((f"{word} min", f"{word} max") for word in ("R_LED", "R_load", "R_BE", "R_shunt"))
-    words = tuple(axes[name].words for name in ORDER[:8]) + ends
-    fields = ("t", "age", "ctr", "light", "v_f", "drive", "drop", "v_cc", *RESISTORS)
+    words = tuple(axes[name].words for name in CONDITIONS) + ends
+    fields = ("t", "age", "ctr", "light", "v_be", "storage", "v_f", "drive", "drop", "v_cc", *RESISTORS)
     return Vertices(**dict(zip(fields, [*placed, *resistors], strict=True)), words=words)
 
 
@@ -116,6 +127,8 @@ def _nominal(brief: Brief, coupler: Coupler, name: str) -> float:
         "age": 0.0,
         "ctr": float(np.sqrt(transfer.ctr_min * transfer.ctr_max)) if transfer else 1.0,
         "light": 1.0,
+        "v_be": 0.0,
+        "storage": 1.0,
         "v_f": coupler.led.v_f_typ,
         "drive": brief.drive.supply.middle,
         "drop": brief.drive.drop.middle,

@@ -114,7 +114,8 @@ RULES = (
     "straight stretches over v(b,e) with rounded bends.",
     "Qcore carries the collector current and stores the charge; its BF is as good as infinite, as Bbase is its base "
     "current.",
-    "TF and CJC follow from the table's two switching rows, TR from the storage time of the saturated one.",
+    "TF and CJC follow from the table's two switching rows, TR from the storage time of the saturated one, longer or "
+    "shorter by this unit's spread.",
     "Voff: what the table's largest V_CE(sat) has above the saturation voltage of the junctions.",
     f"Taken from memory, not from the table: V_BE holds at {J_V_BE * 1e3:g} mA; built-in voltage and grading of the "
     "collector junction; no Early effect; no resistance in base, collector and emitter.",

@@ -31,8 +31,10 @@ class Corner:
     """One assignment of everything uncertain.
 
     words: for people. t [degC]; age: 0 new, 1 end of life; ctr: at the test current and 25 degC [1]; light: relative
-    to a typical LED [1]; left: share of it that ageing has left [1]; v_f: forward voltage at the LED's test current and
-    25 degC [V]; drive, drop, v_cc [V]; resistors [ohm], infinite where absent; i_f, i_off: LED current on and off [A].
+    to a typical LED [1]; v_be: base-emitter voltage less that of a typical unit [V]; storage: storage constant over
+    that of a typical unit [1]; left: share of the light that ageing has left [1]; v_f: forward voltage at the LED's
+    test current and 25 degC [V]; drive, drop, v_cc [V]; resistors [ohm], infinite where absent; i_f, i_off: LED
+    current on and off [A].
     dark: share of the table's largest dark current that flows [1].
     """
 
@@ -41,6 +43,8 @@ class Corner:
     age: float
     ctr: float
     light: float
+    v_be: float
+    storage: float
     left: float
     v_f: float
     drive: float

@@ -92,7 +92,7 @@ def device_at(coupler: Coupler, corner: Corner) -> Device:
     eta = ctr_mid / transistor.h_fe * float(light_factor(transfer, corner.t)) * corner.light
     carried = corner.ctr * float(temperature_factor(transfer, corner.t))
     gain = gain_of_curve(coupler.part, transfer, carried, eta)
-    v_be = transistor.v_be + transistor.v_be_tc * (corner.t - 25.0)
+    v_be = transistor.v_be + corner.v_be + transistor.v_be_tc * (corner.t - 25.0)
     tau_f = transistor.tau_0 / transistor.h_fe
     i_ceo = float(dark_current(transistor.i_ceo_1, transistor.t_1, transistor.i_ceo_2, transistor.t_2, corner.t))
     return Device(
@@ -102,7 +102,7 @@ def device_at(coupler: Coupler, corner: Corner) -> Device:
         gain=gain,
         beta_r=transistor.beta_r,
         tau_f=tau_f,
-        tau_r=reverse_transit(transistor.tau_s, tau_f, carried / eta, transistor.beta_r),
+        tau_r=reverse_transit(transistor.tau_s * corner.storage, tau_f, carried / eta, transistor.beta_r),
         emitter=Junction(transistor.c_be, V_J, 0.0),
         collector=Junction(max(transistor.c_m / transistor.h_fe, LEAST_C), V_J, M_J),
         v_off=_v_off(transfer, transistor, v_t, carried / eta),

@@ -41,18 +41,18 @@ def sample(
     count: int = 1_000_000,
     normal: bool = False,
     seed: int = 1,
-    workers: int | None = None,
+    workers: Workers | None = None,
 ) -> Yield:
     """The share of `count` random units that pass each check, and all of them.
 
     Every uncertain quantity is drawn between its stated extremes, independently: uniform, or a normal truncated there
     at three standard deviations; CTR and light by their logarithms. The wear of "end of life" is that of the hardest
-    driven sample, as in the checks. The same seed gives the same answer whatever the number of workers, processes
-    of this machine: one a core, or as told.
+    driven sample, as in the checks. The same seed gives the same answer whoever does the work; who is not told takes
+    the processes of this machine, where that is worth it.
     """
     starts = range(0, count, CHUNK)
     chunks = [_Chunk(brief, coupler, design, normal, min(CHUNK, count - start), seed + start) for start in starts]
-    hands: Workers = Processes(workers) if len(chunks) >= WORTH_SHARING else Here()
+    hands: Workers = workers or (Processes() if len(chunks) >= WORTH_SHARING else Here())
     return _together(list(hands.map(_counted, chunks)), count)
 
 
@@ -66,6 +66,9 @@ class _Chunk:
     normal: bool
     count: int
     seed: int
+
+    def __str__(self) -> str:
+        return f"{self.count} samples drawn from seed {self.seed}"
 
 
 def _counted(chunk: _Chunk) -> tuple[int, list[Passing]]:
@@ -129,13 +132,17 @@ def _box(brief: Brief, coupler: Coupler, design: Design, count: int, draw: Draw)
     def by_ratio(low: float, high: float) -> Array:
         return np.exp(draw(Span(np.log(low), np.log(high)), count))
 
-    spread = transistor.light_spread if transistor else 1.0
+    spread, off, longer = 1.0, 0.0, 1.0
+    if transistor:
+        spread, off, longer = transistor.light_spread, transistor.v_be_spread, transistor.tau_s_spread
     t = draw(brief.environment.temperature, count)
     return Vertices(
         t=t,
         age=draw(Span(0.0, 1.0), count),
         ctr=by_ratio(transfer.ctr_min, transfer.ctr_max) if transfer else one,
         light=by_ratio(1 / spread, spread),
+        v_be=draw(Span(-off, off), count),
+        storage=by_ratio(1 / longer, longer),
         v_f=draw(Span(led.v_f_min, led.v_f_max), count),
         drive=draw(brief.drive.supply, count),
         drop=draw(brief.drive.drop, count),

@@ -31,7 +31,8 @@ TRANSISTOR = ALL | {
     "kind": "phototransistor", "base_pin": "yes", "ctr_at": "10", "ctr_curve": "0.001:1 100:1",
     "ctr_temperature": "-60:1 150:1", "light_tc": "0", "v_ce_sat": "0.05", "v_ce_sat_i_f": "20", "v_ce_sat_i_c": "1",
     "i_c_max": "500", "v_ceo": "100", "i_ceo": "0.001", "i_ceo_hot": "0.0001", "i_ceo_hot_t": "100", "h_fe_min": "300",
-    "h_fe_max": "300", "v_be": "0.65", "v_be_tc": "0", "sw_t_r": "2", "sw_t_f": "3",
+    "h_fe_max": "300", "v_be": "0.65", "v_be_tc": "0", "v_be_spread": "0", "sw_t_r": "2", "sw_t_f": "3",
+    "tau_s_spread": "1",
 }  # fmt: skip
 
 LOGIC = ALL | {

@@ -79,9 +79,9 @@ def link(circuit: OutputCircuit, v_cc: float, v_il: float, v_ih: float, input_lo
 def coupler(ctr: float, h_fe: float) -> Coupler:
     """An invented coupler of one CTR and one gain: 0.2 V at half of what it can carry; LED 100 mW, output 150 mW."""
     transistor = Transistor(
-        h_fe=h_fe, light_spread=1.0, v_be=0.65, v_be_tc=0.0,
+        h_fe=h_fe, light_spread=1.0, v_be=0.65, v_be_tc=0.0, v_be_spread=0.0,
         v_ce_sat=0.2, sat_i_f=20e-3, sat_i_c=10e-3 * ctr, beta_r=5.0, i_c_max=100e-3, v_ceo=70.0,
-        i_ceo_1=1e-9, t_1=25.0, i_ceo_2=1e-6, t_2=100.0, c_be=1e-11, tau_0=1e-6, c_m=1e-9, tau_s=1e-5,
+        i_ceo_1=1e-9, t_1=25.0, i_ceo_2=1e-6, t_2=100.0, c_be=1e-11, tau_0=1e-6, c_m=1e-9, tau_s=1e-5, tau_s_spread=1.0,
     )  # fmt: skip
     return Coupler(
         part="EXAMPLE-1", maker="invented", kind=Kind.PHOTOTRANSISTOR, base_pin=True, channels=1,

@@ -40,7 +40,8 @@ def of_rows(sheet: Sheet, e: Entry) -> Device:
     assert coupler.transistor is not None
     transistor = replace(coupler.transistor, i_ceo_1=e.i_ceo, i_ceo_2=e.i_ceo)
     corner = Corner(
-        words="", t=25.0, age=0.0, ctr=sheet.ctr, light=1.0, left=1.0, v_f=1.2, drive=5.0, drop=0.0, v_cc=c.v_cc,
+        words="", t=25.0, age=0.0, ctr=sheet.ctr, light=1.0, v_be=0.0, storage=1.0, left=1.0, v_f=1.2, drive=5.0,
+        drop=0.0, v_cc=c.v_cc,
         r_led=1e3, r_load=c.r_load, r_be=math.inf, r_shunt=math.inf, i_f=c.i_f, i_off=c.i_off, dark=1.0,
     )  # fmt: skip
     return device_at(replace(coupler, transistor=transistor), corner)
