@@ -1,4 +1,4 @@
-"""The two ways optopick refuses: the input is wrong, or the program contradicts itself."""
+"""The ways optopick refuses: the input is wrong, the program contradicts itself, or work was lost again and again."""
 
 from __future__ import annotations
 
@@ -25,6 +25,14 @@ class InputError(Exception):
         self.mistakes: tuple[Mistake, ...] = tuple(mistakes)
         super().__init__("\n".join(str(mistake) for mistake in self.mistakes))
 
+    def __reduce__(self) -> tuple[type[InputError], tuple[tuple[Mistake, ...]]]:
+        """From its mistakes: what an exception does by itself, from its message, loses them between processes."""
+        return type(self), (self.mistakes,)
+
 
 class DisagreementError(Exception):
     """The model and the re-check from physics disagree about a check: a defect, never a result."""
+
+
+class WorkLostError(Exception):
+    """What did a piece of work died each time it was tried, or there is nothing left to do it."""

@@ -27,7 +27,7 @@ LAYERS: tuple[tuple[str, ...], ...] = (
         *("keys", "stock", "key_values", "read_keys", "brief_rules", "brief_stock", "read_brief", "brief_schema"),
         *("coupler_columns", "coupler_curves", "coupler_files", "coupler_cells", "gaps", "gaps_switching"),
         *("coupler_rows", "coupler_sheets", "read_couplers", "switching_rows", "switching_fit"),
-        *("board_keys", "read_board", "corners", "result", "answers", "board_answers", "cautions"),
+        *("board_keys", "board_changes", "read_board", "corners", "result", "answers", "board_answers", "cautions"),
     ),
     ("model", "recheck", "simulate"),
     ("report",),
@@ -39,7 +39,7 @@ LAYERS: tuple[tuple[str, ...], ...] = (
 STRANGERS = ({"model", "recheck"}, {"model", "simulate"}, {"brief", "coupler"})
 
 SOLVERS = {"pyomo", "highspy"}
-SLOW = {"numpy", "scipy", "pandas", "pyomo", "highspy", "rich", "quantiphy", "rkm_codes"}
+SLOW = {"numpy", "scipy", "pandas", "pyomo", "highspy", "rich", "quantiphy", "rkm_codes", "distributed"}
 
 
 def module_name(path: Path) -> str:
@@ -206,7 +206,11 @@ def test_what_is_imported_is_declared():
     declared = {re.split(r"[<>=!~ \[]", line)[0].replace("-", "_").lower() for line in project["dependencies"]}
     used = {name for module in MODULES for name in top_names(module)} - set(sys.stdlib_module_names) - {"optopick"}
     by_name_only = {"highspy"}  # Pyomo loads it by itself
-    assert used | by_name_only == declared
+    extra = {"distributed": "cluster", "pyarrow": "parquet"}
+    assert (used - set(extra)) | by_name_only == declared
+    for name, of in extra.items():
+        assert name in used
+        assert any(line.startswith(name) for line in project["optional-dependencies"][of])
 
 
 def test_files_beside_the_code_are_packaged():

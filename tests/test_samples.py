@@ -9,6 +9,7 @@ import random_links
 from optopick.recheck import review
 from optopick.result import Design
 from optopick.uses.samples import CHUNK, sample
+from optopick.uses.workers import Here, Processes
 
 
 def random_design(seed: int):
@@ -57,7 +58,7 @@ def test_failing_checks_fail_in_some_samples():
 def test_workers_and_chunks_do_not_change_the_answer():
     brief, coupler, design = random_design(0)
     count = 9 * CHUNK + 17
-    once = sample(brief, coupler, design, count=count, workers=1)
-    assert once == sample(brief, coupler, design, count=count, workers=3)
+    once = sample(brief, coupler, design, count=count, workers=Here())
+    assert once == sample(brief, coupler, design, count=count, workers=Processes(3))
     assert once.count == count
     assert all(sum(passing.histogram) == count for passing in once.checks)

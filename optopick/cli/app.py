@@ -10,7 +10,7 @@ from typing import TYPE_CHECKING, Any
 
 import click
 
-from optopick.errors import DisagreementError, InputError
+from optopick.errors import DisagreementError, InputError, WorkLostError
 
 if TYPE_CHECKING:
     from rich.console import RenderableType
@@ -18,7 +18,7 @@ if TYPE_CHECKING:
     from optopick.result import Status
 
 OK, FAILS, WRONG_INPUT, NO_DESIGN, OUT_OF_TIME = range(5)
-DISAGREES = 70
+DISAGREES, WORK_LOST = 70, 71
 PIPED_WIDTH = 100
 
 
@@ -36,6 +36,9 @@ class Messages(click.Group):
         except DisagreementError as error:
             click.echo(f"optopick: internal disagreement, no result given: {error}", err=True)
             sys.exit(DISAGREES)
+        except WorkLostError as error:
+            click.echo(f"optopick: work lost, no result given: {error}", err=True)
+            sys.exit(WORK_LOST)
 
 
 @click.group(cls=Messages, context_settings={"help_option_names": ["-h", "--help"], "max_content_width": 100})

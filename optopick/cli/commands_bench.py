@@ -10,6 +10,7 @@ from typing import Any
 import click
 
 from optopick.cli.app import FAILS, NO_DESIGN, OK, brief_argument, json_option, main, progress, show, show_json
+from optopick.cli.hands import hands, workers_options
 
 # Imports stand inside the commands: --help and input errors must not wait for the numerical libraries.
 # ruff: noqa: PLC0415, PLR0913, PLR0917
@@ -89,6 +90,7 @@ def sweep(
 @click.option("--samples", type=click.IntRange(min=1), default=1_000_000, help="Random units; default a million.")
 @click.option("--normal", is_flag=True, help="Truncated normal between the extremes instead of uniform.")
 @click.option("--seed", type=int, default=1, help="Of the random numbers; default 1.")
+@workers_options
 @json_option
 def yield_(
     brief: Path,
@@ -100,6 +102,8 @@ def yield_(
     samples: int,
     normal: bool,
     seed: int,
+    workers: int | None,
+    cluster: str | None,
     as_json: bool,
 ) -> None:
     """The share of random units of a design that pass each check.
@@ -119,7 +123,8 @@ def yield_(
         sys.exit(NO_DESIGN)
     from optopick.uses.samples import sample
 
-    drawn = sample(read, *found, count=samples, normal=normal, seed=seed)
+    with hands(workers, cluster) as doing:
+        drawn = sample(read, *found, count=samples, normal=normal, seed=seed, workers=doing)
     if as_json:
         from optopick.report.as_json import yield_object
 

@@ -19,9 +19,10 @@ from optopick.cli.app import (
     show_json,
     time_option,
 )
+from optopick.cli.hands import hands, workers_options
 
 # Imports stand inside the commands: --help and input errors must not wait for the numerical libraries.
-# ruff: noqa: PLC0415
+# ruff: noqa: PLC0415, PLR0913, PLR0917
 
 
 @main.command()
@@ -29,9 +30,17 @@ from optopick.cli.app import (
 @click.option("--top", type=click.IntRange(min=1), default=None, metavar="N", help="Show the best N only.")
 @click.option("--csv", "as_csv", is_flag=True, help="Print the ranking as CSV and nothing else.")
 @json_option
-@click.option("--workers", type=click.IntRange(min=1), default=None, metavar="N", help="Processes; default: all cores.")
+@workers_options
 @time_option
-def rank(brief: Path, top: int | None, as_csv: bool, as_json: bool, workers: int | None, time_limit: float) -> None:
+def rank(
+    brief: Path,
+    top: int | None,
+    as_csv: bool,
+    as_json: bool,
+    workers: int | None,
+    cluster: str | None,
+    time_limit: float,
+) -> None:
     """Rank every coupler of BRIEF's table by its best proved design; the others with the reason.
 
     Ctrl-C ends it early with what is finished. The time limit holds for each coupler.
@@ -43,9 +52,9 @@ def rank(brief: Path, top: int | None, as_csv: bool, as_json: bool, workers: int
     read = read_brief(brief)
 
     from optopick.uses.rank import rank as run
-    from optopick.uses.workers import Processes
 
-    ranking = run(read, workers=Processes(workers), progress=progress(), time_limit=time_limit)
+    with hands(workers, cluster) as doing:
+        ranking = run(read, workers=doing, progress=progress(), time_limit=time_limit)
     if as_json:
         from optopick.report.as_json import ranking_object
 
@@ -70,6 +79,7 @@ def rank(brief: Path, top: int | None, as_csv: bool, as_json: bool, workers: int
 @click.option(
     "--plot", type=click.Path(path_type=Path), default=None, help="Also draw the front to a .svg or .png file."
 )
+@workers_options
 @json_option
 @time_option
 def tradeoff(
@@ -79,6 +89,8 @@ def tradeoff(
     points: int | None,
     as_csv: bool,
     plot: Path | None,
+    workers: int | None,
+    cluster: str | None,
     as_json: bool,
     time_limit: float,
 ) -> None:
@@ -94,8 +106,11 @@ def tradeoff(
     goals, read = goal_pair(first, second), read_brief(brief)
 
     from optopick.uses.tradeoff import tradeoff as run
+    from optopick.uses.workers import Processes
 
-    front = run(read, goals, points=points, progress=progress(), time_limit=time_limit)
+    with hands(workers, cluster) as doing:
+        found = doing or Processes()
+        front = run(read, goals, points=points, workers=found, progress=progress(), time_limit=time_limit)
     if plot is not None:
         from optopick.cli.files import write_picture
         from optopick.report.plots import front_figure

@@ -8,38 +8,25 @@ from pathlib import Path
 
 import numpy as np
 
-from optopick.board import Board, BoardGoalName, BoardLink, reel_of
+from optopick.board import Board, BoardGoalName, reel_of
 from optopick.board_answers import BoardProof, BoardResult, LinkChoice
-from optopick.brief import Brief, GoalName
+from optopick.brief import GoalName
 from optopick.cautions import cautions
 from optopick.coupler import Coupler
 from optopick.errors import DisagreementError
-from optopick.model.board import Caps, Taken
+from optopick.model.board import WHOLE, Caps
 from optopick.model.board_search import BoardFound, BoardSearch, Place
+from optopick.model.board_seats import Taken
 from optopick.model.search import STEP
 from optopick.model.solver import Clock, highs_name
 from optopick.read_board import read_board
-from optopick.result import Design, Objective, Status
-from optopick.uses.engine import Best, Entry, Progress, ask_of, entries_of, over_all, quiet, rechecked
+from optopick.result import Objective, Status
+from optopick.uses.board_groups import Group, groups_of
+from optopick.uses.board_totals import packages_placed, price_of, resistances, totals_of, worst_edge
+from optopick.uses.engine import Best, Progress, ask_of, over_all, quiet, rechecked
 
-UNITS = {BoardGoalName.POWER: "W", BoardGoalName.REELS: "1", BoardGoalName.COUPLERS: "1"}
-
-
-@dataclass(frozen=True)
-class _Group:
-    """Links with one brief, which get one design.
-
-    That loses nothing: give each of them the design that takes least power among theirs, and the board takes from no
-    further reel, has no further part and takes no more power.
-    """
-
-    brief: Brief
-    links: tuple[BoardLink, ...]
-    entries: tuple[Entry, ...]
-
-    @property
-    def count(self) -> int:
-        return sum(link.count for link in self.links)
+UNITS = {BoardGoalName.POWER: "W"}
+"""All others are plain numbers."""
 
 
 @dataclass(frozen=True)
@@ -79,10 +66,9 @@ def solve_board(
     if not isinstance(board, Board):
         board = read_board(Path(board))
     clock = Clock(time_limit)
-    groups = _groups(board, couplers)
+    groups = groups_of(board, couplers)
     alone = _alone(groups, clock, progress)
-    places = [_place(group, best) for group, best in zip(groups, alone, strict=True)]
-    search = BoardSearch(places, clock, progress)
+    search = BoardSearch(_places(board, groups, alone, clock), clock, progress)
     if all(best.choice is not None for best in alone):
         stages = _staged(board, search)
     else:
@@ -92,14 +78,7 @@ def solve_board(
     return _result(board, groups, alone, stages, search)
 
 
-def _groups(board: Board, couplers: Sequence[Coupler] | None) -> list[_Group]:
-    by_brief: dict[Brief, list[BoardLink]] = {}
-    for link in board.links:
-        by_brief.setdefault(link.brief, []).append(link)
-    return [_Group(brief, tuple(links), tuple(entries_of(brief, couplers)[0])) for brief, links in by_brief.items()]
-
-
-def _alone(groups: Sequence[_Group], clock: Clock, progress: Progress) -> list[Best]:
+def _alone(groups: Sequence[Group], clock: Clock, progress: Progress) -> list[Best]:
     """The least power of each link by itself."""
     found = []
     for done, group in enumerate(groups):
@@ -108,32 +87,56 @@ def _alone(groups: Sequence[_Group], clock: Clock, progress: Progress) -> list[B
     return found
 
 
-def _place(group: _Group, best: Best) -> Place:
-    couplers = tuple((entry.coupler, entry.model) for entry in group.entries)
-    return Place(couplers, ask_of(group.brief), group.count, best.bound if np.isfinite(best.bound) else 0.0)
+def _places(board: Board, groups: Sequence[Group], alone: Sequence[Best], clock: Clock) -> list[Place]:
+    return [
+        Place(
+            couplers=tuple((entry.coupler, entry.model) for entry in group.entries),
+            ask=ask_of(group.brief),
+            counts=group.counts,
+            least=best.bound if np.isfinite(best.bound) else 0.0,
+            quickest=_quickest(group, clock) if BoardGoalName.EDGE in board.goals else 0.0,
+            prices=group.prices,
+        )
+        for group, best in zip(groups, alone, strict=True)
+    ]
+
+
+def _quickest(group: Group, clock: Clock) -> float:
+    """A bound on the shortest edge of a link that has a limit on it [s], guard taken out."""
+    ask = ask_of(group.brief)
+    if np.isinf(ask.edge):
+        return 0.0
+    best = over_all(group.entries, GoalName.EDGE_TIME, ask, clock)
+    return best.bound if np.isfinite(best.bound) else 0.0
+
+
+def caps_of(board: Board) -> Caps:
+    """The board's limits."""
+    caps = Caps()
+    for goal in BoardGoalName:
+        limit = board.limits.of(goal)
+        caps = caps if limit is None else caps.limited(goal, float(limit))
+    return caps
 
 
 def _staged(board: Board, search: BoardSearch) -> _Stages:
-    limits, goal = board.limits, board.goal
-    given = {"reels": limits.reels, "couplers": limits.couplers, "power": limits.power}
-    caps = {name: np.inf if limit is None else float(limit) for name, limit in given.items()}
-    goals = [goal.minimize, goal.then]
-    if goal.then is not BoardGoalName.POWER:
+    goals = [*board.goals]
+    if board.goal.then is not BoardGoalName.POWER:
         # of boards that are equal in both goals the one that takes least power
         goals.append(BoardGoalName.POWER)
+    caps = caps_of(board)
     found: list[BoardFound] = []
-    for one, give in zip(goals, (goal.give, 0.0, 0.0), strict=False):
-        found.append(search.least(one, Caps(**caps), start=found[-1].taken if found else None))
+    for one, give in zip(goals, (board.goal.give, 0.0, 0.0), strict=False):
+        found.append(search.least(one, caps, start=found[-1].taken if found else None))
         if found[-1].taken is None:
             break
         relaxed = found[-1].value * (1 + give) * (1 + STEP)
-        cap = relaxed if one is BoardGoalName.POWER else float(np.floor(relaxed))
-        caps[one.value] = min(caps[one.value], cap)
+        caps = caps.limited(one, float(np.floor(relaxed)) if one in WHOLE else relaxed)
     return _Stages(tuple(goals), tuple(found))
 
 
 def _result(
-    board: Board, groups: Sequence[_Group], alone: Sequence[Best], stages: _Stages, search: BoardSearch
+    board: Board, groups: Sequence[Group], alone: Sequence[Best], stages: _Stages, search: BoardSearch
 ) -> BoardResult:
     found = stages.last
     hopeless = [
@@ -144,12 +147,18 @@ def _result(
     ]
     links = _choices(board, groups, alone, found.taken) if found.taken else ()
     designs = [one.review.design for one in links]
+    parts = {entry.coupler.part: entry.coupler for group in groups for entry in group.entries}
+    packages = packages_placed(links, parts)
     result = BoardResult(
         status=_status(stages),
         goals=_objectives(search, stages) if found.taken else (),
         links=links,
         reels=tuple(sorted({reel_of(ohms) for design in designs for ohms in resistances(design)})),
         couplers=tuple(sorted({design.coupler for design in designs})),
+        packages=packages,
+        price=price_of(links, packages, parts),
+        edge=worst_edge(links),
+        unpriced=tuple(dict.fromkeys(name for group in groups for name in group.unpriced)),
         hopeless=tuple(hopeless),
         proof=_proof(search),
         cautions=tuple(dict.fromkeys(text for group in groups for text in cautions(group.brief))),
@@ -165,7 +174,7 @@ def _status(stages: _Stages) -> Status:
 
 
 def _choices(
-    board: Board, groups: Sequence[_Group], alone: Sequence[Best], taken: Sequence[Taken]
+    board: Board, groups: Sequence[Group], alone: Sequence[Best], taken: Sequence[Taken]
 ) -> tuple[LinkChoice, ...]:
     """The links in the board's order, each with its design checked again alone."""
     found = {}
@@ -179,31 +188,26 @@ def _choices(
     return tuple(found[link.name] for link in board.links)
 
 
-def resistances(design: Design) -> tuple[float, ...]:
-    """The resistances that a design places [ohm]; equal ones in series count as one."""
-    placed = (design.r_led, design.r_shunt, design.r_load, design.r_be)
-    return tuple(ohms for ohms in placed if ohms is not None)
-
-
 def _recount(board: Board, result: BoardResult) -> None:
     """Hold the board's limits and goals against what the designs themselves say."""
     if not result.links:
         return
-    counted = {"reels": len(result.reels), "couplers": len(result.couplers), "power": result.power}
-    limits = {"reels": board.limits.reels, "couplers": board.limits.couplers, "power": board.limits.power}
-    for name, limit in limits.items():
-        if limit is not None and counted[name] > limit * (1 + STEP):
-            raise DisagreementError(f"board: {counted[name]:g} {name} in the designs, limit {limit:g}")
-    for goal in result.goals:
-        if not np.isclose(goal.value, counted[goal.name], rtol=STEP, atol=0.0):
-            raise DisagreementError(f"board: {goal.name} is {goal.value:g} in the model, {counted[goal.name]:g} again")
+    counted = totals_of(result)
+    for goal in BoardGoalName:
+        limit, value = board.limits.of(goal), counted[goal]
+        if limit is not None and (value is None or value > limit * (1 + STEP)):
+            raise DisagreementError(f"board: {value} {goal.value} in the designs, limit {limit:g}")
+    for told in result.goals:
+        value = counted[BoardGoalName(told.name)]
+        if value is None or not np.isclose(told.value, value, rtol=STEP, atol=1e-12):
+            raise DisagreementError(f"board: {told.name} is {told.value:g} in the model, {value} again")
 
 
 def _objectives(search: BoardSearch, stages: _Stages) -> tuple[Objective, ...]:
     """Both goals at the board given, with their bounds."""
     taken = stages.last.taken or ()
     return tuple(
-        Objective(goal.value, search.value(taken, goal), one.bound, UNITS[goal])
+        Objective(goal.value, search.value(taken, goal), one.bound, UNITS.get(goal, "1"))
         for goal, one in list(zip(stages.goals, stages.found, strict=False))[:2]
     )
 

@@ -75,6 +75,9 @@ class Task:
     coupler: Coupler
     time_limit: float
 
+    def __str__(self) -> str:
+        return self.coupler.part
+
 
 def rank_one(task: Task) -> Ranked | Rejected:
     """The best design of one coupler, or why there is none."""

@@ -11,7 +11,7 @@ import os
 import platform
 import sys
 import time
-from collections.abc import Callable, Iterator, Sequence
+from collections.abc import Callable, Iterable, Iterator
 from dataclasses import replace
 from functools import partial
 from importlib.metadata import version
@@ -83,7 +83,7 @@ class Timed:
     def __init__(self, cores: int) -> None:
         self.cores, self.each = cores, []
 
-    def map(self, function: Callable[[Item], Answer], items: Sequence[Item]) -> Iterator[Answer]:
+    def map(self, function: Callable[[Item], Answer], items: Iterable[Item]) -> Iterator[Answer]:
         """The answers in order, each one's processor time noted."""
         for answer, seconds in Processes(self.cores).map(partial(timed, function), items):
             self.each.append(seconds)
