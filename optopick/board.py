@@ -21,27 +21,54 @@ class BoardGoalName(StrEnum):
     POWER = "power"
     REELS = "reels"
     COUPLERS = "couplers"
+    PACKAGES = "packages"
+    COST = "cost"
+    EDGE = "edge"
+
+
+Grounds = tuple[str, str]
+"""The names of the grounds on the LED's side and on the output's side of a link."""
 
 
 @dataclass(frozen=True)
 class BoardLink:
-    """One link: its name on the board, what it must do, and how many of it there are."""
+    """One link: its name on the board, what it must do, and how many of it there are.
+
+    changes: the keys that the board changes in the link's brief file, in words; None where it takes one out.
+    grounds: links that have the same ones may share packages; None where the link's packages are its own.
+    """
 
     name: str
     brief: Brief
     count: int
+    grounds: Grounds | None = None
+    changes: tuple[tuple[str, str | None], ...] = ()
 
 
 @dataclass(frozen=True)
 class BoardLimits:
     """Upper limits over the board; None where none is stated.
 
-    reels: distinct resistances. couplers: distinct parts. power: worst average of all links together [W].
+    reels: distinct resistances. couplers: distinct parts. packages: coupler packages placed. power: worst average of
+    all links together [W]. price: of all couplers and resistors, in the currency of the tables.
     """
 
     reels: int | None = None
     couplers: int | None = None
+    packages: int | None = None
     power: float | None = None
+    price: float | None = None
+
+    def of(self, goal: BoardGoalName) -> float | None:
+        """The limit on what a goal makes least; on edges there is none over the board."""
+        stated = {
+            BoardGoalName.REELS: self.reels,
+            BoardGoalName.COUPLERS: self.couplers,
+            BoardGoalName.PACKAGES: self.packages,
+            BoardGoalName.POWER: self.power,
+            BoardGoalName.COST: self.price,
+        }
+        return stated.get(goal)
 
 
 @dataclass(frozen=True)
@@ -62,6 +89,11 @@ class Board:
     goal: BoardGoal
     links: tuple[BoardLink, ...]
     path: Path | None = None
+
+    @property
+    def goals(self) -> tuple[BoardGoalName, BoardGoalName]:
+        """What to make least, and then."""
+        return self.goal.minimize, self.goal.then
 
 
 def reel_of(ohms: float) -> float:

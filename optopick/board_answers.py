@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
-from optopick.board import BoardLink
+from optopick.board import BoardLink, Grounds
 from optopick.result import Objective, Review, Status
 
 
@@ -28,6 +28,20 @@ class LinkChoice:
 
 
 @dataclass(frozen=True)
+class Packages:
+    """Packages of one part: how many, and which links are in them with how many channels each.
+
+    grounds: those that the links share; None where the packages are one link's own.
+    """
+
+    part: str
+    channels: int
+    count: int
+    links: tuple[tuple[str, int], ...]
+    grounds: Grounds | None
+
+
+@dataclass(frozen=True)
 class BoardProof:
     """How the answer was established: size of the last model, cuts, solver calls, seconds, the solver."""
 
@@ -44,7 +58,9 @@ class BoardResult:
     """The answer for a board.
 
     goals: the first and the second, empty where there is no design. reels: the distinct resistances [ohm], ascending;
-    couplers: the distinct parts. hopeless: links that have no design even alone.
+    couplers: the distinct parts. packages: the coupler packages placed. price: of all couplers and resistors, None
+    where a price is not known. edge: the worst edge time, each against its link's limit [1], None without any limit.
+    unpriced: what was left out since it has no price. hopeless: links that have no design even alone.
     """
 
     status: Status
@@ -52,6 +68,10 @@ class BoardResult:
     links: tuple[LinkChoice, ...]
     reels: tuple[float, ...]
     couplers: tuple[str, ...]
+    packages: tuple[Packages, ...]
+    price: float | None
+    edge: float | None
+    unpriced: tuple[str, ...]
     hopeless: tuple[str, ...]
     proof: BoardProof
     cautions: tuple[str, ...]
@@ -65,3 +85,8 @@ class BoardResult:
     def alone(self) -> float:
         """The same with every link as if it were alone [W]."""
         return sum(one.link.count * one.alone for one in self.links)
+
+    @property
+    def placed(self) -> int:
+        """How many packages are placed."""
+        return sum(one.count for one in self.packages)

@@ -9,8 +9,7 @@ from optopick.keys import Bound, Key
 
 GOALS = tuple(goal.value for goal in BoardGoalName)
 
-LINK = "link"
-
+LINK, SET = "link", "set"
 
 _PLAIN = Key(
     section="",
@@ -42,6 +41,16 @@ _LIMIT = replace(_COUNT, section="limits")
 LIMITS = (
     replace(_LIMIT, name="reels", meaning="The most distinct resistances over the board.", example=10),
     replace(_LIMIT, name="couplers", meaning="The most distinct coupler parts over the board.", example=3),
+    replace(_LIMIT, name="packages", meaning="The most coupler packages on the board.", example=12),
+    replace(
+        _PLAIN,
+        section="limits",
+        name="price",
+        kind="quantity",
+        meaning="The most that all couplers and resistors may cost, in the currency of the tables.",
+        example=4.5,
+        above=Bound("0", 0.0),
+    ),
     replace(
         _PLAIN,
         section="limits",
@@ -76,6 +85,23 @@ LINKS = (
     replace(_LINK, name="name", kind="text", meaning="What the link is called on the board.", example="motor on"),
     replace(_LINK, name="brief", kind="file", meaning="Its brief, relative to the board file.", example="motor.toml"),
     replace(_COUNT, section=LINK, name="count", meaning="How many of it there are.", example=8, default=1, most=_MANY),
+    replace(
+        _PLAIN,
+        section=LINK,
+        name="unset",
+        kind="texts",
+        meaning="Keys of its brief to leave out.",
+        example=["limits.delay"],
+        default=(),
+    ),
+    replace(
+        _PLAIN,
+        section=LINK,
+        name="grounds",
+        kind="texts",
+        meaning="The ground on the LED's side and the one on the output's.",
+        example=["field", "logic"],
+    ),
 )
 
 SECTIONS = {"limits": LIMITS, "goal": GOAL}

@@ -4,13 +4,12 @@ from __future__ import annotations
 
 import csv
 import difflib
-import io
 import json
 import re
 from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
 from functools import lru_cache
-from itertools import pairwise
+from itertools import chain, pairwise
 from pathlib import Path
 
 from optopick.coupler import Kind
@@ -67,55 +66,88 @@ class _Record:
 def read_rows(path: Path) -> tuple[Row, ...]:
     """Read every row of the table at `path`; raises InputError with every mistake of the file."""
     mistakes: list[Mistake] = []
-    place, records = _file(path, mistakes)
-    if not records:
-        mistakes = mistakes or [Mistake(place.name, "no header line", "a line with the names of the columns")]
-        raise InputError(mistakes)
-    header, *body = records
-    columns = _header(place, header, mistakes)
-    rows = [row for record in body if (row := _row(place, columns, record, mistakes)) is not None]
+    place, source = stream_rows(path, mistakes)
+    rows = [row for row in source if row is not None]
     _check_names(place, rows, mistakes)
-    if not body and not mistakes:
-        mistakes.append(Mistake(place.name, "no rows", "one line per part and CTR bin below the header"))
     if mistakes:
         raise InputError(mistakes)
     return tuple(rows)
 
 
+def stream_rows(path: Path, mistakes: list[Mistake]) -> tuple[Place, Iterator[Row | None]]:
+    """Return how the lines of the table are called, and its rows as they are read, None for one that does not line up.
+
+    Mistakes are added to the list as they are found; the caller looks for names that stand there twice. Raises
+    InputError, at once or while reading, where the file cannot be read on.
+    """
+    place, records = _file(path, mistakes)
+    return place, _rows(place, records, mistakes)
+
+
+def _rows(place: Place, records: Iterator[_Record], mistakes: list[Mistake]) -> Iterator[Row | None]:
+    header = next(records, None)
+    if header is None:
+        raise InputError(mistakes or [Mistake(place.name, "no header line", "a line with the names of the columns")])
+    columns = _header(place, header, mistakes)
+    empty = True
+    for record in records:
+        empty = False
+        yield _row(place, columns, record, mistakes)
+    if empty and not mistakes:
+        mistakes.append(Mistake(place.name, "no rows", "one line per part and CTR bin below the header"))
+
+
 # ---- lines ----------------------------------------------------------------------------------------------------------
 
 
-def _file(path: Path, mistakes: list[Mistake]) -> tuple[Place, list[_Record]]:
+def _file(path: Path, mistakes: list[Mistake]) -> tuple[Place, Iterator[_Record]]:
     """Return how the lines of the file are called, and the header and rows in it."""
     if not reads(path):
-        return Place(path.name, "line"), list(_records(path, mistakes))
+        return Place(path.name, "line"), _records(path, mistakes)
     place, lines = read_file(path)
-    return place, [_Record(number, cells) for number, cells in lines]
+    return place, (_Record(number, cells) for number, cells in lines)
 
 
-def _text(path: Path) -> str:
+def _text_lines(path: Path) -> Iterator[str]:
+    """Yield the lines of a file of text, each with one line feed at its end whatever it has in the file."""
     try:
-        data = path.read_bytes()
+        with path.open(encoding="utf-8-sig", newline=None) as file:
+            for line in file:
+                if "\0" in line:
+                    raise InputError([Mistake(path.name, "binary data", "a CSV file in UTF-8")])
+                yield line
     except OSError as error:
         found = "a directory" if path.is_dir() else (error.strerror or "an unreadable file").lower()
         raise InputError([Mistake(str(path), found, "a CSV file that can be read")]) from None
-    if b"\0" in data:
-        raise InputError([Mistake(path.name, "binary data", "a CSV file in UTF-8")])
+    except UnicodeDecodeError:
+        raise InputError([_undecodable(path)]) from None
+
+
+def _undecodable(path: Path) -> Mistake:
+    """Return where a file is no text: the decoder only knows the place in its buffer."""
+    first = 0
+    with path.open("rb") as file:
+        for number, line in enumerate(file, 1):
+            if b"\0" in line:
+                return Mistake(path.name, "binary data", "a CSV file in UTF-8")
+            first = first or (0 if _is_text(line) else number)
+    return Mistake(f"{path.name} line {first}", "bytes that are not UTF-8", "a CSV file in UTF-8")
+
+
+def _is_text(line: bytes) -> bool:
     try:
-        return data.decode("utf-8-sig")
-    except UnicodeDecodeError as error:
-        line = data.count(b"\n", 0, error.start) + 1
-        where = f"{path.name} line {line}"
-        raise InputError([Mistake(where, "bytes that are not UTF-8", "a CSV file in UTF-8")]) from None
+        line.decode()
+    except UnicodeDecodeError:
+        return False
+    return True
 
 
 def _records(path: Path, mistakes: list[Mistake]) -> Iterator[_Record]:
     """Yield the header and the rows, without comments and empty lines."""
-    # not splitlines(): it also splits at characters that the csv module keeps inside a cell
-    lines = _text(path).replace("\r\n", "\n").replace("\r", "\n").split("\n")
     # blanked, not dropped: the reader counts lines
-    kept = ["" if line.lstrip().startswith("#") else line for line in lines]
-    reader = csv.reader(io.StringIO("\n".join(kept)), delimiter=_delimiter(kept), strict=True)
+    kept = ("\n" if line.lstrip().startswith("#") else line for line in _text_lines(path))
+    start = list(_up_to_header(kept))
+    reader = csv.reader(chain(start, kept), delimiter=_delimiter(start), strict=True)
     line = 1
     try:
         for cells in reader:
@@ -127,6 +159,13 @@ def _records(path: Path, mistakes: list[Mistake]) -> Iterator[_Record]:
     except csv.Error as error:
         found = f"cells that cannot be told apart ({error})"
         mistakes.append(Mistake(f"{path.name} line {line}", found, "cells with a delimiter between and quotes closed"))
+
+
+def _up_to_header(lines: Iterator[str]) -> Iterator[str]:
+    for line in lines:
+        yield line
+        if line.strip():
+            return
 
 
 def _delimiter(lines: list[str]) -> str:

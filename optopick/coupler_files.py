@@ -1,4 +1,4 @@
-"""Coupler tables that are not text: .xlsx and .parquet, opened through pandas and turned into lines of text cells.
+"""Coupler tables that are not text: .xlsx and .parquet, read piece by piece and turned into lines of text cells.
 
 What the cells hold is judged elsewhere, by the same rules as those of a CSV file. pandas and what it needs for these
 files (an extra of the package each) load only once such a file is read.
@@ -7,16 +7,23 @@ files (an extra of the package each) load only once such a file is read.
 from __future__ import annotations
 
 from collections.abc import Callable, Iterator
+from contextlib import contextmanager
 from dataclasses import dataclass
 from decimal import Decimal
 from numbers import Real
 from pathlib import Path
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 from optopick.errors import InputError, Mistake
 
-Lines = list[tuple[int, tuple[str, ...]]]
-"""Number of a line in its file and its cells; the first line names the columns."""
+if TYPE_CHECKING:
+    import pandas as pd
+
+AT_ONCE = 1024
+"""Rows of a .parquet file that are held at once."""
+
+Lines = Iterator[tuple[int, tuple[str, ...]]]
+"""Number of a line in its file and its cells, as they are read; the first line names the columns."""
 
 
 @dataclass(frozen=True)
@@ -39,7 +46,8 @@ def reads(path: Path) -> bool:
 def read_file(path: Path) -> tuple[Place, Lines]:
     """Return the lines of the table at `path` that are neither empty nor comments.
 
-    Raises InputError where the file cannot be read, the extra it needs is missing, or a formula has no stored value.
+    Raises InputError, at once or while reading, where the file cannot be read, the extra it needs is missing, or a
+    formula has no stored value.
     """
     kind = path.suffix.lower()
     try:
@@ -48,8 +56,24 @@ def read_file(path: Path) -> tuple[Place, Lines]:
     except OSError as error:
         found = "a directory" if path.is_dir() else (error.strerror or "an unreadable file").lower()
         raise InputError([Mistake(str(path), found, f"a table in {kind} that can be read")]) from None
-    try:
+    with _refusing(path):
         place, lines = _READERS[kind](path)
+    return place, _filled(path, lines)
+
+
+def _filled(path: Path, lines: Lines) -> Lines:
+    with _refusing(path):
+        for number, cells in lines:
+            if any(cells) and not cells[0].startswith("#"):
+                yield number, cells
+
+
+@contextmanager
+def _refusing(path: Path) -> Iterator[None]:
+    """Turn what the libraries raise into InputError."""
+    kind = path.suffix.lower()
+    try:
+        yield
     except InputError:
         raise
     except ImportError:
@@ -59,7 +83,6 @@ def read_file(path: Path) -> tuple[Place, Lines]:
     except Exception:  # a damaged file fails anywhere in the libraries, with an error of any type
         found = f"no valid {kind} file"
         raise InputError([Mistake(str(path), found, f"a table saved as {kind}, or as CSV")]) from None
-    return place, [(number, cells) for number, cells in lines if any(cells) and not cells[0].startswith("#")]
 
 
 # ---- .xlsx ----------------------------------------------------------------------------------------------------------
@@ -70,19 +93,21 @@ def _xlsx(path: Path) -> tuple[Place, Lines]:
     import pandas as pd  # noqa: PLC0415 - a CSV table must not wait for it
 
     # the cells of the file rather than pandas's frame of it: a frame has lost percent signs, errors and row numbers
-    with (
-        pd.ExcelFile(path, engine="openpyxl") as values,
-        pd.ExcelFile(path, engine="openpyxl", engine_kwargs={"data_only": False}) as formulas,
-    ):
-        sheet, written = values.book.worksheets[0], formulas.book.worksheets[0]
-        place = Place(f'{path.name} sheet "{sheet.title}"', "row")
-        rows = list(zip(sheet.iter_rows(), written.iter_rows(), strict=True))
-    mistakes = [
-        mistake for number, (row, own) in enumerate(rows, 1) for mistake in _uncomputed(place, number, row, own)
-    ]
+    values = pd.ExcelFile(path, engine="openpyxl")
+    formulas = pd.ExcelFile(path, engine="openpyxl", engine_kwargs={"data_only": False})
+    place = Place(f'{path.name} sheet "{values.book.worksheets[0].title}"', "row")
+    return place, _sheet_lines(place, values, formulas)
+
+
+def _sheet_lines(place: Place, values: pd.ExcelFile, formulas: pd.ExcelFile) -> Lines:
+    mistakes: list[Mistake] = []
+    with values, formulas:
+        sheets = (file.book.worksheets[0].iter_rows() for file in (values, formulas))
+        for number, (row, written) in enumerate(zip(*sheets, strict=True), 1):
+            mistakes.extend(_uncomputed(place, number, row, written))
+            yield number, tuple(_sheet_text(cell) for cell in row)
     if mistakes:
         raise InputError(mistakes)
-    return place, [(number, tuple(_sheet_text(cell) for cell in row)) for number, (row, _) in enumerate(rows, 1)]
 
 
 def _uncomputed(place: Place, number: int, row: tuple[Any, ...], own: tuple[Any, ...]) -> Iterator[Mistake]:
@@ -105,19 +130,30 @@ def _sheet_text(cell: Any) -> str:  # noqa: ANN401 - a cell of a library that is
 
 
 def _parquet(path: Path) -> tuple[Place, Lines]:
-    import pandas as pd  # noqa: PLC0415 - a CSV table must not wait for it
+    """Read a group of rows after the other."""
+    import pyarrow.parquet as pq  # noqa: PLC0415 - an extra, and a CSV table must not wait for it
 
-    frame = pd.read_parquet(path, engine="pyarrow")
-    if any(name is not None for name in frame.index.names):
-        frame = frame.reset_index()
-    # objects, so that whole numbers beside an empty cell stay as they are
-    missing = frame.isna()
-    lines: Lines = [(0, tuple(_text(name) for name in frame.columns))]
-    for number, (row, gaps) in enumerate(
-        zip(frame.astype(object).itertuples(index=False), missing.itertuples(index=False), strict=True), 1
-    ):
-        lines.append((number, tuple("" if gap else _text(cell) for cell, gap in zip(row, gaps, strict=True))))
-    return Place(path.name, "row"), lines
+    file = pq.ParquetFile(path)
+    return Place(path.name, "row"), _frame_lines(file)
+
+
+def _frame_lines(file: Any) -> Lines:  # noqa: ANN401 - a file of a library that is loaded on demand
+    yield 0, tuple(_text(name) for name in _flat(file.schema_arrow.empty_table().to_pandas()).columns)
+    number = 0
+    with file:
+        for batch in file.iter_batches(AT_ONCE):
+            frame = _flat(batch.to_pandas())
+            missing = frame.isna()
+            # objects, so that whole numbers beside an empty cell stay as they are
+            cells = frame.astype(object).itertuples(index=False)
+            for row, gaps in zip(cells, missing.itertuples(index=False), strict=True):
+                number += 1
+                yield number, tuple("" if gap else _text(cell) for cell, gap in zip(row, gaps, strict=True))
+
+
+def _flat(frame: pd.DataFrame) -> pd.DataFrame:
+    """Return a frame with the names of its rows, where they have one, as columns."""
+    return frame.reset_index() if any(name is not None for name in frame.index.names) else frame
 
 
 # ---- cells ----------------------------------------------------------------------------------------------------------

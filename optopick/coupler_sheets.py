@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Iterator, Sequence
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 from optopick import gaps
@@ -15,6 +15,12 @@ SWITCHING = (
     *("sw_t_r", "sw_t_f", "sw_v_cc", "sw_i_c", "sw_r_l"),
     *("sat_t_s", "sat_t_off", "sat_v_cc", "sat_i_f", "sat_r_l"),
 )
+
+Part = tuple[str, str, float]
+"""A part with all its bins: name, output stage, test current of CTR [A]."""
+
+Shared = tuple[float, frozenset[str]]
+"""CTR of a part's typical unit [1], and the columns that are alike in all of its rows."""
 
 
 @dataclass(frozen=True)
@@ -38,17 +44,31 @@ class Bin:
         return self.ctr / self.ctr_part if self.alike.issuperset(columns) else 1.0
 
 
+@dataclass(frozen=True)
+class Figures:
+    """What one row says about its part: ends of CTR [1], and the columns of gain and of switching in SI."""
+
+    low: float
+    high: float
+    columns: tuple[float | None, ...]
+
+
 def bins_of(rows: Sequence[Row]) -> list[Bin | None]:
     """Return the bin of every row; None where the row states no CTR."""
-    parts: dict[tuple[str, str, float], list[Row]] = {}
+    parts: dict[Part, list[Figures]] = {}
     for row in rows:
-        if (key := _part_of(row)) is not None:
-            parts.setdefault(key, []).append(row)
-    shared = {key: _shared(together) for key, together in parts.items()}
-    return [None if (key := _part_of(row)) is None else Bin(_ctr(row), *shared[key]) for row in rows]
+        if (key := part_of(row)) is not None:
+            parts.setdefault(key, []).append(figures_of(row))
+    shared = {key: shared_of(together) for key, together in parts.items()}
+    return [None if (key := part_of(row)) is None else bin_of(row, shared[key]) for row in rows]
 
 
-def _part_of(row: Row) -> tuple[str, str, float] | None:
+def bin_of(row: Row, shared: Shared) -> Bin:
+    """Return the bin of a row that states CTR, from what its part's rows have in common."""
+    return Bin(_ctr(row), *shared)
+
+
+def part_of(row: Row) -> Part | None:
     """Return what the bins of one part have in common: its name, its output stage, the test current of CTR."""
     ctr_at = row.number("ctr_at")
     if ctr_at is None or row.number("ctr_min") is None or not row.text("kind"):
@@ -56,15 +76,16 @@ def _part_of(row: Row) -> tuple[str, str, float] | None:
     return row.text("part").casefold(), row.text("kind"), ctr_at
 
 
-def _shared(together: Sequence[Row]) -> tuple[float, frozenset[str]]:
+def figures_of(row: Row) -> Figures:
+    """Return what a row that states CTR says about its part."""
+    return Figures(*_ends(row), tuple(row.number(name) for name in (*GAIN, *SWITCHING)))
+
+
+def shared_of(together: Sequence[Figures]) -> Shared:
     """Return the CTR of the typical unit of the part [1], and the columns that read the same in all of its rows."""
-    ends = [_ends(row) for row in together]
-    ctr = math.sqrt(min(low for low, _ in ends) * max(high for _, high in ends))
-    return ctr, frozenset(_alike(together))
-
-
-def _alike(together: Sequence[Row]) -> Iterator[str]:
-    return (name for name in (*GAIN, *SWITCHING) if len({row.number(name) for row in together}) == 1)
+    ctr = math.sqrt(min(one.low for one in together) * max(one.high for one in together))
+    alike = (name for k, name in enumerate((*GAIN, *SWITCHING)) if len({one.columns[k] for one in together}) == 1)
+    return ctr, frozenset(alike)
 
 
 def _ctr(row: Row) -> float:

@@ -7,8 +7,9 @@ from collections.abc import Mapping, Sequence
 from pathlib import Path
 from typing import cast
 
-from optopick.board import Board, BoardGoal, BoardGoalName, BoardLimits, BoardLink
-from optopick.board_keys import LINK, LINKS, SECTIONS, TOP
+from optopick.board import Board, BoardGoal, BoardGoalName, BoardLimits, BoardLink, Grounds
+from optopick.board_changes import Changes, changed_brief
+from optopick.board_keys import LINK, LINKS, SECTIONS, SET, TOP
 from optopick.brief import Brief
 from optopick.errors import InputError, Mistake
 from optopick.key_values import nearest, one_of, read_value, shown
@@ -38,17 +39,15 @@ def read_board(path: Path | str) -> Board:
     sections = {name: _section(document, name, keys, path.parent, mistakes) for name, keys in SECTIONS.items()}
     links = _links(document.get(LINK), path.parent, mistakes)
     _check_goals(sections["goal"], mistakes)
-    briefs = _briefs(links, mistakes)
+    briefs = _briefs(links, path.parent, mistakes)
+    _check_edges(sections["goal"], briefs, mistakes)
     mistakes.raise_any()
     # from here on every required value is there
     return Board(
         title=str(top.get("title", path.stem)),
         limits=BoardLimits(**sections["limits"]),  # type: ignore[arg-type]
         goal=_goal(sections["goal"]),
-        links=tuple(
-            BoardLink(cast(str, one["name"]), briefs[cast(Path, one["brief"])], cast(int, one["count"]))
-            for one in links
-        ),
+        links=tuple(_link(one, cast(Brief, brief)) for one, brief in zip(links, briefs, strict=True)),
         path=path,
     )
 
@@ -91,7 +90,7 @@ def _table(table: Mapping[str, object], path: KeyPath, keys: Sequence[Key], base
     for key in keys:
         if key.name in table:
             try:
-                read[key.name] = read_value(key, table[key.name], base)
+                read[key.name] = _read(key, table[key.name], base)
             except QuantityError as error:
                 expected = error.expected.replace("the brief's folder", "the board file's folder")
                 mistakes.add((*path, key.name), error.found, expected)
@@ -101,6 +100,13 @@ def _table(table: Mapping[str, object], path: KeyPath, keys: Sequence[Key], base
             wanted = one_of(key.choices) if key.choices else f"such as {shown(key.example)}"
             mistakes.add((*path, key.name), "nothing", f"{key.name}, {wanted}")
     return read
+
+
+def _read(key: Key, value: object, base: Path) -> object:
+    if key.name == "price" and isinstance(value, str):
+        # prices have no unit; a share of one is none
+        raise QuantityError(shown(value), f"a number such as {shown(key.example)}")
+    return read_value(key, value, base)
 
 
 def _links(found: object, base: Path, mistakes: Mistakes) -> list[Read]:
@@ -113,8 +119,10 @@ def _links(found: object, base: Path, mistakes: Mistakes) -> list[Read]:
     read, seen = [], dict[object, int]()
     for number, table in enumerate(found, 1):
         path = (LINK, str(number))
-        _report_unknown(table, path, [key.name for key in LINKS], mistakes)
+        _report_unknown(table, path, [*(key.name for key in LINKS), SET], mistakes)
         one = _table(table, path, LINKS, base, mistakes)
+        one["changes"] = _changes(table, path, one, mistakes)
+        _check_grounds(one, path, mistakes)
         name = one.get("name")
         if name is not None and name in seen:
             mistakes.add((*path, "name"), f"{shown(name)}, the name of link {seen[name]} too", "each name once")
@@ -128,19 +136,61 @@ def _check_goals(goal: Read, mistakes: Mistakes) -> None:
         mistakes.add(("goal", "then"), shown(goal["then"]), "another goal than minimize")
 
 
-def _briefs(links: Sequence[Read], mistakes: Mistakes) -> dict[Path, Brief]:
-    """Each brief once, by the path that the links give."""
-    briefs: dict[Path, Brief] = {}
-    failed: set[Path] = set()
+def _check_grounds(one: Read, path: KeyPath, mistakes: Mistakes) -> None:
+    grounds = cast("tuple[str, ...]", one.get("grounds", ("", "")))
+    if len(grounds) != 2:
+        expected = "two names, the ground on the LED's side and the one on the output's"
+        mistakes.add((*path, "grounds"), shown(grounds), expected)
+
+
+def _changes(table: Mapping[str, object], path: KeyPath, one: Read, mistakes: Mistakes) -> Changes:
+    given = table.get(SET, {})
+    if not isinstance(given, Mapping):
+        mistakes.add((*path, SET), shown(given), "keys of the brief, such as set.signal.lit = 0.3")
+        given = {}
+    return Changes(path, given, cast("tuple[str, ...]", one.get("unset", ())))
+
+
+def _check_edges(goal: Read, briefs: Sequence[Brief | None], mistakes: Mistakes) -> None:
+    """An edge is measured against its link's limit: one link at least has to have one."""
+    unlimited = all(brief is not None and brief.limits.edge_time is None for brief in briefs)
+    for name in ("minimize", "then"):
+        if briefs and unlimited and goal.get(name) == BoardGoalName.EDGE:
+            mistakes.add(("goal", name), shown("edge"), "another goal, or a link whose brief has limits.edge_time")
+
+
+def _briefs(links: Sequence[Read], base: Path, mistakes: Mistakes) -> list[Brief | None]:
+    """The brief of each link with the link's changes; None where it has mistakes, each of which is noted once."""
+    read: dict[Path, Brief | None] = {}
+    found: list[Brief | None] = []
     for one in links:
-        path = one.get("brief")
-        if isinstance(path, Path) and path not in briefs and path not in failed:
-            try:
-                briefs[path] = read_brief(path)
-            except InputError as error:
-                failed.add(path)
-                mistakes.take(error.mistakes)
-    return briefs
+        path, changes = one.get("brief"), cast(Changes, one["changes"])
+        if not isinstance(path, Path):
+            found.append(None)
+            continue
+        if path not in read:
+            read[path] = _brief(path, mistakes)
+        brief = read[path]
+        found.append(changed_brief(path, changes, base, mistakes) if brief and changes.any else brief)
+    return found
+
+
+def _brief(path: Path, mistakes: Mistakes) -> Brief | None:
+    try:
+        return read_brief(path)
+    except InputError as error:
+        mistakes.take(error.mistakes)
+        return None
+
+
+def _link(read: Read, brief: Brief) -> BoardLink:
+    return BoardLink(
+        name=cast(str, read["name"]),
+        brief=brief,
+        count=cast(int, read["count"]),
+        grounds=cast("Grounds | None", read.get("grounds")),
+        changes=cast(Changes, read["changes"]).told,
+    )
 
 
 def _goal(read: Read) -> BoardGoal:

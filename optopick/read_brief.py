@@ -48,6 +48,11 @@ def brief_from_text(text: str, path: Path) -> Brief:
     return _brief(document, path.parent, path, Mistakes(str(path), key_lines(text)))
 
 
+def brief_from_document(document: Mapping[str, object], path: Path, mistakes: Mistakes) -> Brief:
+    """Read a brief that is parsed already and stands at `path`. Raises InputError where `mistakes` has any then."""
+    return _brief(document, path.parent, path, mistakes)
+
+
 def brief_from_mapping(mapping: Mapping[str, object], base: Path) -> Brief:
     """Read a brief given as nested mappings with the keys of the file; relative paths start at the folder `base`.
 

@@ -21,7 +21,8 @@ from optopick.recheck import review
 from optopick.result import Design, Status
 from optopick.uses import board as uses
 from optopick.uses import engine
-from optopick.uses.board import resistances, solve_board
+from optopick.uses.board import solve_board
+from optopick.uses.board_totals import resistances
 
 PLANT = ROOT / "examples" / "plant"
 
@@ -98,7 +99,7 @@ class TestTime:
 def test_bounds_on_counts_are_whole(shown, bound):
     search = board_search.BoardSearch([], board_search.Clock(), lambda *_: None)
     solution = board_search.Solution(Answer.FOUND, None, 7.0, shown, proved=False)
-    assert search._bound(solution, BoardGoalName.REELS) == bound
+    assert search._bound(solution, BoardGoalName.REELS, 1.0) == bound
 
 
 class TestProgram:

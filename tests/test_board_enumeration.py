@@ -13,13 +13,15 @@ from random_links import brief, coupler, logic, mixed_brief, position
 from optopick.board import Board, BoardGoal, BoardGoalName, BoardLimits, BoardLink
 from optopick.brief import Brief, Position
 from optopick.coupler import Coupler
-from optopick.model import board as model
+from optopick.model import board_seats as model
 from optopick.model.kinds import model_of
 from optopick.recheck import review
 from optopick.result import Status
-from optopick.uses.board import resistances, solve_board
+from optopick.uses.board import solve_board
+from optopick.uses.board_totals import resistances
 from optopick.uses.engine import ask_of
 
+SUMS = (BoardGoalName.POWER, BoardGoalName.REELS, BoardGoalName.COUPLERS)
 GIVES = (0.0, 0.05, 0.3)
 ROUNDING = 1e-6
 
@@ -81,8 +83,8 @@ def column(goal: BoardGoalName) -> int:
     return {"reels": 0, "couplers": 1, "power": 2}[goal.value]
 
 
-def expected(found: np.ndarray, board: Board) -> tuple[float, float] | None:
-    """The least first goal, and the least second within what is given; None where no board holds the limits."""
+def expected(found: np.ndarray, board: Board) -> tuple[float, float, float] | None:
+    """The least first goal, the least second within what is given, and the least power then; None without a board."""
     limits = board.limits
     held = np.ones(len(found), dtype=bool)
     for limit, k in ((limits.reels, 0), (limits.couplers, 1), (limits.power, 2)):
@@ -91,7 +93,8 @@ def expected(found: np.ndarray, board: Board) -> tuple[float, float] | None:
         return None
     first, second = found[held, column(board.goal.minimize)], found[held, column(board.goal.then)]
     near = first <= first.min() * (1 + board.goal.give) * (1 + ROUNDING)
-    return float(first.min()), float(second[near].min())
+    then = float(second[near].min())
+    return float(first.min()), then, float(found[held, 2][near & (second <= then * (1 + ROUNDING))].min())
 
 
 def drawn_board(seed: int) -> tuple[Board, list[Coupler], np.ndarray] | None:
@@ -105,7 +108,7 @@ def drawn_board(seed: int) -> tuple[Board, list[Coupler], np.ndarray] | None:
     designs = [Designs(link, made) for link in links]
     if not 0 < np.prod([len(one.of) for one in designs]) <= 60_000:
         return None
-    first, second = (list(BoardGoalName)[k] for k in rng.choice(3, 2, replace=False))
+    first, second = (SUMS[k] for k in rng.choice(3, 2, replace=False))
     goal = BoardGoal(first, second, float(rng.choice(GIVES)))
     return Board("random", BoardLimits(), goal, links), made, totals(links, designs)
 
@@ -152,6 +155,7 @@ def test_as_enumeration_says(board, made, found):
     assert second.value == pytest.approx(wanted[1], rel=5e-6)
     assert first.value <= wanted[0] * (1 + board.goal.give) * (1 + 5e-6)
     assert first.bound == pytest.approx(wanted[0], rel=1e-5)
+    assert result.power == pytest.approx(wanted[2], rel=1e-5)
     assert_holds(board, result, made)
 
 
@@ -211,7 +215,7 @@ def test_with_cuts(monkeypatch, case, ahead):
         result = solve_board(limited_, couplers=made)
         wanted = expected(found, limited_)
         assert result.status is Status.OPTIMAL
-        assert [goal.value for goal in result.goals] == pytest.approx(wanted, rel=5e-6)
+        assert [goal.value for goal in result.goals] == pytest.approx(wanted[:2], rel=5e-6)
         assert_holds(limited_, result, made)
 
 

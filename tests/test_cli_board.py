@@ -72,7 +72,8 @@ def test_json(board):
     total = sum(link["count"] * link["power"]["worst"] for link in found["links"])
     assert found["power"] == pytest.approx(total) == pytest.approx(found["goals"][0]["value"])
     assert len(found["reels"]) <= 4
-    assert found["limits"] == {"reels": 4, "couplers": 2, "power": None}
+    assert found["limits"] == {"reels": 4, "couplers": 2, "packages": None, "power": None, "price": None}
+    assert found["packages_placed"] == sum(one["count"] for one in found["packages"]) == 4
 
 
 def test_fewer_reels_cost_power(board):
@@ -120,6 +121,89 @@ def test_out_of_time(board):
     ran = run("board", board(), "--time-limit", "0")
     assert ran.code == 4
     assert "Out of time" in ran.out
+
+
+@pytest.fixture
+def shelf(tmp_path):
+    """Writes a board whose links share grounds and take resistors with prices, of couplers with two channels."""
+
+    def write(limits: str = "", goal: str = "cost", prices: str = "0.02") -> Path:
+        table = TINY.with_name("tiny.csv").read_text(encoding="utf-8").splitlines()
+        columns = table[next(k for k, line in enumerate(table) if line.startswith("part,"))].split(",")
+        rows = []
+        for line in table:
+            cells = line.split(",")
+            if len(cells) == len(columns) and cells != columns:
+                cells[columns.index("channels")], cells[columns.index("price")] = "2", "0.4"
+            rows.append(",".join(cells))
+        (tmp_path / "tiny.csv").write_text("\n".join(rows) + "\n", encoding="utf-8")
+        ohms = ("470", "680", "1k", "2k2", "4k7", "10k", "220k", "470k")
+        (tmp_path / "shelf.csv").write_text(
+            "value,price\n" + "".join(f"{value},{prices}\n" for value in ohms), encoding="utf-8"
+        )
+        text = TINY.read_text(encoding="utf-8")
+        start, end = text.index("r_led ="), text.index("[couplers]")
+        positions = 'r_led = { values = "shelf.csv", power = "0.25 W" }\nr_load = { values = "shelf.csv" }\n'
+        positions += 'r_be = { values = "shelf.csv", absent = true }\n\n'
+        (tmp_path / "one.toml").write_text(text[:start] + positions + text[end:], encoding="utf-8")
+        board = TWO.format(limits=limits, goal=goal, first="one.toml", second="one.toml")
+        path = tmp_path / "board.toml"
+        path.write_text(
+            board.replace('brief = "one.toml"', 'brief = "one.toml"\ngrounds = ["field", "logic"]'), "utf-8"
+        )
+        return path
+
+    return write
+
+
+def test_cost_and_packages(shelf, tmp_path):
+    path = shelf("price = 5\npackages = 2")
+    ran = run("board", path, "--csv", tmp_path / "parts.csv")
+    assert ran.code == 0, ran
+    for words in ("Least cost: 1.04", "Packages", "2 of 2", "from field to logic", "Price", "1.04 of 5"):
+        assert words in ran.out
+    first = next(csv.DictReader((tmp_path / "parts.csv").read_text(encoding="utf-8").splitlines()))
+    assert (first["quantity"], first["used"]) == ("2", "first; second")
+    found = json_of(run("board", path, "--json"))
+    assert found["price"] == pytest.approx(2 * 0.4 + 4 * 3 * 0.02)
+    (packages,) = found["packages"]
+    assert packages["links"] == {"first": 3, "second": 1}
+    assert (packages["grounds"], packages["count"], packages["channels"]) == (["field", "logic"], 2, 2)
+
+
+def test_too_dear_a_board(shelf):
+    assert run("board", shelf("price = 0.9")).code == 3
+
+
+def test_no_price_at_all(shelf):
+    ran = run("board", shelf(prices=""))
+    assert ran.code == 2
+    assert "link first: found no price of any resistor in stock.r_led (shelf.csv, 8 values)" in ran.err
+    assert ran.out == ""
+
+
+def test_shortest_edges(board):
+    path = board(goal="edge")
+    ran = run("board", path)
+    assert ran.code == 0
+    assert "of its limit" in ran.out
+    found = json_of(run("board", path, "--json"))
+    timing = found["links"][0]["timing"]
+    assert found["goals"][0]["value"] == pytest.approx(max(timing["edge_on"], timing["edge_off"]) / 30e-6)
+    assert found["edge"] == pytest.approx(found["goals"][0]["value"])
+
+
+def test_what_links_change_is_told(board):
+    path = board()
+    text = path.read_text(encoding="utf-8").replace(
+        "count = 3", 'count = 3\nset.signal.lit = 0.1\nunset = ["limits.delay"]'
+    )
+    path.write_text(text, encoding="utf-8")
+    assert "first: signal.lit = 0.1, no limits.delay" in run("board", path).out
+    found = json_of(run("board", path, "--json"))
+    assert [link["changes"] for link in found["links"]] == [{"signal.lit": "0.1", "limits.delay": None}, {}]
+    powers = [link["power"]["worst"] for link in found["links"]]
+    assert powers[0] < powers[1] / 2
 
 
 def test_least_reels_then_power(board):

@@ -1,137 +1,69 @@
-"""Many links in one mixed-integer model, tied together by the reels and the coupler parts that they share.
+"""Many links in one mixed-integer model, tied together by the reels, the coupler parts and the packages they share.
 
 A seat is one coupler on one link, with the values still in question for it. For each value of each position of a seat
 there is a column; a position's columns add up to the seat's own, and the seats of a link to one. A seat's rows
 a[i] + b[j] + c[m] >= 0 go in as they are: of a seat that is not taken every column is 0, and 0 >= 0 holds.
+
+For packages of several channels that links share there is a whole-number column for each part and pair of grounds;
+where the values chosen decide whether a link may share, one more for its seat.
 """
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Sequence
-from dataclasses import dataclass, replace
+from collections.abc import Hashable, Sequence
+from dataclasses import dataclass, fields, replace
+from typing import TypeVar
 
 import numpy as np
 
-from optopick.board import BoardGoalName, reel_of
-from optopick.coupler import Coupler
-from optopick.model.box import Box, Choice, narrowed, whole_box
-from optopick.model.kinds import LinkModel
+from optopick.board import BoardGoalName, Grounds
+from optopick.model.board_packages import Counts, Sharing, on_grounds, sharing_of
+from optopick.model.board_seats import Seat, Taken, mentioned
 from optopick.model.ranges import undominated
-from optopick.model.rows import EASE, Ask, Rows, all_but, stack
+from optopick.model.rows import EASE, Rows
 from optopick.model.solver import Program
 from optopick.physics.types import Array
+
+Name = TypeVar("Name", bound=Hashable)
 
 ROUNDING = 1e-9
 """Share by which totals may miss their limit: rounding."""
 
 
-SMALL = 6000
-"""A seat with no more combinations than this is looked at in each of them before the solver is."""
-
-CUTS_AHEAD = 6
-"""Rounds of cuts that such a seat gets in advance."""
-
-
-@dataclass(frozen=True)
-class Seat:
-    """A coupler on a link: number of the link, the part, what is asked of it, and the values in question."""
-
-    link: int
-    coupler: Coupler
-    ask: Ask
-    box: Box
-
-
 @dataclass(frozen=True)
 class Caps:
-    """Upper limits over the board, infinite where none is stated; power [W]."""
+    """Upper limits over the board, infinite where none is stated; power [W]; edge: of each link's own limit [1]."""
 
     reels: float = np.inf
     couplers: float = np.inf
+    packages: float = np.inf
     power: float = np.inf
+    cost: float = np.inf
+    edge: float = np.inf
 
+    def of(self, goal: BoardGoalName) -> float:
+        """The limit on what a goal makes least."""
+        return float(getattr(self, goal.value))
 
-@dataclass(frozen=True)
-class Taken:
-    """The seat taken for a link, and its combination in the seat's box."""
+    def limited(self, goal: BoardGoalName, limit: float) -> Caps:
+        """The same with what a goal makes least held to `limit` as well."""
+        return replace(self, **{goal.value: min(limit, self.of(goal))})
 
-    seat: Seat
-    choice: Choice
-
-    @property
-    def power(self) -> float:
-        """Worst average power [W]."""
-        p, q = self.seat.box.model.power
-        return float(p[self.choice[0]] + q[self.choice[1]])
-
-    @property
-    def reels(self) -> set[float]:
-        """The reels it takes from."""
-        r_led, _, r_shunt, r_load, r_be = self.seat.box.model.values(*self.choice)
-        return {reel_of(ohms) for ohms in (r_led, r_shunt, r_load, r_be) if np.isfinite(ohms)}
+    def without(self, names: frozenset[str]) -> Caps:
+        """The same without some of the limits."""
+        return replace(self, **dict.fromkeys(names, np.inf))
 
     @property
-    def sound(self) -> bool:
-        """Whether the rows hold, and the exact times what is asked: the rows only bound them."""
-        box, index = self.seat.box, tuple(np.array([k]) for k in self.choice)
-        return bool(box.model.scores(*index).within(self.seat.ask)[0]) and bool(box.rows.holds(*index)[0])
+    def stated(self) -> tuple[BoardGoalName, ...]:
+        """The goals that are held to a limit."""
+        return tuple(BoardGoalName(field.name) for field in fields(self) if np.isfinite(getattr(self, field.name)))
 
 
-def seat_of(link: int, coupler: Coupler, model: LinkModel, ask: Ask) -> Seat | None:
-    """A coupler on a link; None where it has no design within `ask`."""
-    box = whole_box(model, ask, stack([], model.sizes))
-    box = narrowed(box, ask) if box else None
-    return None if box is None else Seat(link, coupler, ask, box)
+LINEAR = tuple(goal for goal in BoardGoalName if goal is not BoardGoalName.EDGE)
+"""Goals that are sums over columns; an edge is a limit on each seat instead."""
 
-
-def narrower(seat: Seat, ask: Ask) -> Seat | None:
-    """The same seat, asked more; its cuts are kept."""
-    box = narrowed(seat.box, ask)
-    return None if box is None else Seat(seat.link, seat.coupler, ask, box)
-
-
-def with_cuts(seat: Seat, choice: Choice) -> Seat:
-    """The seat with rows that forbid a combination which the exact times refuse, and as many like it as can be."""
-    box = seat.box
-    cuts = box.model.cuts(seat.ask, *choice)
-    index = tuple(np.array([k]) for k in choice)
-    if not len(cuts) or bool(cuts.holds(*index)[0]):
-        cuts = stack([cuts, all_but(choice, box.model.sizes)], box.model.sizes)
-    return replace(seat, box=box.with_cuts(_that_may_fail(cuts)))
-
-
-def sharpened(seat: Seat) -> Seat | None:
-    """A small seat without values that no sound combination has, cuts made in advance; None where none is sound."""
-    box = seat.box
-    if box.combinations > SMALL:
-        return seat
-    i, j, m = _held(box)
-    sound = box.model.scores(i, j, m).within(seat.ask)
-    if not sound.any():
-        return None
-    seat = replace(seat, box=box.take(*(np.unique(axis[sound]) for axis in (i, j, m))))
-    for _ in range(CUTS_AHEAD):
-        box = seat.box
-        i, j, m = _held(box)
-        refused = ~box.model.scores(i, j, m).within(seat.ask)
-        if not refused.any():
-            break
-        p, q = box.model.power
-        k = int(np.where(refused, p[i] + q[j], np.inf).argmin())
-        seat = with_cuts(seat, (int(i[k]), int(j[k]), int(m[k])))
-    return seat
-
-
-def _held(box: Box) -> tuple[np.ndarray, np.ndarray, np.ndarray]:
-    """The combinations of a box that hold its rows."""
-    i, j, m = (axis.ravel() for axis in np.meshgrid(*(np.arange(n) for n in box.model.sizes), indexing="ij"))
-    keep = box.rows.holds(i, j, m)
-    return i[keep], j[keep], m[keep]
-
-
-def _that_may_fail(rows: Rows) -> Rows:
-    """Rows that some combination fails: of all values, since the seat keeps those that a row alone rules out."""
-    return rows.pick(sum(part.min(axis=1) for part in (rows.a, rows.b, rows.c)) < -EASE)
+WHOLE = (BoardGoalName.REELS, BoardGoalName.COUPLERS, BoardGoalName.PACKAGES)
+"""Goals that count things."""
 
 
 def clipped(rows: Rows) -> Rows:
@@ -148,64 +80,29 @@ def clipped(rows: Rows) -> Rows:
     return Rows(rows.names, *(part / scale for part in parts))
 
 
-def mentioned(seat: Seat) -> Iterator[tuple[int, int, Array]]:
-    """Position of the design (0 to 3), position of the model (0 to 2), and the reel of each of its values."""
-    model = seat.box.model
-    led, load, base = model.sizes
-    branches = [model.values(i, 0, 0) for i in range(led)]
-    yield 0, 0, np.array([reel_of(values[0]) for values in branches])
-    yield 1, 0, np.array([reel_of(values[2]) for values in branches])
-    yield 2, 1, np.array([reel_of(model.values(0, j, 0)[3]) for j in range(load)])
-    yield 3, 2, np.array([reel_of(model.values(0, 0, m)[4]) for m in range(base)])
-
-
-def repaired(seats: Sequence[Seat], taken: Sequence[Taken]) -> list[Taken] | None:
-    """A board with a sound design for every link from no other reels and couplers; None where a link has none."""
-    reels: set[float] = set().union(*(one.reels for one in taken))
-    parts = {one.seat.coupler.part for one in taken}
-    found = []
-    for link, one in enumerate(taken):
-        others = [seat for seat in seats if seat.link == link and seat.coupler.part in parts]
-        sound = [one] if one.sound else [each for seat in others if (each := _best_from(seat, reels)) is not None]
-        if not sound:
-            return None
-        found.append(min(sound, key=lambda each: each.power))
-    return found
-
-
-def _best_from(seat: Seat, reels: set[float]) -> Taken | None:
-    """The sound design of a seat that takes least power, from these reels alone."""
-    box = seat.box
-    keep = [np.ones(n, dtype=bool) for n in box.model.sizes]
-    for _, axis, named in mentioned(seat):
-        keep[axis] &= np.array([not np.isfinite(ohms) or float(ohms) in reels for ohms in named])
-    i, j, m = (axis.ravel() for axis in np.meshgrid(*(np.flatnonzero(part) for part in keep), indexing="ij"))
-    if not len(i):
-        return None
-    sound = box.model.scores(i, j, m).within(seat.ask) & box.rows.holds(i, j, m)
-    p, q = box.model.power
-    k = int(np.where(sound, p[i] + q[j], np.inf).argmin())
-    return Taken(seat, (int(i[k]), int(j[k]), int(m[k]))) if sound[k] else None
-
-
 class BoardProgram:
-    """The program over all seats; `counts` of each link, `scale` [W] by which powers are divided."""
+    """The program over all seats; `counts` of each link, `scale` by which costs are divided; goal None: any board."""
 
     def __init__(
-        self, seats: Sequence[Seat], counts: Sequence[int], caps: Caps, goal: BoardGoalName, scale: float
+        self, seats: Sequence[Seat], counts: Sequence[Counts], caps: Caps, goal: BoardGoalName | None, scale: float
     ) -> None:
         self.seats, self.counts, self.caps, self.goal, self.scale = seats, counts, caps, goal, scale
         self._rows: list[tuple[np.ndarray, Array, float, float]] = []
         ends = np.cumsum([0, *(sum(seat.box.model.sizes) for seat in seats)])
-        self.starts, seat_columns = ends[:-1], int(ends[-1])
+        self.starts, self.seat_columns = ends[:-1], int(ends[-1])
+        self.size = self.seat_columns + len(seats)
         self.uses = [list(mentioned(seat)) for seat in seats]
         found = {float(ohms) for uses in self.uses for _, _, reels in uses for ohms in reels if np.isfinite(ohms)}
-        self.reels = {ohms: k for k, ohms in enumerate(sorted(found), seat_columns + len(seats))}
-        parts = sorted({seat.coupler.part for seat in seats})
-        self.parts = {part: k for k, part in enumerate(parts, seat_columns + len(seats) + len(self.reels))}
-        self.seat_columns = seat_columns
-        self.size = seat_columns + len(seats) + len(self.reels) + len(self.parts)
+        self.reels = self._new(sorted(found))
+        self.parts = self._new(sorted({seat.coupler.part for seat in seats}))
+        self._find_packings()
+        self.upper = np.ones(self.size)
         self._add_all()
+
+    def _new(self, names: Sequence[Name]) -> dict[Name, int]:
+        """A new column for each name."""
+        first, self.size = self.size, self.size + len(names)
+        return {name: first + k for k, name in enumerate(names)}
 
     def columns(self, k: int) -> list[np.ndarray]:
         """The columns of each position of seat k."""
@@ -233,14 +130,15 @@ class BoardProgram:
         for ohms, mentions in self._mentions().items():
             for mine in mentions:
                 self._add([*mine, self.reels[ohms]], np.array([-1.0] * len(mine) + [1.0]), 0.0, np.inf)
-        shared = ((self.reels, self.caps.reels), (self.parts, self.caps.couplers))
-        for columns_of, cap in shared:
-            if np.isfinite(cap):
-                self._add(list(columns_of.values()), np.ones(len(columns_of)), 0.0, cap)
-        if np.isfinite(self.caps.power):
-            powers = self.powers() / self.caps.power
-            used = np.flatnonzero(powers)
-            self._add(used, powers[used], 0.0, 1.0 + ROUNDING)
+        self._add_packings()
+        for goal in self.caps.stated:
+            if goal in LINEAR:
+                self._add_cap(self.weights(goal), self.caps.of(goal), whole=goal in WHOLE)
+
+    def _add_cap(self, weights: Array, cap: float, whole: bool) -> None:
+        used = np.flatnonzero(weights)
+        scale = 1.0 if whole else (cap or float(np.abs(weights).max(initial=1.0)))
+        self._add(used, weights[used] / scale, 0.0, cap / scale + (0.0 if whole else ROUNDING))
 
     def _mentions(self) -> dict[float, list[list[int]]]:
         """For each reel, the columns that take from it: for each link and position those of all its seats."""
@@ -256,30 +154,86 @@ class BoardProgram:
             by_reel.setdefault(ohms, []).append(columns_)
         return by_reel
 
-    def powers(self) -> Array:
-        """The power that each column adds over the board [W]."""
+    # ---- packages -------------------------------------------------------------------------------------------------
+
+    def _find_packings(self) -> None:
+        """The columns for packages, where they count: which seats share, and how many there are of each part."""
+        self.shares: dict[int, int] = {}
+        self.packages: dict[tuple[str, Grounds], int] = {}
+        if not {BoardGoalName.PACKAGES, BoardGoalName.COST} & {self.goal, *self.caps.stated}:
+            return
+        kinds = [sharing_of(seat, self.counts[seat.link]) for seat in self.seats]
+        self.by_values = self._new([k for k, kind in enumerate(kinds) if kind is Sharing.BY_VALUES])
+        self.shares = {k: self.own(k) for k, kind in enumerate(kinds) if kind is Sharing.ALWAYS} | self.by_values
+        self.packages = self._new(sorted({place for k in self.shares for place, _ in self._packed(k)}))
+
+    def _packed(self, k: int) -> list[tuple[tuple[str, Grounds], int]]:
+        """Where the links of seat k are packed if they share, and how many of them there."""
+        seat = self.seats[k]
+        of_link = self.counts[seat.link].items()
+        return [((seat.coupler.part, grounds), count) for grounds, count in of_link if grounds is not None]
+
+    def _add_packings(self) -> None:
+        filled: dict[tuple[str, Grounds], list[tuple[int, float]]] = {}
+        for k, column in self.shares.items():
+            for place, count in self._packed(k):
+                filled.setdefault(place, []).append((column, count / self.seats[k].coupler.channels))
+        for place, column in self.packages.items():
+            columns, shares = zip(*filled[place], strict=True)
+            self.upper[column] = float(np.ceil(sum(shares) - ROUNDING))
+            self._add([column, *columns], np.array([1.0, *(-share for share in shares)]), 0.0, np.inf)
+        for k, column in self.shares.items():
+            if column != self.own(k):
+                self._add_heat(k, column)
+
+    def _add_heat(self, k: int, shares: int) -> None:
+        """Seat k shares only where it is taken, and its heat is an equal share of the package's at most."""
+        self._add([self.own(k), shares], np.array([1.0, -1.0]), 0.0, np.inf)
+        (led, load, share), channels = self.seats[k].heat, self.seats[k].coupler.channels
+        columns = [*np.concatenate(self.columns(k)[:2]), self.own(k), shares]
+        room = share * channels
+        for entries in np.concatenate([-led / room, -load / room, 0 * room + 1, share / room - 1], axis=1):
+            self._add(columns, entries, -ROUNDING, np.inf)
+
+    def _in_packages(self, priced: bool) -> Array:
+        """How many packages each column adds to the board, or what they cost."""
         found = np.zeros(self.size)
+        price = {seat.coupler.part: (seat.coupler.price or 0.0) if priced else 1.0 for seat in self.seats}
         for k, seat in enumerate(self.seats):
-            p, q = seat.box.model.power
-            led, load, _ = self.columns(k)
-            found[led], found[load] = self.counts[seat.link] * p, self.counts[seat.link] * q
+            each, of_link = price[seat.coupler.part], self.counts[seat.link]
+            found[self.own(k)] += each * sum(of_link.values())
+            if k in self.shares:
+                found[self.shares[k]] -= each * on_grounds(of_link)
+        for (part, _), column in self.packages.items():
+            found[column] = price[part]
         return found
+
+    # ---- what is summed up ----------------------------------------------------------------------------------------
+
+    def weights(self, goal: BoardGoalName) -> Array:
+        """What each column adds to a goal over the board."""
+        found = np.zeros(self.size)
+        if goal in (BoardGoalName.REELS, BoardGoalName.COUPLERS):
+            found[list((self.reels if goal is BoardGoalName.REELS else self.parts).values())] = 1.0
+            return found
+        if goal is BoardGoalName.PACKAGES:
+            return self._in_packages(priced=False)
+        for k, seat in enumerate(self.seats):
+            for columns, part in zip(self.columns(k), seat.adds(goal), strict=True):
+                found[columns] = sum(self.counts[seat.link].values()) * part
+        return found + self._in_packages(priced=True) if goal is BoardGoalName.COST else found
 
     def program(self) -> Program:
         """All of it, for the solver."""
-        costs = np.zeros(self.size)
-        if self.goal is BoardGoalName.POWER:
-            costs = self.powers() / self.scale
-        else:
-            costs[list((self.reels if self.goal is BoardGoalName.REELS else self.parts).values())] = 1.0
         lengths = [len(columns) for columns, _, _, _ in self._rows]
         return Program(
-            costs=costs,
+            costs=np.zeros(self.size) if self.goal is None else self.weights(self.goal) / self.scale,
             row_of=np.repeat(np.arange(len(self._rows)), lengths),
             column_of=np.concatenate([row[0] for row in self._rows]),
             entries=np.concatenate([row[1] for row in self._rows]),
             low=np.array([row[2] for row in self._rows]),
             high=np.array([row[3] for row in self._rows]),
+            upper=self.upper,
         )
 
     def taken(self, chosen: np.ndarray) -> list[Taken]:

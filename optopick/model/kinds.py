@@ -25,6 +25,10 @@ class LinkModel(Protocol):
     def power(self) -> tuple[Array, Array]:
         """Worst average power of each LED branch and of each load resistor [W]."""
 
+    @property
+    def heat(self) -> tuple[Array, Array, Array]:
+        """Heat of each LED branch (T, n), of the output with each load (T, n), and of the package at most (T,) [W]."""
+
     def take(self, i: np.ndarray, j: np.ndarray, m: np.ndarray) -> Self:
         """The model over some of the values."""
 

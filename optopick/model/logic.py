@@ -69,6 +69,11 @@ class LogicModel:
         led = self.led
         return float(led.r_led[i]), int(led.pieces[i]), float(led.r_shunt[i]), float(self.pulls.r_load[j]), np.inf
 
+    @property
+    def heat(self) -> tuple[Array, Array, Array]:
+        """Heat of each LED branch (T, n), of the output with each load (T, n), and of the package at most (T,) [W]."""
+        return self.led.heat, self.pulls.heat, self.total_room
+
     def start(self, dropped: frozenset[str] = frozenset()) -> Live:
         """The values that hold the limits on one value alone."""
         return holding((self.led.keep, self.pulls.keep, {}), self.sizes, dropped)

@@ -151,7 +151,8 @@ def _chosen(model: Any) -> tuple[int, int, int]:
 class Program:
     """Any program over columns that are 0 or 1: costs (n,), and rows low <= sum of entries <= high, (R,) each.
 
-    row_of, column_of, entries: the rows' entries, (E,) each, in the order of the rows, no place twice.
+    row_of, column_of, entries: the rows' entries, (E,) each, in the order of the rows, no place twice. upper: the most
+    of each column where whole numbers above 1 are wanted.
     """
 
     costs: Array
@@ -160,6 +161,7 @@ class Program:
     entries: Array
     low: Array
     high: Array
+    upper: Array | None = None
 
 
 @dataclass(frozen=True)
@@ -220,7 +222,7 @@ def _as_highs(program: Program) -> Any:
     lp = highspy.HighsLp()
     lp.num_col_, lp.num_row_ = columns, rows
     lp.col_cost_ = program.costs
-    lp.col_lower_, lp.col_upper_ = np.zeros(columns), np.ones(columns)
+    lp.col_lower_, lp.col_upper_ = np.zeros(columns), np.ones(columns) if program.upper is None else program.upper
     lp.row_lower_, lp.row_upper_ = program.low, program.high
     lp.integrality_ = [highspy.HighsVarType.kInteger] * columns
     lp.a_matrix_.format_ = highspy.MatrixFormat.kRowwise
@@ -243,7 +245,7 @@ def _solution(solver: Any, program: Program) -> Solution:
     bound = float(info.mip_dual_bound)
     if info.primal_solution_status != int(highspy.SolutionStatus.kSolutionStatusFeasible):
         return Solution(Answer.OUT_OF_TIME, None, np.inf, bound, proved=False)
-    chosen = np.asarray(solver.getSolution().col_value) > 0.5
+    chosen = np.round(np.asarray(solver.getSolution().col_value)).astype(int)
     costs = float(program.costs @ chosen)
     if bound > costs + 1e-6 * max(1.0, abs(costs)) or not np.isclose(costs, info.objective_function_value, rtol=1e-6):
         raise RuntimeError(

@@ -10,8 +10,8 @@ from rich.console import Group, RenderableType
 from rich.table import Table
 from rich.text import Text
 
-from optopick.board import BoardLimits, reel_of
-from optopick.board_answers import BoardProof, BoardResult, LinkChoice
+from optopick.board import BoardGoalName, BoardLimits, reel_of
+from optopick.board_answers import BoardProof, BoardResult, LinkChoice, Packages
 from optopick.report.as_json import objective_object, review_object
 from optopick.report.placed import Placed, placed_resistors
 from optopick.report.text_uses import values_text
@@ -26,8 +26,9 @@ def board_text(result: BoardResult, title: str, limits: BoardLimits) -> Renderab
     parts: list[RenderableType] = [Text(title, style="bold"), Text(_verdict(result))]
     if not result.links:
         return Group(*parts, Text(), Text(f"Proof: {_proof_words(result.status, result.proof)}"))
-    parts += [Text(), _links_table(result), Text(), _totals(result, limits), Text()]
+    parts += [Text(), _links_table(result), *_changes(result), Text(), _totals(result, limits), Text()]
     parts.append(Text(f"Proof: {_proof_words(result.status, result.proof)}"))
+    parts += [Text(), Text(f"Left out, no price: {'; '.join(result.unpriced)}.")] if result.unpriced else []
     return Group(*parts, Text(), *(Text(f"Caution: {caution}") for caution in result.cautions))
 
 
@@ -51,8 +52,17 @@ def _capital(text: str) -> str:
     return text[:1].upper() + text[1:]
 
 
+def goal_words(name: str, value: float) -> str:
+    """The value of a board's goal in words."""
+    if name == BoardGoalName.POWER:
+        return amount(value, "W")
+    if name == BoardGoalName.COST:
+        return f"{value:.4g}"
+    return f"{amount(value, '%')} of its limit" if name == BoardGoalName.EDGE else f"{value:.0f}"
+
+
 def _goal_amount(goal: Objective, value: float) -> str:
-    return amount(value, "W") if goal.unit == "W" else f"{value:.0f}"
+    return goal_words(goal.name, value)
 
 
 def _reached(goal: Objective) -> str:
@@ -77,6 +87,17 @@ def _links_table(result: BoardResult) -> RenderableType:
     return table
 
 
+def _changes(result: BoardResult) -> list[Text]:
+    """What links change in their briefs, one line for each that does."""
+    changed = [one.link for one in result.links if one.link.changes]
+    lines = [f"{link.name}: {', '.join(_change(*one) for one in link.changes)}" for link in changed]
+    return [Text(), Text("Changed in their briefs:"), *map(Text, lines)] if lines else []
+
+
+def _change(key: str, value: str | None) -> str:
+    return f"no {key}" if value is None else f"{key} = {value}"
+
+
 def _gave(one: LinkChoice) -> str:
     """How much more power than alone; nothing where it is the same to within the proof."""
     return "–" if one.gave < 1e-5 else margin_words(one.gave)
@@ -88,10 +109,24 @@ def _totals(result: BoardResult, limits: BoardLimits) -> RenderableType:
     reels = ", ".join(ohms_words(ohms) for ohms in result.reels)
     table.add_row("Reels", _of(len(result.reels), limits.reels), reels)
     table.add_row("Couplers", _of(len(result.couplers), limits.couplers), ", ".join(result.couplers))
+    table.add_row("Packages", _of(result.placed, limits.packages), _shared(result))
     limit = "" if limits.power is None else f" of {amount(limits.power, 'W')}"
     alone = f"{amount(result.alone, 'W')} if every link had its own best"
     table.add_row("Power", f"{amount(result.power, 'W')}{limit}", alone)
+    if result.price is not None:
+        limit = "" if limits.price is None else f" of {limits.price:.4g}"
+        table.add_row("Price", f"{result.price:.4g}{limit}", "couplers and resistors")
+    if result.edge is not None:
+        table.add_row("Edge", amount(result.edge, "%"), "of its limit, where it is longest")
     return table
+
+
+def _shared(result: BoardResult) -> str:
+    """The packages that several links or several of one link share."""
+    shared = [one for one in result.packages if one.grounds is not None]
+    return "; ".join(
+        f"{one.count} × {one.part} from {one.grounds[0]} to {one.grounds[1]}" for one in shared if one.grounds
+    )
 
 
 def _of(count: int, limit: int | None) -> str:
@@ -120,6 +155,11 @@ def board_object(result: BoardResult, title: str, limits: BoardLimits) -> dict[s
         "links": [_link_object(one) for one in result.links],
         "reels": list(result.reels),
         "couplers": list(result.couplers),
+        "packages": [_packages_object(one) for one in result.packages],
+        "packages_placed": result.placed,
+        "price": result.price,
+        "edge": result.edge,
+        "unpriced": list(result.unpriced),
         "power": result.power if result.links else None,
         "power_alone": result.alone if result.links else None,
         "hopeless": list(result.hopeless),
@@ -128,9 +168,15 @@ def board_object(result: BoardResult, title: str, limits: BoardLimits) -> dict[s
     }
 
 
+def _packages_object(one: Packages) -> dict[str, object]:
+    return asdict(one) | {"links": dict(one.links), "grounds": list(one.grounds) if one.grounds else None}
+
+
 def _link_object(one: LinkChoice) -> dict[str, object]:
     brief = one.link.brief
     named = {"name": one.link.name, "count": one.link.count, "brief": str(brief.path) if brief.path else None}
+    named["grounds"] = list(one.link.grounds) if one.link.grounds else None
+    named["changes"] = dict(one.link.changes)
     # the power of one of it stands in the review, under the same name as in the answer to pick
     return named | review_object(one.review) | {"power_alone": one.alone, "gave": one.gave}
 
@@ -170,9 +216,11 @@ def board_bill(result: BoardResult) -> str:
 
 
 def _coupler_lines(result: BoardResult) -> list[_Line]:
+    """Packages, with the links whose channels are in them."""
     lines = {part: _Line(part) for part in result.couplers}
-    for one in result.links:
-        lines[one.review.design.coupler].add(one.link.count, one.link.name)
+    for one in result.packages:
+        lines[one.part].quantity += one.count
+        lines[one.part].used += [name for name, _ in one.links]
     return list(lines.values())
 
 
