@@ -53,28 +53,19 @@ def best(
     Each round asks for a design better than the best so far. A round ends the search when ranges or the solver show
     that there is none: that is the proof. Where time runs out, `bound` is the best that is shown so far.
     """
-    return _Search(model, goal, ask, clock, without).run(below)
+    return Search(model, goal, ask, clock, without).run(below)
 
 
 def first_look(
     model: LinkModel, goal: GoalName, ask: Ask, below: float = np.inf, without: Sequence[Choice] = ()
 ) -> Found:
-    """A good design of one coupler that beats `below`, found without the solver; no proof that it is the best.
-
-    Where ranges show that there is none, the bound says so as in `best`; else the bound is 0.
-    """
-    search = _Search(model, goal, ask, Clock(), without)
-    wanted = search.better_than(below)
-    box = tightened(search.box, wanted) if search.box else None
-    if box is None:
-        return _proved(None, below)
-    found = _look(box, goal, wanted)
-    return Found(box.whole(found[0]), found[1], 0.0) if found else Found(None, below, 0.0)
+    """A good design of one coupler that beats `below`, found without the solver: see `Search.look`."""
+    return Search(model, goal, ask, Clock(), without).look(below)
 
 
 def exists(model: LinkModel, ask: Ask, clock: Clock) -> bool | None:
     """Whether the coupler has any design within `ask`; None where time ran out first."""
-    search = _Search(model, None, ask, clock)
+    search = Search(model, None, ask, clock)
     box = narrowed(search.box, ask) if search.box else None
     if box is None:
         clock.by_ranges += 1
@@ -91,8 +82,11 @@ def refuted(model: LinkModel, ask: Ask) -> bool:
     return box is None or tightened(box, ask) is None
 
 
-class _Search:
-    """`goal` None asks for any design."""
+class Search:
+    """The search of `best`, which may begin with a look: what that has ruled out the rest need not look at again.
+
+    `goal` None asks for any design.
+    """
 
     def __init__(
         self, model: LinkModel, goal: GoalName | None, ask: Ask, clock: Clock, without: Sequence[Choice] = ()
@@ -103,6 +97,19 @@ class _Search:
         self.boxes: list[Box] = []
         self.box = whole_box(model, self.ask, stack([all_but(choice, model.sizes) for choice in without], model.sizes))
         self.scale = float(sum(np.median(part) for part in model.power))
+
+    def look(self, below: float) -> Found:
+        """A good design that beats `below`, found without the solver; no proof that it is the best.
+
+        Where ranges show that there is none, the bound says so as in `best`; else the bound is 0. Whoever calls `run`
+        afterwards may ask for no more than `below`.
+        """
+        wanted = self.better_than(below)
+        self.box = tightened(self.box, wanted) if self.box else None
+        if self.box is None:
+            return _proved(None, below)
+        found = _look(self.box, self.goal, wanted)
+        return Found(self.box.whole(found[0]), found[1], 0.0) if found else Found(None, below, 0.0)
 
     def run(self, below: float) -> Found:
         """Work through boxes: narrow, look, split what is large, solve what is small, until none is left."""

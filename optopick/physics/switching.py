@@ -98,6 +98,12 @@ class Steps:
         """The steps of some of the values on the last axis."""
         return self.at((..., values))
 
+    def over(self, shape: tuple[int, ...]) -> Steps:
+        """The same broadcast to loads of a shape."""
+        names = ("tau", "i_low", "i_high", "hold", "least")
+        wide = {name: np.broadcast_to(getattr(self, name), (len(self.tau), *shape)) for name in names}
+        return Steps(**wide, lag=np.broadcast_to(self.lag, shape))
+
 
 def steps(base: Base, load: Load, transfer: Transfer, carried: Real, cut: Cut) -> Steps:
     """Steps of a swing; carried: CTR at the test current times h [1].
@@ -303,20 +309,23 @@ def extraction_for(s: Steps, time: Real, i_rest: Real = 0.0, near: float = CONVE
 def extraction_for_edge(s: Steps, cut: Cut, time: Real, i_rest: Real) -> Array:
     """An i_be [A] below which edge_off > time: 0 where none is needed, infinite where none is enough. Broadcasts.
 
-    Close to the least one, by a few halvings between what is needed without rest and with all of it.
+    The least one, by `extraction_for`, where the base resistor then takes all that is left, so that the output comes to
+    rest at zero; else a little below it, by a few halvings up to where it would.
     """
-    rest = np.asarray(i_rest, dtype=float)
-    found = extraction_for(s, time)
-    possible, least, most = np.isfinite(found), np.min(s.hold, axis=0), np.max(s.hold, axis=0)
-    bare = np.where(possible, found, 0.0)
-    low, high = np.where(bare > 0, bare + rest / most, 0.0), bare + rest / least
-    for _ in range(HALVINGS):
-        middle = (low + high) / 2
-        enough = edge_off(s, cut, middle, rest) <= time
-        low, high = np.where(enough, low, middle), np.where(enough, middle, high)
-    low = np.maximum(low, TINY * rest)
-    none_needed = edge_off(s, cut, 0.0, rest) <= time
-    return np.asarray(np.where(none_needed, 0.0, np.where(possible, low, np.inf)))
+    t, rest = np.asarray(time, dtype=float), np.asarray(i_rest, dtype=float)
+    found = extraction_for(s, t, rest)
+    least = s.hold[0]
+    held = np.isfinite(found) & (least * found < rest)
+    if held.any():
+        few = s.over(held.shape).at((held,))
+        rest, t = (np.broadcast_to(part, held.shape)[held] for part in (rest, t))
+        low, high = TINY * rest, rest / few.hold[0]
+        for _ in range(HALVINGS):
+            middle = (low + high) / 2
+            enough = edge_off(few, cut, middle, rest) <= t
+            low, high = np.where(enough, low, middle), np.where(enough, middle, high)
+        found[held] = np.where(edge_off(few, cut, 0.0, rest) <= t, 0.0, low)
+    return found
 
 
 @dataclass(frozen=True)

@@ -22,8 +22,8 @@ class Measured:
     @property
     def margin(self) -> Array:
         """Room left relative to the limit, the plain difference where that is zero; minus infinity for not a number."""
-        value, limit = np.broadcast_arrays(np.asarray(self.value, dtype=float), np.asarray(self.limit, dtype=float))
+        value, limit = np.asarray(self.value, dtype=float), np.asarray(self.limit, dtype=float)
         room = limit - value if self.sense == "<=" else value - limit
         with np.errstate(invalid="ignore", divide="ignore"):
             share = np.where(limit != 0, room / np.abs(limit), room)
-        return np.asarray(np.nan_to_num(share, nan=-np.inf, posinf=np.inf, neginf=-np.inf))
+        return np.where(np.isnan(share), -np.inf, share)

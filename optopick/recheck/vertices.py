@@ -57,12 +57,13 @@ class Vertices:
 
     def corner(self, margin: Array, flat: int) -> str:
         """The vertex at flat index `flat` of the margins, in words; what makes no difference there goes unsaid."""
-        index = np.unravel_index(flat, margin.shape)
-        here, parts = float(margin[index]), []
-        for axis, k in enumerate(index):
-            along = margin[tuple(slice(None) if n == axis else at for n, at in enumerate(index))]
+        index = [int(k) for k in np.unravel_index(flat, margin.shape)]
+        here, parts = float(margin[tuple(index)]), []
+        for axis in (n for n, size in enumerate(margin.shape) if size > 1):
+            line: tuple[int | slice, ...] = (*index[:axis], slice(None), *index[axis + 1 :])
+            along = margin[line]
             if not all(_same(other, here) for other in along.tolist()):
-                parts.append(self.words[axis][k])
+                parts.append(self.words[axis][index[axis]])
         return ", ".join(_drive_as_one([part for part in parts if part]))
 
 
@@ -177,9 +178,15 @@ def _resistor(brief: Brief, design: Design, name: str, t: Array) -> Array:
 def worst(box: Vertices, measured: Measured) -> Check:
     """The check at the vertex with the least room."""
     margin = measured.margin
-    value, limit = (
-        np.broadcast_to(np.asarray(part, dtype=float), margin.shape) for part in (measured.value, measured.limit)
-    )
     flat = int(np.argmin(margin))
+    index = np.unravel_index(flat, margin.shape)
     corner = box.corner(margin, flat) if margin.ndim else ""
-    return Check(measured.name, float(value.flat[flat]), float(limit.flat[flat]), measured.sense, measured.unit, corner)
+    value, limit = (_at(part, index) for part in (measured.value, measured.limit))
+    return Check(measured.name, value, limit, measured.sense, measured.unit, corner)
+
+
+def _at(values: Array | float, index: tuple[np.intp, ...]) -> float:
+    """The value at an index of what these values broadcast to."""
+    own = np.asarray(values, dtype=float)
+    last = index[len(index) - own.ndim :]
+    return float(own[tuple(k if size > 1 else 0 for k, size in zip(last, own.shape, strict=True))])

@@ -13,7 +13,7 @@ from optopick.errors import DisagreementError
 from optopick.model.box import Choice
 from optopick.model.kinds import LinkModel, model_of
 from optopick.model.rows import Ask
-from optopick.model.search import STEP, best, first_look
+from optopick.model.search import STEP, Search
 from optopick.model.solver import Clock
 from optopick.read_couplers import read_couplers
 from optopick.recheck import review
@@ -190,13 +190,21 @@ def over_all(
     """
     floors = {} if floors is None else floors
     found = _carried(start, goal)
-    left_out = {entry.coupler.part: [c for part, c in without if part == entry.coupler.part] for entry in entries}
+    searches: dict[str, Search] = {}
+
+    def search_of(entry: Entry) -> Search:
+        part = entry.coupler.part
+        if part not in searches:
+            left_out = [choice for named, choice in without if named == part]
+            searches[part] = Search(entry.model, goal, ask, clock, left_out)
+        return searches[part]
+
     for entry in sorted(entries, key=lambda entry: floors.get(entry.coupler.part, 0.0)):
         if floors.get(entry.coupler.part, 0.0) >= found.value * (1 - STEP):
             continue
         if clock.out and found.choice is not None:
             break
-        look = first_look(entry.model, goal, ask, found.value, left_out[entry.coupler.part])
+        look = search_of(entry).look(found.value)
         floors[entry.coupler.part] = max(floors.get(entry.coupler.part, 0.0), look.bound)
         if look.choice is not None:
             found = Best(entry, look.choice, look.value, 0.0)
@@ -208,7 +216,7 @@ def over_all(
             bound = min(bound, floors[part])
             clock.by_ranges += 1
             continue
-        better = best(entry.model, goal, ask, clock, found.value, left_out[part])
+        better = search_of(entry).run(found.value)
         floors[part] = max(floors.get(part, 0.0), better.bound)
         bound = min(bound, better.bound)
         if better.choice is not None:
