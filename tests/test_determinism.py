@@ -53,7 +53,7 @@ def test_on_a_fine_series(tmp_path):
     assert steady(in_another_process("7", "pick", brief, "--json")) == first
 
 
-@pytest.mark.parametrize("seed", [42, 43, 50, 59])
+@pytest.mark.parametrize("seed", [42, 43, 56, 59])
 def test_when_the_solver_decides(seed):
     """Links that ranges alone do not settle."""
     brief, couplers = case(seed)
