@@ -183,9 +183,9 @@ def _header(place: Place, header: _Record, mistakes: list[Mistake]) -> tuple[str
     names = tuple(name.lower() for name in header.cells)
     for name in dict.fromkeys(names):
         if name and name not in known:
-            mistakes.append(Mistake(where, f"column {_quoted(name)}", _nearest(name)))
+            mistakes.append(Mistake(where, f"column {quoted(name)}", _nearest(name)))
         elif name and names.count(name) > 1:
-            mistakes.append(Mistake(where, f"column {_quoted(name)} {names.count(name)} times", "each column once"))
+            mistakes.append(Mistake(where, f"column {quoted(name)} {names.count(name)} times", "each column once"))
     for name in ("part", "kind"):
         if name not in names:
             mistakes.append(Mistake(where, f"no column {name}", "the columns part and kind in every table"))
@@ -230,7 +230,7 @@ def _cells(
             if column is not None:
                 yield name, _read(column, text)
             elif not name:
-                raise QuantityError(_quoted(text), "a column name in the header above it")
+                raise QuantityError(quoted(text), "a column name in the header above it")
         except QuantityError as error:
             at = f"{where}, column {name}" if name else where
             mistakes.append(Mistake(at, error.found, error.expected))
@@ -258,12 +258,12 @@ def _quantity(column: Column, text: str) -> float:
         number = float(text)
         value = unit.to_si(number)
     elif column.unit == "1":
-        raise QuantityError(_quoted(text), "a plain number")
+        raise QuantityError(quoted(text), "a plain number")
     else:
         value = _with_unit(column, text)
         number = unit.from_si(value)
     if not _within(column, number):
-        raise QuantityError(_quoted(text), f"{column.range_text}{_plain_note(column)}")
+        raise QuantityError(quoted(text), f"{column.range_text}{_plain_note(column)}")
     return value
 
 
@@ -286,7 +286,7 @@ def _plain_note(column: Column) -> str:
 
 def _count(column: Column, text: str) -> float:
     if not re.fullmatch(r"[0-9]{1,9}", text) or not column.low <= int(text) <= column.high:
-        raise QuantityError(_quoted(text), f"a whole number, {column.low:g} to {column.high:g}")
+        raise QuantityError(quoted(text), f"a whole number, {column.low:g} to {column.high:g}")
     return float(int(text))
 
 
@@ -294,24 +294,24 @@ def _curve(column: Column, text: str) -> Curve:
     try:
         curve = read_points(text)
     except ValueError as error:
-        raise QuantityError(_quoted(text), str(error)) from None
+        raise QuantityError(quoted(text), str(error)) from None
     if not (column.low <= curve.x[0] and curve.x[-1] <= column.high):
-        raise QuantityError(_quoted(text), f"first numbers of {column.range_text}")
+        raise QuantityError(quoted(text), f"first numbers of {column.range_text}")
     if max(curve.y) > 1e6 * min(curve.y):
-        raise QuantityError(_quoted(text), "second numbers within a factor of a million")
+        raise QuantityError(quoted(text), "second numbers within a factor of a million")
     return curve
 
 
 def _plain_text(text: str) -> str:
     if not text.isprintable() or len(text) > 200:
-        raise QuantityError(_quoted(text), "one line of printable text, up to 200 characters")
+        raise QuantityError(quoted(text), "one line of printable text, up to 200 characters")
     return text
 
 
 def _choice(column: Column, text: str) -> str | bool:
     choices = column.choices or ("yes", "no")
     if text.lower() not in choices:
-        raise QuantityError(_quoted(text), f"{', '.join(choices[:-1])} or {choices[-1]}")
+        raise QuantityError(quoted(text), f"{', '.join(choices[:-1])} or {choices[-1]}")
     return text.lower() if column.choices else text.lower() == "yes"
 
 
@@ -368,8 +368,9 @@ def _check_names(place: Place, rows: list[Row], mistakes: list[Mistake]) -> None
         first = seen.setdefault(row.name.casefold(), row.line)
         if row.name and first != row.line:
             expected = f"each part and bin once (first on {place.word} {first})"
-            mistakes.append(Mistake(f"{place.at(row.line)}, column part", _quoted(row.name), expected))
+            mistakes.append(Mistake(f"{place.at(row.line)}, column part", quoted(row.name), expected))
 
 
-def _quoted(text: str) -> str:
+def quoted(text: str) -> str:
+    """Return a cell as messages show it."""
     return json.dumps(text if len(text) <= 60 else text[:57] + "...", ensure_ascii=False)

@@ -45,10 +45,10 @@ def read_couplers(path: Path | str) -> CouplerTable:
     """
     path = Path(path)
     rows = read_rows(path)
-    outcomes = [_outcome(row, bin_) for row, bin_ in zip(rows, bins_of(rows), strict=True)]
+    outcomes = [outcome(row, bin_) for row, bin_ in zip(rows, bins_of(rows), strict=True)]
     return CouplerTable(
-        couplers=tuple(outcome for outcome in outcomes if isinstance(outcome, Coupler)),
-        set_aside=tuple(outcome for outcome in outcomes if isinstance(outcome, SetAside)),
+        couplers=tuple(found for found in outcomes if isinstance(found, Coupler)),
+        set_aside=tuple(found for found in outcomes if isinstance(found, SetAside)),
         path=path,
     )
 
@@ -63,7 +63,8 @@ def sheets_of(path: Path) -> tuple[tuple[Coupler, Sheet | None], ...]:
     return tuple(found)
 
 
-def _outcome(row: Row, bin_: Bin | None) -> Coupler | SetAside:
+def outcome(row: Row, bin_: Bin | None) -> Coupler | SetAside:
+    """Return the coupler of one row, or why it is set aside."""
     try:
         return resolve(row, bin_)
     except UnusableError as error:

@@ -49,6 +49,15 @@ def done(work: Deadly) -> float:
     return work.number / 7
 
 
+def first_waits(work: Deadly) -> int:
+    """The number of the work; the first one is done only once its folder holds `go`."""
+    until = time.monotonic() + PATIENCE
+    while work.number == 0 and not (work.folder / "go").exists():
+        assert time.monotonic() < until
+        time.sleep(0.01)
+    return work.number
+
+
 def process_of(_: int) -> int:
     """The process that does the work."""
     return os.getpid()

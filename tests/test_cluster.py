@@ -9,7 +9,7 @@ import sys
 
 import pytest
 from cli_links import TINY
-from cluster_machines import Deadly, done, machines
+from cluster_machines import Deadly, done, first_waits, machines
 from command import ROOT, run
 
 from optopick.errors import InputError, WorkLostError
@@ -24,7 +24,7 @@ PATIENCE = 60.0
 
 def test_a_killed_worker_changes_no_bit(tmp_path):
     brief = read_brief(ROOT / "examples" / "battery.toml")
-    couplers = couplers_of(brief)[0][:16]
+    couplers = couplers_of(brief)[0][:10]
     with machines(tmp_path, 3) as there, Cluster(there.address, PATIENCE) as cluster:
         cluster.client.wait_for_workers(3, timeout=PATIENCE)
         killed = []
@@ -59,6 +59,10 @@ def test_commands_answer_as_without(tmp_path):
             here = run("-q", *command, "--json", "--workers", "1")
             assert here.code == 0
             assert run("-q", *command, "--json", "--cluster", there.address) == here
+        streamed = ("-q", "rank", TINY, "--json", "--results")
+        here = run(*streamed, tmp_path / "here.jsonl", "--workers", "1")
+        assert here.code == 0
+        assert run(*streamed, tmp_path / "there.jsonl", "--cluster", there.address) == here
 
 
 def test_work_that_kills_its_workers_is_named(tmp_path):
@@ -146,3 +150,13 @@ def test_no_more_work_than_the_workers_need(tmp_path):
         assert [next(answers) for _ in range(5)] == [k / 7 for k in range(5)]
         assert taken <= AHEAD + 5
         answers.close()
+
+
+def test_no_answer_waits_for_a_slow_one_before_it(tmp_path):
+    with machines(tmp_path, 2) as there, Cluster(there.address, PATIENCE) as cluster:
+        cluster.client.wait_for_workers(2, timeout=PATIENCE)
+        answers = cluster.as_done(first_waits, [Deadly(k, tmp_path) for k in range(9)])
+        first, number = next(answers)
+        assert first.number == number != 0
+        (tmp_path / "go").touch()
+        assert {number, *(other for _, other in answers)} == set(range(9))

@@ -6,10 +6,13 @@ import multiprocessing
 import os
 import pickle
 import signal
+import subprocess
+import sys
+import time
 from pathlib import Path
 
 import pytest
-from cluster_machines import Deadly, done, process_of
+from cluster_machines import Deadly, done, first_waits, process_of
 from command import ROOT, run
 
 from optopick.errors import InputError, Mistake, WorkLostError
@@ -26,6 +29,19 @@ def test_answers_come_in_order():
     assert list(Processes(3).map(abs, range(-500, 0))) == list(range(500, 0, -1))
     assert list(Processes(3).map(abs, iter([-1]))) == [1]
     assert list(Processes(3).map(abs, [])) == []
+
+
+@pytest.mark.parametrize("workers", [Here(), Processes(3)])
+def test_answers_as_they_are_done(workers):
+    assert sorted(workers.as_done(abs, range(-500, 0))) == [(k, -k) for k in range(-500, 0)]
+
+
+def test_no_answer_waits_for_a_slow_one_before_it(tmp_path):
+    answers = Processes(2).as_done(first_waits, [Deadly(k, tmp_path) for k in range(90)])
+    first, number = next(answers)
+    assert first.number == number != 0
+    (tmp_path / "go").touch()
+    assert {number, *(other for _, other in answers)} == set(range(90))
 
 
 def test_several_processes_work():
@@ -52,6 +68,10 @@ def test_work_of_a_killed_process_is_done_again(tmp_path):
     work = [Deadly(k, tmp_path, times=1 if k in (5, 6, 70) else 0) for k in range(90)]
     assert list(Processes(3).map(done, work)) == [k / 7 for k in range(90)]
     assert len(list(tmp_path.iterdir())) == 3
+    work = [Deadly(k, tmp_path, times=1 if k in (95, 96, 160) else 0) for k in range(90, 180)]
+    found = {one.number: answer for one, answer in Processes(3).as_done(done, work)}
+    assert found == {k: k / 7 for k in range(90, 180)}
+    assert len(list(tmp_path.iterdir())) == 6
 
 
 def test_work_that_kills_every_process_is_named(tmp_path):
@@ -66,7 +86,7 @@ def test_work_that_kills_every_process_is_named(tmp_path):
 
 def test_a_ranking_survives_a_killed_process():
     brief = read_brief(ROOT / "examples" / "battery.toml")
-    couplers = couplers_of(brief)[0][:12]
+    couplers = couplers_of(brief)[0][:8]
     killed = []
 
     def kill_one(_: str, done: int, total: int) -> None:
@@ -117,3 +137,37 @@ def test_mistakes_come_whole_from_another_process():
 def test_folders_of_deadly_work_pickle():
     work = Deadly(1, Path("x"))
     assert pickle.loads(pickle.dumps(work)) == work
+
+
+PARENT = """
+import sys, time
+from cluster_machines import process_of
+from optopick.uses.workers import Processes
+answers = Processes(2).map(process_of, iter(int, 1))
+print(*{next(answers) for _ in range(100)}, flush=True)
+time.sleep(600)
+"""
+
+
+def test_processes_end_with_a_killed_parent():
+    paths = os.pathsep.join((str(ROOT), str(ROOT / "tests")))
+    with subprocess.Popen(
+        [sys.executable, "-c", PARENT], env={**os.environ, "PYTHONPATH": paths}, stdout=subprocess.PIPE, text=True
+    ) as parent:
+        children = [int(text) for text in parent.stdout.readline().split()]
+        assert children
+        assert all(map(is_there, children))
+        parent.kill()
+        until = time.monotonic() + 60
+        while any(map(is_there, children)) and time.monotonic() < until:
+            time.sleep(0.05)
+    assert not any(map(is_there, children))
+
+
+def is_there(process: int) -> bool:
+    """Whether a process is there and has not ended."""
+    try:
+        status = Path(f"/proc/{process}/stat").read_text(encoding="utf-8")
+    except OSError:
+        return False
+    return status.rpartition(")")[2].split()[0] != "Z"

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import sys
 from pathlib import Path
+from typing import TYPE_CHECKING, NoReturn
 
 import click
 
@@ -20,6 +21,10 @@ from optopick.cli.app import (
     time_option,
 )
 from optopick.cli.hands import hands, workers_options
+from optopick.errors import InputError, Mistake
+
+if TYPE_CHECKING:
+    from optopick.brief import Brief
 
 # Imports stand inside the commands: --help and input errors must not wait for the numerical libraries.
 # ruff: noqa: PLC0415, PLR0913, PLR0917
@@ -30,11 +35,23 @@ from optopick.cli.hands import hands, workers_options
 @click.option("--top", type=click.IntRange(min=1), default=None, metavar="N", help="Show the best N only.")
 @click.option("--csv", "as_csv", is_flag=True, help="Print the ranking as CSV and nothing else.")
 @json_option
+@click.option(
+    "--results",
+    type=click.Path(path_type=Path),
+    default=None,
+    metavar="FILE",
+    help="For large tables: read row by row, outcomes to FILE as they come (JSON lines); run again, it goes on there.",
+)
+@click.option(
+    "--top-only", is_flag=True, help="With --results: pass over couplers that cannot come among the best --top (20)."
+)
 @workers_options
 @time_option
 def rank(
     brief: Path,
     top: int | None,
+    results: Path | None,
+    top_only: bool,
     as_csv: bool,
     as_json: bool,
     workers: int | None,
@@ -49,7 +66,11 @@ def rank(
     """
     from optopick.read_brief import read_brief
 
+    if top_only and results is None:
+        raise InputError([Mistake("--top-only", "no --results", "--results FILE beside it")])
     read = read_brief(brief)
+    if results is not None:
+        _rank_streamed(read, results, top, top_only, as_csv, as_json, workers, cluster, time_limit)
 
     from optopick.uses.rank import rank as run
 
@@ -68,6 +89,45 @@ def rank(
 
         show(ranking_text(ranking, read.title, top))
     sys.exit(OK if ranking.ranked else NO_DESIGN)
+
+
+def _rank_streamed(
+    brief: Brief,
+    results: Path,
+    top: int | None,
+    top_only: bool,
+    as_csv: bool,
+    as_json: bool,
+    workers: int | None,
+    cluster: str | None,
+    time_limit: float,
+) -> NoReturn:
+    """`rank --results`."""
+    from optopick.uses.rank_stream import TOP, rank_streamed
+
+    with hands(workers, cluster) as doing:
+        found = rank_streamed(
+            brief,
+            results,
+            top=top or TOP,
+            top_only=top_only,
+            workers=doing,
+            progress=progress(),
+            time_limit=time_limit,
+        )
+    if as_json:
+        from optopick.report.streamed import streamed_object
+
+        show_json(streamed_object(found))
+    elif as_csv:
+        from optopick.report.frames import ranking_frame
+
+        click.echo(ranking_frame(found.ranking).to_csv(index=False), nl=False)
+    else:
+        from optopick.report.streamed import streamed_text
+
+        show(streamed_text(found, brief.title))
+    sys.exit(OK if found.ranking.ranked else NO_DESIGN)
 
 
 @main.command()

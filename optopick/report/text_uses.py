@@ -22,7 +22,7 @@ def ranking_text(ranking: Ranking, title: str, top: int | None) -> RenderableTyp
     shown = ranking.ranked[:top] if top else ranking.ranked
     parts: list[RenderableType] = [Text(title, style="bold"), Text(_ranking_verdict(ranking)), Text()]
     if shown:
-        parts.append(_ranking_table(shown))
+        parts.append(ranking_table(shown))
     if len(shown) < len(ranking.ranked):
         parts.append(Text(f"and {len(ranking.ranked) - len(shown)} more; --top shows more or fewer"))
     if ranking.rejected:
@@ -39,7 +39,8 @@ def _ranking_verdict(ranking: Ranking) -> str:
     return said if ranking.complete else said + " Interrupted: not every coupler was tried."
 
 
-def _ranking_table(ranked: Sequence[Ranked]) -> RenderableType:
+def ranking_table(ranked: Sequence[Ranked]) -> RenderableType:
+    """Ranked couplers in order, each with its goals and design."""
     table = Table(box=None, padding=(0, 1, 0, 0), header_style="bold")
     for heading in ("", "Coupler", ranked[0].objective.name, ranked[0].second.name):
         table.add_column(heading, no_wrap=True, justify="left" if heading in ("", "Coupler") else "right")

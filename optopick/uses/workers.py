@@ -3,6 +3,9 @@
 from __future__ import annotations
 
 import os
+import signal
+import threading
+import time
 from collections import deque
 from collections.abc import Callable, Iterable, Iterator
 from concurrent.futures import FIRST_COMPLETED, Future, ProcessPoolExecutor, wait
@@ -18,6 +21,9 @@ Answer = TypeVar("Answer")
 
 AHEAD = 32
 """Items handed out for each worker: enough that none waits for the slow one before it, few enough to hold."""
+
+PARENT_LOOK = 1.0
+"""Seconds between two looks at whether the process that asked for the work is still there."""
 
 TOGETHER, TRIES = 2, 4
 """How often an item that was lost is done beside others, and how often it is tried at all."""
@@ -159,11 +165,16 @@ def _is_lost(task: Future[Answer]) -> bool:
 
 
 def _pool(count: int) -> ProcessPoolExecutor:
-    return ProcessPoolExecutor(count, mp_context=get_context("fork"), initializer=_leave_interrupts_alone)
+    return ProcessPoolExecutor(count, mp_context=get_context("fork"), initializer=_begin, initargs=(os.getpid(),))
 
 
-def _leave_interrupts_alone() -> None:
-    """Ctrl-C is for the parent: it decides what to show of what is finished."""
-    import signal  # noqa: PLC0415
-
+def _begin(parent: int) -> None:
+    """Ctrl-C is for the parent: it decides what to show of what is finished. Where it is killed, this one ends too."""
     signal.signal(signal.SIGINT, signal.SIG_IGN)
+    threading.Thread(target=_end_with, args=(parent,), daemon=True).start()
+
+
+def _end_with(parent: int) -> None:
+    while os.getppid() == parent:
+        time.sleep(PARENT_LOOK)
+    os._exit(1)
