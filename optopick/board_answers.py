@@ -42,6 +42,48 @@ class Packages:
 
 
 @dataclass(frozen=True)
+class Needed:
+    """A limit over a board that contradicts others: the least that it would have to be, all others as they are.
+
+    limit, least: [W] for power. least None: no value of it helps. proved: whether no less would do.
+    """
+
+    name: str
+    limit: float
+    least: float | None
+    proved: bool
+
+
+@dataclass(frozen=True)
+class FrontPoint:
+    """The least first goal of a board with so many reels (or parts, or packages) at most, and that board."""
+
+    count: int
+    result: BoardResult
+
+    @property
+    def goal(self) -> Objective:
+        """The first goal: its value and what is shown of it."""
+        return self.result.goals[0]
+
+
+@dataclass(frozen=True)
+class BoardFront:
+    """How a board's first goal falls as it may have more of what is counted.
+
+    count: what is counted. points: from the fewest up, those alone that gain something; none where no board holds the
+    other limits. complete: whether each is proved, and none is left out.
+    """
+
+    count: str
+    goal: str
+    status: Status
+    points: tuple[FrontPoint, ...]
+    complete: bool
+    hopeless: tuple[str, ...]
+
+
+@dataclass(frozen=True)
 class BoardProof:
     """How the answer was established: size of the last model, cuts, solver calls, seconds, the solver."""
 
@@ -61,6 +103,7 @@ class BoardResult:
     couplers: the distinct parts. packages: the coupler packages placed. price: of all couplers and resistors, None
     where a price is not known. edge: the worst edge time, each against its link's limit [1], None without any limit.
     unpriced: what was left out since it has no price. hopeless: links that have no design even alone.
+    conflict: limits of which no part contradicts itself, where no board holds all limits over it.
     """
 
     status: Status
@@ -73,6 +116,7 @@ class BoardResult:
     edge: float | None
     unpriced: tuple[str, ...]
     hopeless: tuple[str, ...]
+    conflict: tuple[Needed, ...]
     proof: BoardProof
     cautions: tuple[str, ...]
 

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from dataclasses import replace
 
 import numpy as np
@@ -20,6 +21,7 @@ from optopick.read_brief import read_brief
 from optopick.recheck import review
 from optopick.result import Design, Status
 from optopick.uses import board as uses
+from optopick.uses import board_work as work
 from optopick.uses import engine
 from optopick.uses.board import solve_board
 from optopick.uses.board_totals import resistances
@@ -52,13 +54,13 @@ class TestDisagreement:
     def test_limits_are_counted_again(self, limits):
         result = solve_board(two_links())
         with pytest.raises(DisagreementError, match=f"{next(iter(limits))} in the designs, limit"):
-            uses._recount(two_links(**limits), result)
+            work._recount(two_links(**limits), result)
 
     def test_goals_are_counted_again(self):
         result = solve_board(two_links())
         wrong = tuple(replace(goal, value=goal.value * 1.01) for goal in result.goals)
         with pytest.raises(DisagreementError, match=r"power is .* in the model, .* again"):
-            uses._recount(two_links(), replace(result, goals=wrong))
+            work._recount(two_links(), replace(result, goals=wrong))
 
 
 class TestTime:
@@ -69,7 +71,7 @@ class TestTime:
     def test_what_is_not_proved_is_not_called_so(self, monkeypatch):
         """As if the solver ended every call early, with its solution and a bound of half of it."""
 
-        def early(program, seconds=np.inf, *, gap=0.0, nodes=None):
+        def early(program, seconds=np.inf, *, gap=0.0, nodes=None, seen=None):
             found = solve_program(program, seconds, gap=gap, nodes=nodes)
             clock.append(1)
             return replace(found, bound=found.costs / 2, proved=False)
@@ -88,7 +90,7 @@ class TestTime:
         assert result.goals[0].bound < result.goals[0].value * (1 - 1e-4)
 
     def test_a_solver_out_of_time_with_nothing(self, monkeypatch):
-        def nothing(program, seconds=np.inf, *, gap=0.0, nodes=None):
+        def nothing(program, seconds=np.inf, *, gap=0.0, nodes=None, seen=None):
             return board_search.Solution(Answer.OUT_OF_TIME, None, np.inf, 0.0, proved=False)
 
         monkeypatch.setattr(board_search, "solve_program", nothing)
@@ -124,6 +126,21 @@ class TestProgram:
         assert found.costs == pytest.approx((costs @ every[:, held]).min())
         assert costs @ found.chosen == pytest.approx(found.costs)
 
+    def test_tells_how_far_it_is(self):
+        """A program that takes some branching: what is told closes in on what is returned."""
+        rng = np.random.default_rng(3)
+        dense = rng.integers(1, 100, (3, 30)).astype(float)
+        row_of, column_of = np.nonzero(dense)
+        low = dense.sum(axis=1) / 2
+        told: list[tuple[float, float]] = []
+        costs = rng.integers(50, 100, 30).astype(float)
+        program = Program(costs, row_of, column_of, dense[row_of, column_of], low, low + 4)
+        found = solve_program(program, seen=lambda best, bound: told.append((best, bound)))
+        assert found.proved
+        assert len(told) >= 2
+        assert all(best >= found.costs - 1e-6 and bound <= found.costs + 1e-6 for best, bound in told)
+        assert told[-1][1] > told[0][1]
+
     def test_says_nothing_on_the_terminal(self, capfd):
         solve_program(Program(np.ones(1), np.zeros(1, int), np.zeros(1, int), np.ones(1), np.ones(1), np.ones(1)))
         assert capfd.readouterr() == ("", "")
@@ -146,6 +163,30 @@ def test_clipped_rows_give_no_more_than_is_of_use():
     # 1 makes up for the worst of the others, and 2 then is what b has to make up for
     assert tight.a == pytest.approx(np.array([[0.5, -1.0]]), abs=1e-8)
     assert tight.b == pytest.approx(np.array([[0.5, -0.5]]), abs=1e-8)
+
+
+def test_progress_tells_best_bound_and_gap():
+    told: list[str] = []
+    result = solve_board(two_links(reels=3), progress=lambda stage, done, total: told.append(stage))
+    power = f"{1e3 * result.goals[0].value:.4g} mW"
+    assert {f"power {power}, at least {power} ({gap} %)" for gap in ("0", "0.0")} & {*told}
+    assert any(re.fullmatch(r"power [\d.]+ mW, at least [\d.]+ mW \([\d.]+ %\)", stage) for stage in told)
+    assert any(re.fullmatch(r"reels \d, at least \d \([\d.]+ %\)", stage) for stage in told)
+
+
+@pytest.mark.parametrize(
+    ("goal", "value", "bound", "said"),
+    [
+        (BoardGoalName.POWER, np.inf, 0.0608, "power: no board yet, at least 60.8 mW"),
+        (BoardGoalName.POWER, 0.0612, 0.0608, "power 61.2 mW, at least 60.8 mW (0.7 %)"),
+        (BoardGoalName.COST, 0.0, 0.0, "cost 0, at least 0 (0 %)"),
+        (BoardGoalName.EDGE, 0.5, 0.4, "edge 50 % of its limit, at least 40 % of its limit (20 %)"),
+    ],
+)
+def test_progress_in_words(goal, value, bound, said):
+    told: list[tuple[str, int, int]] = []
+    work._tell(lambda *stage: told.append(stage), goal, value, bound)
+    assert told == [(said, 0, 0)]
 
 
 def test_reels():

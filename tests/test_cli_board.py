@@ -103,10 +103,71 @@ def test_too_few_reels(board, tmp_path):
     path = board("reels = 2")
     ran = run("board", path, "--csv", tmp_path / "parts.csv")
     assert ran.code == 3
-    assert "though every link has designs alone" in ran.out
+    assert (
+        "though every link has designs alone. Reels 2 cannot be kept. Reels would have to be at least 3."
+        in " ".join(ran.out.split())
+    )
     assert not (tmp_path / "parts.csv").exists()
     found = json_of(run("board", path, "--json"))
     assert (found["status"], found["links"], found["power"]) == ("infeasible", [], None)
+    assert found["conflict"] == [{"name": "reels", "limit": 2, "least": 3.0, "proved": True}]
+
+
+def test_limits_that_contradict_each_other(board):
+    least = json_of(run("board", board(), "--json"))["power"]
+    path = board(f"reels = 3\npower = {1.001 * least}")
+    said = " ".join(run("board", path).out.split())
+    assert (
+        f"Reels 3 and power {1e3 * least * 1.001:.4g} mW cannot be kept together. Reels would have to be at least"
+        in said
+    )
+    names = {one["name"]: one for one in json_of(run("board", path, "--json"))["conflict"]}
+    assert set(names) == {"reels", "power"}
+    enough = json_of(run("board", board(f"reels = 3\npower = {names['power']['least'] * 1.0001}"), "--json"))
+    assert enough["status"] == "optimal"
+
+
+def test_too_dear_names_the_price(shelf):
+    said = " ".join(run("board", shelf("price = 0.9")).out.split())
+    assert "Price 0.9 cannot be kept. Price would have to be at least 1.04." in said
+    (needed,) = json_of(run("board", shelf("price = 0.9"), "--json"))["conflict"]
+    assert (needed["name"], needed["least"]) == ("price", pytest.approx(1.04))
+
+
+def test_the_front(board):
+    path = board("reels = 4")
+    ran = run("board", path, "--front", "reels")
+    assert ran.code == 0
+    for words in ("each proved", "Reels", "Power", "More than the last", "Caution"):
+        assert words in ran.out
+    found = json_of(run("board", path, "--front", "reels", "--json"))
+    assert (found["count"], found["goal"], found["complete"]) == ("reels", "power", True)
+    assert found["points"][0]["most"] == found["points"][0]["reels"] == 3
+    values = [point["goal"]["value"] for point in found["points"]]
+    assert values == sorted(values, reverse=True)
+    assert len(values) >= 2
+    assert set(found["points"][0]["designs"]) == {"first", "second"}
+    alone = json_of(run("board", board("reels = 3"), "--json"))
+    assert alone["power"] == pytest.approx(values[0])
+
+
+def test_no_front_of_the_goal_or_with_a_bill(board, tmp_path):
+    ran = run("board", board(goal="reels"), "--front", "reels")
+    assert (ran.code, ran.out) == (2, "")
+    assert "expected one of couplers, packages" in ran.err
+    ran = run("board", board(), "--front", "reels", "--csv", tmp_path / "parts.csv")
+    assert ran.code == 2
+    assert "--csv: found --front beside it" in ran.err
+
+
+def test_no_front_where_no_board_exists(board):
+    path = board("power = 1e-3")
+    ran = run("board", path, "--front", "couplers")
+    assert ran.code == 3
+    assert "No board holds the other limits, whatever the couplers" in ran.out
+    assert json_of(run("board", path, "--front", "couplers", "--json"))["points"] == []
+    path = board(second=(('power = "40 mW"', 'power = "1 mW"'),))
+    assert "second has no design even alone" in run("board", path, "--front", "reels").out
 
 
 def test_a_link_without_any_design(board):
@@ -119,6 +180,9 @@ def test_a_link_without_any_design(board):
 
 def test_out_of_time(board):
     ran = run("board", board(), "--time-limit", "0")
+    assert ran.code == 4
+    assert "Out of time" in ran.out
+    ran = run("board", board(), "--time-limit", "0", "--front", "reels")
     assert ran.code == 4
     assert "Out of time" in ran.out
 

@@ -95,6 +95,7 @@ def progress() -> Callable[[str, int, int], None]:
         if quiet or now - started < 2 or now - shown[0] < 0.5:
             return
         shown[0] = now
-        click.echo(f"optopick: {stage}: {done} of {total}, {now - started:.0f} s", err=True)
+        count = f": {done} of {total}" if total else ""
+        click.echo(f"optopick: {stage}{count}, {now - started:.0f} s", err=True)
 
     return report

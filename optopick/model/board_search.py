@@ -35,6 +35,9 @@ KEPT = 1e-7
 
 Told = Callable[[str, int, int], None]
 
+Seen = Callable[[BoardGoalName, float, float], None]
+"""Told as a search goes: the goal, the best so far, infinite without any, and the bound below which there is none."""
+
 
 @dataclass(frozen=True)
 class Place:
@@ -89,12 +92,13 @@ class Size:
 class BoardSearch:
     """Searches over the same links for one goal after the other; what one finds out the next uses."""
 
-    def __init__(self, places: Sequence[Place], clock: Clock, told: Told) -> None:
+    def __init__(self, places: Sequence[Place], clock: Clock, told: Told, seen: Seen | None = None) -> None:
         self.places, self.clock, self.told = places, clock, told
+        self.seen: Seen = seen or (lambda goal, value, bound: None)
         self.counts = [place.counts for place in places]
         self.floor = sum(place.count * place.least for place in places)
         self.size = Size()
-        self.kept: tuple[Caps, list[Seat]] = (Caps(power=0.0, edge=0.0), [])
+        self.kept: list[tuple[Caps, list[Seat]]] = []
 
     def least(self, goal: BoardGoalName, caps: Caps, start: Sequence[Taken] | None = None) -> BoardFound:
         """The least `goal` under `caps`; start: a board that keeps them."""
@@ -127,7 +131,7 @@ class BoardSearch:
             return replace(best, bound=best.value)
         if not seats:
             return best
-        self.kept = (replace(caps, power=power), seats)
+        self._keep(replace(caps, power=power), seats)
         return self._rounds(
             seats, goal, caps, best, LOOSE if goal in (BoardGoalName.POWER, BoardGoalName.COST) else 0.0
         )
@@ -139,13 +143,10 @@ class BoardSearch:
         """
         try_at = best.bound * (1 + STEP)
         while not self.clock.out and not best.proved:
-            before = self.kept
             found = self.any(caps.limited(BoardGoalName.EDGE, try_at))
             if found.taken is not None:
                 best = replace(best, taken=found.taken, value=self.value(found.taken, BoardGoalName.EDGE))
             elif np.isposinf(found.bound):
-                # what is left for these edges is too little for longer ones
-                self.kept = before
                 if try_at >= 1.0:
                     return replace(best, bound=best.value)
                 best = replace(best, bound=min(try_at, best.value))
@@ -184,8 +185,7 @@ class BoardSearch:
         Empty where time ran out first.
         """
         found: list[Seat] = []
-        # seats narrowed for more power and longer edges hold all that less leaves
-        before = self.kept[1] if power <= self.kept[0].power and caps.edge <= self.kept[0].edge else []
+        before = next((seats for at, seats in self.kept if _covers(at, power, caps.edge)), [])
         for link, place in enumerate(self.places):
             if self.clock.out:
                 return []
@@ -200,6 +200,11 @@ class BoardSearch:
                 return None
             found += kept
         return found
+
+    def _keep(self, caps: Caps, seats: list[Seat]) -> None:
+        """Keep seats for who asks for less: these, and the widest there were."""
+        wider = [kept for kept in self.kept if not _covers(caps, kept[0].power, kept[0].edge)]
+        self.kept = [(caps, seats), *wider[-1:]]
 
     def _seat(self, link: int, k: int, asked: Ask) -> Seat | None:
         """The seat of a link's coupler number k."""
@@ -272,7 +277,8 @@ class BoardSearch:
             built = BoardProgram(seats, self.counts, caps, goal, scale)
             program = built.program()
             self.size.columns, self.size.rows = built.size, len(program.low)
-            solution = solve_program(program, self.clock.left, gap=gap, nodes=nodes)
+            seen = self._solving(goal, best, scale)
+            solution = solve_program(program, self.clock.left, gap=gap, nodes=nodes, seen=seen)
             self.clock.solves += 1
             best = replace(best, bound=max(best.bound, self._bound(solution, goal, scale)))
             if solution.answer is Answer.NONE:
@@ -290,11 +296,21 @@ class BoardSearch:
                 seats = self._cut(seats, refused)
                 continue
             best = self._better(best, taken, goal, caps)
+            self._solving(goal, best, scale)(np.inf, -np.inf)
             if nodes is not None or best.proved or (solution.proved and gap <= STEP):
                 return replace(best, bound=min(best.bound, best.value))
             if solution.proved:
                 gap = STEP
         return best
+
+    def _solving(self, goal: BoardGoalName | None, best: BoardFound, scale: float) -> Callable[[float, float], None]:
+        """What the solver tells, in the goal's unit and beside what is known already."""
+
+        def seen(costs: float, bound: float) -> None:
+            if goal is not None:
+                self.seen(goal, min(best.value, costs * scale), max(best.bound, bound * scale))
+
+        return seen
 
     def _scale(self, goal: BoardGoalName | None, seats: Sequence[Seat]) -> float:
         """About what a goal comes to, by which the solver's costs are divided."""
@@ -330,6 +346,11 @@ def _sharp(seats: Sequence[Seat | None]) -> list[Seat]:
     """The seats that have a design, small ones sharpened."""
     found = (sharpened(seat) for seat in seats if seat is not None)
     return [seat for seat in found if seat is not None]
+
+
+def _covers(kept: Caps, power: float, edge: float) -> bool:
+    """Whether seats narrowed for some limits hold all that these leave."""
+    return power <= kept.power and edge <= kept.edge
 
 
 def _stage(goal: BoardGoalName | None) -> str:

@@ -5,6 +5,7 @@ from __future__ import annotations
 import io
 import sys
 import time
+from collections.abc import Callable
 from dataclasses import dataclass
 from enum import StrEnum
 from functools import cache
@@ -178,7 +179,13 @@ class Solution:
     proved: bool
 
 
-def solve_program(program: Program, seconds: float = np.inf, *, gap: float = 0.0, nodes: int | None = None) -> Solution:
+Seen = Callable[[float, float], None]
+"""Told now and then of the costs of the best choice so far, infinite without one, and their lower bound."""
+
+
+def solve_program(
+    program: Program, seconds: float = np.inf, *, gap: float = 0.0, nodes: int | None = None, seen: Seen | None = None
+) -> Solution:
     """Least costs, with one thread and a fixed seed.
 
     Ends within `gap` [1] of the bound, after `seconds`, or after so many nodes. Goes to HiGHS without Pyomo, which
@@ -202,6 +209,9 @@ def solve_program(program: Program, seconds: float = np.inf, *, gap: float = 0.0
     for name, value in options.items():
         solver.setOptionValue(name, value)
     solver.passModel(_as_highs(program))
+    if seen is not None:
+        # of HiGHS's callbacks the one that comes often enough; nothing is interrupted
+        solver.cbMipInterrupt.subscribe(lambda e: seen(e.data_out.mip_primal_bound, e.data_out.mip_dual_bound))
     solver.run()
     return _solution(solver, program)
 

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import csv
 import io
+from collections.abc import Sequence
 from dataclasses import asdict, dataclass, field
 
 from rich.console import Group, RenderableType
@@ -11,7 +12,7 @@ from rich.table import Table
 from rich.text import Text
 
 from optopick.board import BoardGoalName, BoardLimits, reel_of
-from optopick.board_answers import BoardProof, BoardResult, LinkChoice, Packages
+from optopick.board_answers import BoardProof, BoardResult, LinkChoice, Needed, Packages
 from optopick.report.as_json import objective_object, review_object
 from optopick.report.placed import Placed, placed_resistors
 from optopick.report.text_uses import values_text
@@ -38,7 +39,7 @@ def _verdict(result: BoardResult) -> str:
         have = "has" if len(result.hopeless) == 1 else "have"
         return f"No board exists: {names} {have} no design even alone; optopick why gives the reasons for a brief."
     if result.status is Status.INFEASIBLE:
-        return "No board holds every limit, though every link has designs alone."
+        return f"No board holds every limit, though every link has designs alone.{_conflict_words(result.conflict)}"
     if result.status is Status.UNKNOWN:
         return "Out of time: no board found, and none ruled out."
     if result.status is Status.OPTIMAL:
@@ -46,6 +47,28 @@ def _verdict(result: BoardResult) -> str:
     said = _capital("; then ".join(f"{goal.name}: {_goal_amount(goal, goal.value)}" for goal in result.goals))
     bounds = " and ".join(f"no board has {goal.name} below {_goal_amount(goal, goal.bound)}" for goal in result.goals)
     return f"{said} (best found in the time given; {bounds})"
+
+
+def _conflict_words(conflict: Sequence[Needed]) -> str:
+    """Which limits contradict each other, and what each of them would have to be."""
+    if not conflict:
+        return ""
+    stated = [f"{_limit_name(one)} {goal_words(one.name, one.limit)}" for one in conflict]
+    last = stated[-1] if len(stated) == 1 else f"{', '.join(stated[:-1])} and {stated[-1]}"
+    said = f" {_capital(last)} cannot be kept{' together' if len(stated) > 1 else ''}."
+    return said + "".join(f" {_needed_words(one)}" for one in conflict)
+
+
+def _needed_words(one: Needed) -> str:
+    if one.least is None:
+        none = f"No {_limit_name(one)} helps" if one.proved else f"What {_limit_name(one)} would do is not known"
+        return f"{none} with all other limits as they are."
+    least = "at least" if one.proved else "at most as found so far"
+    return f"{_capital(_limit_name(one))} would have to be {least} {goal_words(one.name, one.least)}."
+
+
+def _limit_name(one: Needed) -> str:
+    return "price" if one.name == BoardGoalName.COST else one.name
 
 
 def _capital(text: str) -> str:
@@ -163,6 +186,7 @@ def board_object(result: BoardResult, title: str, limits: BoardLimits) -> dict[s
         "power": result.power if result.links else None,
         "power_alone": result.alone if result.links else None,
         "hopeless": list(result.hopeless),
+        "conflict": [asdict(one) | {"name": _limit_name(one)} for one in result.conflict],
         "proof": asdict(result.proof),
         "cautions": list(result.cautions),
     }

@@ -3,51 +3,19 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
 from pathlib import Path
 
 import numpy as np
 
-from optopick.board import Board, BoardGoalName, reel_of
-from optopick.board_answers import BoardProof, BoardResult, LinkChoice
-from optopick.brief import GoalName
-from optopick.cautions import cautions
+from optopick.board import Board
+from optopick.board_answers import BoardResult
 from optopick.coupler import Coupler
-from optopick.errors import DisagreementError
-from optopick.model.board import WHOLE, Caps
-from optopick.model.board_search import BoardFound, BoardSearch, Place
-from optopick.model.board_seats import Taken
-from optopick.model.search import STEP
-from optopick.model.solver import Clock, highs_name
+from optopick.model.solver import Clock
 from optopick.read_board import read_board
-from optopick.result import Objective, Status
-from optopick.uses.board_groups import Group, groups_of
-from optopick.uses.board_totals import packages_placed, price_of, resistances, totals_of, worst_edge
-from optopick.uses.engine import Best, Progress, ask_of, over_all, quiet, rechecked
-
-UNITS = {BoardGoalName.POWER: "W"}
-"""All others are plain numbers."""
-
-
-@dataclass(frozen=True)
-class _Stages:
-    """The goals in turn, each with what was found for it: those asked for, then power where it decides between equals.
-
-    The last one ends where there is no board, or none is known.
-    """
-
-    goals: tuple[BoardGoalName, ...]
-    found: tuple[BoardFound, ...]
-
-    @property
-    def last(self) -> BoardFound:
-        """What was found last: the board to give."""
-        return self.found[-1]
-
-    @property
-    def proved(self) -> bool:
-        """Whether every goal is proved least."""
-        return len(self.found) == len(self.goals) and all(one.proved for one in self.found)
+from optopick.result import Status
+from optopick.uses.board_conflict import conflict
+from optopick.uses.board_work import BoardWork
+from optopick.uses.engine import Progress, quiet
 
 
 def solve_board(
@@ -65,153 +33,9 @@ def solve_board(
     """
     if not isinstance(board, Board):
         board = read_board(Path(board))
-    clock = Clock(time_limit)
-    groups = groups_of(board, couplers)
-    alone = _alone(groups, clock, progress)
-    search = BoardSearch(_places(board, groups, alone, clock), clock, progress)
-    if all(best.choice is not None for best in alone):
-        stages = _staged(board, search)
-    else:
-        # a link that has no design, or none that is known, even alone
-        hopeless = any(best.choice is None and np.isinf(best.bound) for best in alone)
-        stages = _Stages((board.goal.minimize,), (BoardFound(None, np.inf, np.inf if hopeless else 0.0),))
-    return _result(board, groups, alone, stages, search)
-
-
-def _alone(groups: Sequence[Group], clock: Clock, progress: Progress) -> list[Best]:
-    """The least power of each link by itself."""
-    found = []
-    for done, group in enumerate(groups):
-        progress("links alone", done, len(groups))
-        found.append(over_all(group.entries, GoalName.POWER, ask_of(group.brief), clock))
-    return found
-
-
-def _places(board: Board, groups: Sequence[Group], alone: Sequence[Best], clock: Clock) -> list[Place]:
-    return [
-        Place(
-            couplers=tuple((entry.coupler, entry.model) for entry in group.entries),
-            ask=ask_of(group.brief),
-            counts=group.counts,
-            least=best.bound if np.isfinite(best.bound) else 0.0,
-            quickest=_quickest(group, clock) if BoardGoalName.EDGE in board.goals else 0.0,
-            prices=group.prices,
-        )
-        for group, best in zip(groups, alone, strict=True)
-    ]
-
-
-def _quickest(group: Group, clock: Clock) -> float:
-    """A bound on the shortest edge of a link that has a limit on it [s], guard taken out."""
-    ask = ask_of(group.brief)
-    if np.isinf(ask.edge):
-        return 0.0
-    best = over_all(group.entries, GoalName.EDGE_TIME, ask, clock)
-    return best.bound if np.isfinite(best.bound) else 0.0
-
-
-def caps_of(board: Board) -> Caps:
-    """The board's limits."""
-    caps = Caps()
-    for goal in BoardGoalName:
-        limit = board.limits.of(goal)
-        caps = caps if limit is None else caps.limited(goal, float(limit))
-    return caps
-
-
-def _staged(board: Board, search: BoardSearch) -> _Stages:
-    goals = [*board.goals]
-    if board.goal.then is not BoardGoalName.POWER:
-        # of boards that are equal in both goals the one that takes least power
-        goals.append(BoardGoalName.POWER)
-    caps = caps_of(board)
-    found: list[BoardFound] = []
-    for one, give in zip(goals, (board.goal.give, 0.0, 0.0), strict=False):
-        found.append(search.least(one, caps, start=found[-1].taken if found else None))
-        if found[-1].taken is None:
-            break
-        relaxed = found[-1].value * (1 + give) * (1 + STEP)
-        caps = caps.limited(one, float(np.floor(relaxed)) if one in WHOLE else relaxed)
-    return _Stages(tuple(goals), tuple(found))
-
-
-def _result(
-    board: Board, groups: Sequence[Group], alone: Sequence[Best], stages: _Stages, search: BoardSearch
-) -> BoardResult:
-    found = stages.last
-    hopeless = [
-        link.name
-        for group, best in zip(groups, alone, strict=True)
-        if best.choice is None and np.isinf(best.bound)
-        for link in group.links
-    ]
-    links = _choices(board, groups, alone, found.taken) if found.taken else ()
-    designs = [one.review.design for one in links]
-    parts = {entry.coupler.part: entry.coupler for group in groups for entry in group.entries}
-    packages = packages_placed(links, parts)
-    result = BoardResult(
-        status=_status(stages),
-        goals=_objectives(search, stages) if found.taken else (),
-        links=links,
-        reels=tuple(sorted({reel_of(ohms) for design in designs for ohms in resistances(design)})),
-        couplers=tuple(sorted({design.coupler for design in designs})),
-        packages=packages,
-        price=price_of(links, packages, parts),
-        edge=worst_edge(links),
-        unpriced=tuple(dict.fromkeys(name for group in groups for name in group.unpriced)),
-        hopeless=tuple(hopeless),
-        proof=_proof(search),
-        cautions=tuple(dict.fromkeys(text for group in groups for text in cautions(group.brief))),
-    )
-    _recount(board, result)
-    return result
-
-
-def _status(stages: _Stages) -> Status:
-    if stages.found[0].taken is None:
-        return Status.INFEASIBLE if np.isinf(stages.found[0].bound) else Status.UNKNOWN
-    return Status.OPTIMAL if stages.proved else Status.FEASIBLE
-
-
-def _choices(
-    board: Board, groups: Sequence[Group], alone: Sequence[Best], taken: Sequence[Taken]
-) -> tuple[LinkChoice, ...]:
-    """The links in the board's order, each with its design checked again alone."""
-    found = {}
-    for group, best, one in zip(groups, alone, taken, strict=True):
-        entry = next(entry for entry in group.entries if entry.coupler is one.seat.coupler)
-        try:
-            reviewed = rechecked(group.brief, entry, one.seat.box.whole(one.choice))
-        except DisagreementError as error:
-            raise DisagreementError(f"link {group.links[0].name}: {error}") from error
-        found.update({link.name: LinkChoice(link, reviewed, best.value) for link in group.links})
-    return tuple(found[link.name] for link in board.links)
-
-
-def _recount(board: Board, result: BoardResult) -> None:
-    """Hold the board's limits and goals against what the designs themselves say."""
-    if not result.links:
-        return
-    counted = totals_of(result)
-    for goal in BoardGoalName:
-        limit, value = board.limits.of(goal), counted[goal]
-        if limit is not None and (value is None or value > limit * (1 + STEP)):
-            raise DisagreementError(f"board: {value} {goal.value} in the designs, limit {limit:g}")
-    for told in result.goals:
-        value = counted[BoardGoalName(told.name)]
-        if value is None or not np.isclose(told.value, value, rtol=STEP, atol=1e-12):
-            raise DisagreementError(f"board: {told.name} is {told.value:g} in the model, {value} again")
-
-
-def _objectives(search: BoardSearch, stages: _Stages) -> tuple[Objective, ...]:
-    """Both goals at the board given, with their bounds."""
-    taken = stages.last.taken or ()
-    return tuple(
-        Objective(goal.value, search.value(taken, goal), one.bound, UNITS.get(goal, "1"))
-        for goal, one in list(zip(stages.goals, stages.found, strict=False))[:2]
-    )
-
-
-def _proof(search: BoardSearch) -> BoardProof:
-    size, clock = search.size, search.clock
-    return BoardProof(size.columns, size.rows, size.cuts, clock.solves, clock.spent, highs_name())
+    work = BoardWork(board, couplers, Clock(time_limit), progress)
+    stages = work.stages()
+    result = work.result(board, stages)
+    if result.status is not Status.INFEASIBLE or not work.known:
+        return result
+    return work.result(board, stages, conflict(work))
