@@ -66,7 +66,7 @@ class Ranked:
     @property
     def tightest(self) -> Check:
         """The check with the least room."""
-        return min(self.review.checks, key=lambda check: check.margin)
+        return min(self.review.designed, key=lambda check: check.margin)
 
 
 @dataclass(frozen=True)

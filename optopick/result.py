@@ -36,6 +36,10 @@ class Design:
     reverse_diode: bool = False
 
 
+OF_THE_PART = frozenset({"withstand", "working_voltage", "creepage"})
+"""Checks that the coupler alone decides."""
+
+
 @dataclass(frozen=True)
 class Check:
     """One requirement at its worst corner; `sense` is "<=" or ">="."""
@@ -92,6 +96,11 @@ class Review:
     def passed(self) -> bool:
         """Whether every check holds."""
         return all(check.passed for check in self.checks)
+
+    @property
+    def designed(self) -> tuple[Check, ...]:
+        """The checks that the resistors have a say in, and whatever fails."""
+        return tuple(check for check in self.checks if check.name not in OF_THE_PART or not check.passed)
 
     @property
     def failing(self) -> tuple[Check, ...]:

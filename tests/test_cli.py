@@ -105,6 +105,23 @@ class TestWrongInput:
         assert "--r-led" in ran.err
         assert "--r-load" in ran.err
 
+    def test_all_that_a_check_lacks(self):
+        ran = run("check", TINY)
+        assert ran.code == 2
+        assert [line.split(": ")[1] for line in ran.err.splitlines()] == ["--coupler", "--r-led", "--r-load"]
+
+    @pytest.mark.parametrize("ohms", ["1e-9", "0.05", "0", "2G"])
+    def test_a_resistance_that_no_resistor_has(self, ohms):
+        ran = run("check", TINY, "--coupler", "TINYPHOTO", "--r-led", ohms, "--r-load", "1k")
+        assert ran.code == 2
+        assert "from 0.1 Ω to 1 GΩ" in ran.err
+
+
+def test_what_lies_beyond_the_curve_is_said():
+    found = json_of(run("check", TINY, "--coupler", "TINYPHOTO", "--r-led", "10", "--r-load", "1k", "--json"))
+    told = {check["name"]: check["corner"] for check in found["checks"] if check["value"] is None}
+    assert told["output_low"] == told["ctr_margin"] == "beyond the end of the CTR curve"
+
 
 def test_every_option_is_tried():
     """Each command and each of its options stands in some test, in quotes."""

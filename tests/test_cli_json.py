@@ -82,7 +82,11 @@ class TestJson:
         assert len(goals) >= 2
         for one in found["ranked"]:
             assert set(one) >= {"status", "objective", "second", "tightest", "price", *REVIEW}
-            assert one["tightest"]["margin"] == min(check["margin"] for check in one["checks"])
+            # a rating of the part that just suffices is no tight design
+            designed = [
+                check for check in one["checks"] if check["name"] not in ("withstand", "working_voltage", "creepage")
+            ]
+            assert one["tightest"]["margin"] == min(check["margin"] for check in designed)
 
     def test_tradeoff(self):
         found = json_of(run("tradeoff", TINY, "--json"))

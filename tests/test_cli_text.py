@@ -70,7 +70,7 @@ class TestAtTerminal:
         assert max(len(line) for line in shown.splitlines()) <= columns
         for check in found["checks"]:
             value, limit = (amount(check[name], check["unit"]) for name in ("value", "limit"))
-            pattern = rf"{re.escape(value)}\s+[≤≥] {re.escape(limit)}\s+[-\d.]+ %"
+            pattern = rf"{re.escape(value)}\s+[≤≥] {re.escape(limit)}\s+(> 1000|[-\d.]+) %"
             assert re.search(pattern, shown), (check["name"], value, limit)
         for name, seconds in found["timing"].items():
             assert amount(seconds, "s") in shown, name

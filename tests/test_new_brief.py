@@ -197,7 +197,7 @@ class TestOptions:
         ("--life", "7 years"),
         ("--delay", "25 us"),
         ("--withstand", "5 kV"),
-        ("--minimize", "power"),
+        ("--minimize", "delay"),
     )
 
     def test_each_gives_its_key(self, tmp_path):
@@ -334,7 +334,7 @@ class TestRefused:
     def test_a_folder_that_is_not_there(self, tmp_path):
         ran = run("new", tmp_path / "none" / "link.toml", "--kind", "serial")
         assert ran.code == 2
-        assert "found no such file or directory; expected a path that can be written" in ran.err
+        assert "whose folder does not exist; expected a file in a folder that does" in ran.err
 
     def test_nothing_half_written_stays(self, tmp_path, monkeypatch):
         def full(*_: object) -> None:

@@ -22,7 +22,7 @@ from optopick.report.words import (
     tightest,
     verdict,
 )
-from optopick.result import NOT_CHOSEN, Check, Proof, Rejected, Status
+from optopick.result import NOT_CHOSEN, Check, Objective, Proof, Rejected, Status
 
 
 @pytest.mark.parametrize(
@@ -54,6 +54,9 @@ def test_room(value, sense, words):
         (-1e-10, 0, "0 %"),
         (0.0834, 0, "8 %"),
         (2.5, 1, "250.0 %"),
+        (9.99, None, "999 %"),
+        (10.0, None, "> 1000 %"),
+        (-1e12, 0, "< −1000 %"),
         (math.inf, None, "∞ %"),
         (-math.inf, 1, "–"),
         (math.nan, None, "–"),
@@ -71,6 +74,21 @@ def test_binding():
         for name, value in (("a", 0.5), ("b", 0.95), ("c", 0.99), ("d", 1.2), ("e", math.nan), ("f", 1 + 1e-10))
     )
     assert [check.name for check in binding(replace(samples.reviewed(), checks=checks))] == ["f", "c", "b"]
+
+
+def test_a_rating_of_the_part_does_not_count_as_tight():
+    """The design has no say in it; where it fails it is told like any other."""
+    rating = Check("withstand", 3750.0, 3750.0, ">=", "V", "")
+    review = replace(samples.reviewed(), checks=(rating, Check("delay", 0.95, 1.0, "<=", "s", "")))
+    assert [check.name for check in binding(review)] == ["delay"]
+    assert tightest(review).name == "delay"
+    assert tightest(replace(review, checks=(replace(rating, limit=5000.0), *review.checks[1:]))).name == "withstand"
+
+
+def test_a_bound_that_is_none_is_not_told():
+    told = verdict(Status.FEASIBLE, (Objective("delay", 1e-6, 0.0, "s"), Objective("power", 2e-3, 1e-3, "W")), None)
+    assert told.endswith("(best found in the time given; no design has power below 1 mW)")
+    assert verdict(Status.FEASIBLE, (Objective("delay", 1e-6, 0.0, "s"),), None).endswith("no bound shown in it)")
 
 
 def test_ohms():

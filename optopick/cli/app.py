@@ -6,6 +6,7 @@ import sys
 import time
 from collections.abc import Callable
 from pathlib import Path
+from shutil import get_terminal_size
 from typing import TYPE_CHECKING, Any
 
 import click
@@ -21,6 +22,12 @@ OK, FAILS, WRONG_INPUT, NO_DESIGN, OUT_OF_TIME = range(5)
 DISAGREES, WORK_LOST = 70, 71
 PIPED_WIDTH = 100
 
+WIPED = "\r\x1b[2K"
+"""Back to the start of an empty line, on a terminal (ECMA-48)."""
+
+_open: list[str] = []
+"""The progress line that stands on the terminal, if any."""
+
 
 class Messages(click.Group):
     """A group whose commands turn the program's errors into messages and exit codes."""
@@ -31,14 +38,16 @@ class Messages(click.Group):
             return super().invoke(ctx)
         except InputError as error:
             for mistake in error.mistakes:
-                click.echo(f"optopick: {mistake}", err=True)
+                echo(f"optopick: {mistake}", err=True)
             sys.exit(WRONG_INPUT)
         except DisagreementError as error:
-            click.echo(f"optopick: internal disagreement, no result given: {error}", err=True)
+            echo(f"optopick: internal disagreement, no result given: {error}", err=True)
             sys.exit(DISAGREES)
         except WorkLostError as error:
-            click.echo(f"optopick: work lost, no result given: {error}", err=True)
+            echo(f"optopick: work lost, no result given: {error}", err=True)
             sys.exit(WORK_LOST)
+        finally:
+            _wipe()
 
 
 @click.group(cls=Messages, context_settings={"help_option_names": ["-h", "--help"], "max_content_width": 100})
@@ -65,10 +74,17 @@ time_option = click.option(
 )
 
 
+def echo(text: str, *, err: bool = False, nl: bool = True) -> None:
+    """Print plain text, where a progress line stood if one does."""
+    _wipe()
+    click.echo(text, err=err, nl=nl)
+
+
 def show(text: RenderableType) -> None:
     """Print for people: colours on a terminal only, plain and 100 wide when piped."""
     from rich.console import Console  # noqa: PLC0415 - not for --help
 
+    _wipe()
     width = None if sys.stdout.isatty() else PIPED_WIDTH
     Console(highlight=False, width=width).print(text)
 
@@ -77,7 +93,7 @@ def show_json(value: object) -> None:
     """Print one JSON object."""
     from optopick.report.as_json import dumps  # noqa: PLC0415
 
-    click.echo(dumps(value))
+    echo(dumps(value))
 
 
 def exit_code(status: Status) -> int:
@@ -86,16 +102,31 @@ def exit_code(status: Status) -> int:
 
 
 def progress() -> Callable[[str, int, int], None]:
-    """A progress line on standard error once the work has taken two seconds; none with --quiet."""
+    """A progress line on standard error once the work has taken two seconds; none with --quiet.
+
+    At a terminal one line, written over each time; elsewhere lines ever farther apart.
+    """
     started, shown = time.monotonic(), [0.0]
-    quiet = bool(click.get_current_context().obj)
+    quiet, here = bool(click.get_current_context().obj), sys.stderr.isatty()
 
     def report(stage: str, done: int, total: int) -> None:
         now = time.monotonic()
-        if quiet or now - started < 2 or now - shown[0] < 0.5:
+        pause = 0.3 if here else 0.5 * (shown[0] - started)
+        if quiet or now - started < 2 or now - shown[0] < pause:
             return
         shown[0] = now
         count = f": {done} of {total}" if total else ""
-        click.echo(f"optopick: {stage}{count}, {now - started:.0f} s", err=True)
+        told = f"optopick: {stage}{count}, {now - started:.0f} s"
+        if here:
+            told = f"{WIPED}{told[: get_terminal_size().columns - 1]}"
+            _open.append(told)
+        click.echo(told, err=True, nl=not here)
 
     return report
+
+
+def _wipe() -> None:
+    """Take the progress line away, if one stands."""
+    if _open:
+        _open.clear()
+        click.echo(WIPED, err=True, nl=False)

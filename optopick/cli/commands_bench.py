@@ -9,7 +9,7 @@ from typing import Any
 
 import click
 
-from optopick.cli.app import FAILS, NO_DESIGN, OK, brief_argument, json_option, main, progress, show, show_json
+from optopick.cli.app import FAILS, NO_DESIGN, OK, brief_argument, echo, json_option, main, progress, show, show_json
 from optopick.cli.hands import hands, workers_options
 
 # Imports stand inside the commands: --help and input errors must not wait for the numerical libraries.
@@ -60,7 +60,7 @@ def sweep(
     texts = {"r_led": r_led, "r_load": r_load, "r_be": r_be, "r_shunt": r_shunt}
     found = chosen_design(read, coupler, texts, progress())
     if found is None:
-        click.echo("optopick: no design to sweep: see optopick why", err=True)
+        echo("optopick: no design to sweep: see optopick why", err=True)
         sys.exit(NO_DESIGN)
     from optopick.uses.sweep import sweep as run
 
@@ -77,7 +77,7 @@ def sweep(
     elif as_csv:
         from optopick.report.frames import sweep_frame
 
-        click.echo(sweep_frame(swept).to_csv(index=False), nl=False)
+        echo(sweep_frame(swept).to_csv(index=False), nl=False)
     else:
         from optopick.report.text_uses import sweep_text
 
@@ -119,7 +119,7 @@ def yield_(
     texts = {"r_led": r_led, "r_load": r_load, "r_be": r_be, "r_shunt": r_shunt}
     found = chosen_design(read, coupler, texts, progress())
     if found is None:
-        click.echo("optopick: no design to sample: see optopick why", err=True)
+        echo("optopick: no design to sample: see optopick why", err=True)
         sys.exit(NO_DESIGN)
     from optopick.uses.samples import sample
 

@@ -90,24 +90,24 @@ def _pick_simulated(read: Brief, as_json: bool, time_limit: float) -> NoReturn:
     sys.exit(exit_code(result.status))
 
 
-def _resistor(name: str, required: bool, text: str) -> Callable[[Any], Any]:
-    return click.option(f"--{name}", required=required, metavar="OHMS", help=text)
+def _resistor(name: str, text: str) -> Callable[[Any], Any]:
+    return click.option(f"--{name}", metavar="OHMS", help=text)
 
 
 @main.command()
 @brief_argument
-@click.option("--coupler", required=True, metavar="PART", help="Part as the coupler table names it.")
-@_resistor("r-led", True, "LED series resistor, such as 330 or 2k2; 2x2k2 for two in series.")
-@_resistor("r-load", True, "Load resistor.")
-@_resistor("r-be", False, "Base-emitter resistor; leave out where there is none.")
-@_resistor("r-shunt", False, "Resistor across the LED; leave out where there is none.")
+@click.option("--coupler", metavar="PART", help="Part as the coupler table names it; needed.")
+@_resistor("r-led", "LED series resistor, such as 330 or 2k2; 2x2k2 for two in series; needed.")
+@_resistor("r-load", "Load resistor; needed.")
+@_resistor("r-be", "Base-emitter resistor; leave out where there is none.")
+@_resistor("r-shunt", "Resistor across the LED; leave out where there is none.")
 @click.option("--budget", is_flag=True, help="Also how much of each margin every uncertain quantity eats.")
 @json_option
 def check(
     brief: Path,
-    coupler: str,
-    r_led: str,
-    r_load: str,
+    coupler: str | None,
+    r_led: str | None,
+    r_load: str | None,
     r_be: str | None,
     r_shunt: str | None,
     budget: bool,
@@ -133,7 +133,7 @@ def check(
         near = nearest(read, design, read_couplers(read.couplers.table).couplers)
     from optopick.uses.budget import budget as budget_of
 
-    shares = budget_of(read, coupler_named(read, coupler), design) if budget else ()
+    shares = budget_of(read, coupler_named(read, design.coupler), design) if budget else ()
     if as_json:
         from optopick.report.as_json import checked_object
 

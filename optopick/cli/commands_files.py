@@ -8,7 +8,7 @@ from pathlib import Path
 
 import click
 
-from optopick.cli.app import NO_DESIGN, brief_argument, exit_code, main, progress
+from optopick.cli.app import NO_DESIGN, brief_argument, echo, exit_code, main, progress
 
 # Imports stand inside the commands: --help and input errors must not wait for the numerical libraries.
 # ruff: noqa: PLC0415
@@ -34,7 +34,7 @@ def report(brief: Path, output: Path, force: bool, date: str | None) -> None:
 
     result, files = review_files(read, date or datetime.now(UTC).date().isoformat(), progress())
     write_folder(output, files, force)
-    click.echo(f"{output}: {', '.join(sorted(files))}")
+    echo(f"{output}: {', '.join(sorted(files))}")
     sys.exit(exit_code(result.status))
 
 
@@ -67,6 +67,6 @@ def netlist(
     texts = {"r_led": r_led, "r_load": r_load, "r_be": r_be, "r_shunt": r_shunt}
     found = chosen_design(read, coupler, texts, progress())
     if found is None:
-        click.echo("optopick: no design to write: see optopick why", err=True)
+        echo("optopick: no design to write: see optopick why", err=True)
         sys.exit(NO_DESIGN)
-    click.echo(netlist_at(read, *found, at), nl=False)
+    echo(netlist_at(read, *found, at), nl=False)

@@ -13,6 +13,7 @@ from optopick.cli.app import (
     OK,
     OUT_OF_TIME,
     brief_argument,
+    echo,
     json_option,
     main,
     progress,
@@ -83,7 +84,7 @@ def rank(
     elif as_csv:
         from optopick.report.frames import ranking_frame
 
-        click.echo(ranking_frame(ranking).head(top or len(ranking.ranked)).to_csv(index=False), nl=False)
+        echo(ranking_frame(ranking).head(top or len(ranking.ranked)).to_csv(index=False), nl=False)
     else:
         from optopick.report.text_uses import ranking_text
 
@@ -122,7 +123,7 @@ def _rank_streamed(
     elif as_csv:
         from optopick.report.frames import ranking_frame
 
-        click.echo(ranking_frame(found.ranking).to_csv(index=False), nl=False)
+        echo(ranking_frame(found.ranking).to_csv(index=False), nl=False)
     else:
         from optopick.report.streamed import streamed_text
 
@@ -183,7 +184,7 @@ def tradeoff(
     elif as_csv:
         from optopick.report.frames import front_frame
 
-        click.echo(front_frame(front).to_csv(index=False), nl=False)
+        echo(front_frame(front).to_csv(index=False), nl=False)
     else:
         from optopick.report.text_uses import front_text
 

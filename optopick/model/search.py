@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
@@ -16,6 +16,9 @@ from optopick.model.solver import Answer, Clock, Outcome, Problem, solve
 
 STEP = 1e-6
 """A design counts as better only if it is so by this share; the proof's resolution."""
+
+HALVINGS = 20
+"""Of the bisection for the bound that a search out of time shows."""
 
 NEVER = 1e6
 """Seconds that no time that is a goal may reach: an output that never gets there is no answer."""
@@ -51,9 +54,26 @@ def best(
     """The least `goal` of one coupler within `ask`, if it is better than `below`; combinations `without` left out.
 
     Each round asks for a design better than the best so far. A round ends the search when ranges or the solver show
-    that there is none: that is the proof. Where time runs out, `bound` is the best that is shown so far.
+    that there is none: that is the proof. Where time runs out, `bound` is what ranges show.
     """
-    return Search(model, goal, ask, clock, without).run(below)
+    search = Search(model, goal, ask, clock, without)
+    found = search.run(below)
+    return replace(found, bound=shown([search], found.value, clock)) if search.unfinished else found
+
+
+def shown(unfinished: Sequence[Search], value: float, clock: Clock) -> float:
+    """The goal below which ranges alone exclude every design of searches that ran out of time, by bisection.
+
+    It takes no longer than the clock's grace; 0 where that is too short, or where there is no `value` to begin at.
+    """
+    low, high = 0.0, value if np.isfinite(value) else 0.0
+    for _ in range(HALVINGS if high else 0):
+        middle = (low + high) / 2
+        gone = all(not clock.grace_over and search.gone(middle) for search in unfinished)
+        if clock.grace_over:
+            break
+        low, high = (middle, high) if gone else (low, middle)
+    return low
 
 
 def first_look(
@@ -95,6 +115,7 @@ class Search:
         self.any = goal is None
         self.ask = ask if self.goal is GoalName.POWER else ask.limited(self.goal, NEVER)
         self.boxes: list[Box] = []
+        self.unfinished = False
         self.box = whole_box(model, self.ask, stack([all_but(choice, model.sizes) for choice in without], model.sizes))
         self.scale = float(sum(np.median(part) for part in model.power))
 
@@ -112,14 +133,18 @@ class Search:
         return Found(self.box.whole(found[0]), found[1], 0.0) if found else Found(None, below, 0.0)
 
     def run(self, below: float) -> Found:
-        """Work through boxes: narrow, look, split what is large, solve what is small, until none is left."""
+        """Work through boxes: narrow, look, split what is large, solve what is small, until none is left.
+
+        Where time runs out the search is `unfinished`, and shows no bound by itself.
+        """
         choice: Choice | None = None
         value = below
         self.boxes = [self.box] if self.box else []
         solved = False
         while self.boxes:
             if self.clock.out:
-                return Found(choice, value, self._bound_by_ranges(value))
+                self.unfinished = True
+                return Found(choice, value, 0.0)
             box = narrowed(self.boxes.pop(), self.better_than(value))
             if box is None:
                 continue
@@ -132,7 +157,8 @@ class Search:
                 box, solved = self.box or box, True
                 if outcome.answer is Answer.OUT_OF_TIME:
                     self.boxes.append(box)
-                    return Found(choice, value, self._bound_by_ranges(value))
+                    self.unfinished = True
+                    return Found(choice, value, 0.0)
             if better is not None:
                 choice, value = box.whole(better[0]), better[1]
                 least = outcome is not None and outcome.bound * self.scale >= value * (1 - STEP)
@@ -168,14 +194,9 @@ class Search:
         p, q = box.model.power
         return p / self.scale, q / self.scale
 
-    def _bound_by_ranges(self, value: float) -> float:
-        """The largest goal that tightening alone excludes in every box left, by bisection; 0 with nothing to halve."""
-        low, high = 0.0, value if np.isfinite(value) else 0.0
-        for _ in range(20 if high else 0):
-            middle = (low + high) / 2
-            gone = all(tightened(box, self.ask.limited(self.goal, middle)) is None for box in self.boxes)
-            low, high = (middle, high) if gone else (low, middle)
-        return low
+    def gone(self, limit: float) -> bool:
+        """Whether ranges alone exclude every design with the goal within `limit` in what is left."""
+        return all(tightened(box, self.ask.limited(self.goal, limit)) is None for box in self.boxes)
 
 
 def _proved(choice: Choice | None, value: float) -> Found:

@@ -264,12 +264,17 @@ def _solution(solver: Any, program: Program) -> Solution:
     return Solution(Answer.FOUND, chosen, costs, bound, status == ended.kOptimal)
 
 
+GRACE, GRACE_SHARE = 1.0, 0.1
+"""Seconds, and share of the time given, that the bound of an unfinished search may take beyond it."""
+
+
 class Clock:
     """A deadline, and the count of solver calls made under it."""
 
     def __init__(self, seconds: float = np.inf) -> None:
         self.started = time.monotonic()
         self.deadline = self.started + seconds
+        self.grace = GRACE + GRACE_SHARE * seconds
         self.solves = 0
         self.by_ranges = 0
 
@@ -287,3 +292,8 @@ class Clock:
     def out(self) -> bool:
         """Whether the time is up."""
         return self.left <= 0
+
+    @property
+    def grace_over(self) -> bool:
+        """Whether it has been up for so long that nothing more is to be shown."""
+        return self.left <= -self.grace

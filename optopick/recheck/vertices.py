@@ -180,8 +180,11 @@ def worst(box: Vertices, measured: Measured) -> Check:
     margin = measured.margin
     flat = int(np.argmin(margin))
     index = np.unravel_index(flat, margin.shape)
-    corner = box.corner(margin, flat) if margin.ndim else ""
     value, limit = (_at(part, index) for part in (measured.value, measured.limit))
+    corner = box.corner(margin, flat) if margin.ndim else ""
+    if np.isnan(value):
+        # the physics knows nothing only where a current leaves the curve, a table nothing where it has no figure
+        corner = "beyond the end of the CTR curve" if margin.ndim else "the table has no figure"
     return Check(measured.name, value, limit, measured.sense, measured.unit, corner)
 
 

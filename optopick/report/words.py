@@ -13,6 +13,9 @@ from optopick.units import format_quantity, format_resistor
 TIGHT = 0.1
 """A check with less room than this is said to bind."""
 
+AMPLE = 10.0
+"""More room than this is not told in figures, nor so much less than none."""
+
 
 # a page says the same few thousand values many times over, and each costs a tenth of a millisecond
 @lru_cache(maxsize=1 << 15)
@@ -40,13 +43,15 @@ def margin_words(margin: float, digits: int | None = None) -> str:
         return "–"
     if margin == math.inf:
         return "∞ %"
+    if abs(margin) >= AMPLE:
+        return f"{'> ' if margin > 0 else '< −'}{100 * AMPLE:.0f} %"
     places = (0 if abs(margin) >= TIGHT else 1) if digits is None else digits
     return f"{round(100 * margin, places) + 0.0:.{places}f} %"  # plus zero: no "-0.0"
 
 
 def binding(review: Review) -> tuple[Check, ...]:
     """The checks that hold with little room, the tightest first."""
-    tight = (check for check in review.checks if check.passed and check.margin < TIGHT)
+    tight = (check for check in review.designed if check.passed and check.margin < TIGHT)
     return tuple(sorted(tight, key=lambda check: check.margin))
 
 
@@ -69,8 +74,8 @@ def verdict(status: Status | None, objectives: Sequence[Objective], review: Revi
     said = "; then ".join(f"least {goal.name}: {amount(goal.value, goal.unit)}" for goal in objectives)
     said = said[:1].upper() + said[1:]
     if status is Status.FEASIBLE:
-        bounds = " and ".join(f"no design has {o.name} below {amount(o.bound, o.unit)}" for o in objectives)
-        return f"{said} (best found in the time given; {bounds})"
+        shown = [f"no design has {o.name} below {amount(o.bound, o.unit)}" for o in objectives if o.bound > 0]
+        return f"{said} (best found in the time given; {' and '.join(shown) or 'no bound shown in it'})"
     return f"{said} (proved)"
 
 
@@ -99,7 +104,7 @@ def proof_words(status: Status, proof: Proof, *, timed: bool = True) -> str:
 
 def tightest(review: Review) -> Check:
     """The check with the least room; one whose margin is not a number counts as having none."""
-    return min(review.checks, key=lambda check: -math.inf if math.isnan(check.margin) else check.margin)
+    return min(review.designed, key=lambda check: -math.inf if math.isnan(check.margin) else check.margin)
 
 
 def standing(review: Review) -> str:

@@ -16,11 +16,19 @@ from optopick.result import Design
 from optopick.units import QuantityError, format_resistor, parse_quantity
 from optopick.uses.engine import unusable
 
+LEAST, MOST = 0.1, 1e9
+"""Resistances between which a design's are believed [ohm]."""
 
-def design_from_text(coupler: str, texts: Mapping[str, str | None]) -> Design:
+
+def design_from_text(coupler: str | None, texts: Mapping[str, str | None]) -> Design:
     """A design from resistor values as typed; raises InputError with every value that cannot be read."""
     ohms: dict[str, float | None] = {}
     pieces, mistakes = 1, []
+    if not coupler:
+        mistakes.append(Mistake("--coupler", "nothing", "a part of the brief's table"))
+    for name in ("r_led", "r_load"):
+        if texts.get(name) is None:
+            mistakes.append(Mistake(_option(name), "nothing", 'a resistance such as "2k2"'))
     for name, text in texts.items():
         try:
             counted = text.partition("x") if name == "r_led" and text else None
@@ -28,19 +36,25 @@ def design_from_text(coupler: str, texts: Mapping[str, str | None]) -> Design:
                 pieces, text = int(counted[0]), counted[2]  # noqa: PLW2901
             ohms[name] = None if text is None else _positive(text)
         except QuantityError as error:
-            mistakes.append(Mistake(f"--{name.replace('_', '-')}", error.found, error.expected))
+            mistakes.append(Mistake(_option(name), error.found, error.expected))
     if mistakes:
         raise InputError(mistakes)
     r_led, r_load = ohms["r_led"], ohms["r_load"]
+    assert coupler is not None
     assert r_led is not None
     assert r_load is not None
     return Design(coupler, r_led, r_load, ohms.get("r_be"), ohms.get("r_shunt"), pieces)
 
 
+def _option(name: str) -> str:
+    return f"--{name.replace('_', '-')}"
+
+
 def _positive(text: str) -> float:
     value = parse_quantity(text, "ohm")
-    if value <= 0:
-        raise QuantityError(f'"{text}"', 'a resistance above zero such as "2k2"')
+    if not LEAST <= value <= MOST:
+        believed = f"{format_resistor(LEAST)} to {format_resistor(MOST)}"
+        raise QuantityError(f'"{text}"', f'a resistance such as "2k2", from {believed}')
     return value
 
 

@@ -13,7 +13,7 @@ from optopick.errors import DisagreementError
 from optopick.model.box import Choice
 from optopick.model.kinds import LinkModel, model_of
 from optopick.model.rows import Ask
-from optopick.model.search import STEP, Search
+from optopick.model.search import STEP, Search, shown
 from optopick.model.solver import Clock
 from optopick.read_couplers import read_couplers
 from optopick.recheck import review
@@ -208,7 +208,7 @@ def over_all(
         floors[entry.coupler.part] = max(floors.get(entry.coupler.part, 0.0), look.bound)
         if look.choice is not None:
             found = Best(entry, look.choice, look.value, 0.0)
-    bound = np.inf
+    bound, unfinished = np.inf, {}
     for done, entry in enumerate(entries):
         part = entry.coupler.part
         report(f"least {goal.value}", done, len(entries))
@@ -216,12 +216,20 @@ def over_all(
             bound = min(bound, floors[part])
             clock.by_ranges += 1
             continue
-        better = search_of(entry).run(found.value)
-        floors[part] = max(floors.get(part, 0.0), better.bound)
-        bound = min(bound, better.bound)
+        search = search_of(entry)
+        better = search.run(found.value)
+        if search.unfinished:
+            unfinished[part] = search
+        else:
+            floors[part] = max(floors.get(part, 0.0), better.bound)
+            bound = min(bound, better.bound)
         if better.choice is not None:
             found = Best(entry, better.choice, better.value, 0.0)
     report(f"least {goal.value}", len(entries), len(entries))
+    if unfinished:
+        least = shown(list(unfinished.values()), found.value, clock)
+        floors |= {part: max(floors.get(part, 0.0), least) for part in unfinished}
+        bound = min(bound, *(floors[part] for part in unfinished))
     return replace(found, bound=min(bound, found.value) if entries else np.inf)
 
 

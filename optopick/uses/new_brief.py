@@ -153,6 +153,8 @@ def new_brief(start: Start, path: Path, table: Path | None) -> NewBrief:
 
     A table that is there is read first. Raises InputError where it, or the brief as a whole, has a mistake.
     """
+    if not path.parent.is_dir():
+        raise InputError([Mistake("BRIEF", f'"{path}", whose folder does not exist', "a file in a folder that does")])
     beside = path.parent / DEMO_TABLE
     found = table or beside
     demo = None if table is not None or os.path.lexists(beside) else _data("demo_couplers.csv")
