@@ -236,7 +236,7 @@ def _cells(
             mistakes.append(Mistake(at, error.found, error.expected))
 
 
-@lru_cache(maxsize=65536)
+@lru_cache(maxsize=8192)
 def _read(column: Column, text: str) -> Cell:
     """Read one filled cell; raises QuantityError."""
     match column.type:

@@ -68,9 +68,9 @@ def junction_charge(c_0: Real, v: Real) -> Array:
     Broadcasts. Source: the depletion charge of Gummel and Poon, Bell System Technical Journal 49 (1970) 827.
     """
     reverse = np.asarray(v, dtype=float)
-    u = 1.0 + np.maximum(reverse, -V_J / 2) / V_J
-    beyond = np.minimum(reverse + V_J / 2, 0.0) * 0.5**-M_J
-    return np.asarray(c_0 * (V_J / (1.0 - M_J) * (u ** (1.0 - M_J) - 1.0) + beyond))
+    graded = V_J / (1.0 - M_J) * ((1.0 + np.maximum(reverse, -V_J / 2) / V_J) ** (1.0 - M_J) - 1.0)
+    forward = np.minimum(reverse + V_J / 2, 0.0)
+    return np.asarray(c_0 * (graded + forward * 0.5**-M_J if np.any(forward) else graded))
 
 
 def base_charge(base: Base, load: Load, x: Real, v_b: Real | None = None) -> Array:

@@ -10,6 +10,9 @@ from optopick.physics.types import Array, Real
 ROUNDING = 1e-12
 """Share by which a current may exceed the curve's last point."""
 
+FAR = 200.0
+"""How far down the curve is carried on its first slope, as a logarithm: farther than any current."""
+
 
 def relative_ctr(transfer: Transfer, i: Real) -> Array:
     """CTR at LED current `i` over CTR at the test current [1], log-log through the table's points.
@@ -41,13 +44,11 @@ def led_current_for(transfer: Transfer, ctr: Real, h: Real, j: Real) -> Array:
 
 def led_current_of_log(transfer: Transfer, wanted: Array) -> Array:
     """The same from ln[j/(ctr*h)], j/(ctr*h) in A."""
-    log_i = np.log(transfer.curve_i)
-    log_ig = log_i + np.log(transfer.curve_g)
-    slope = (log_i[1] - log_i[0]) / (log_ig[1] - log_ig[0])
-    inside = np.interp(wanted, log_ig, log_i)
-    below = log_i[0] + slope * (wanted - log_ig[0])
-    found = np.exp(np.where(wanted < log_ig[0], below, inside))
-    return np.asarray(np.where(wanted > log_ig[-1] + ROUNDING, np.inf, found))
+    log_i, log_g = _extended(transfer)
+    log_ig = log_i + log_g
+    found = np.exp(np.interp(wanted, log_ig, log_i))
+    beyond = wanted > log_ig[-1] + ROUNDING
+    return np.asarray(np.where(beyond, np.inf, found) if np.any(beyond) else found)
 
 
 def temperature_factor(transfer: Transfer, t: Real) -> Array:
@@ -70,9 +71,15 @@ def base_led_current(v_be: Real, r_be: Real, eta: Real) -> Array:
 
 def _log_curve(i: Array, transfer: Transfer) -> Array:
     """i*g(i) [A]; nan above the last point."""
-    log_i = np.log(transfer.curve_i)
-    log_g = np.log(transfer.curve_g)
+    log_i, log_g = _extended(transfer)
     at = np.log(i)
+    found = np.exp(at + np.interp(at, log_i, log_g))
+    beyond = i > transfer.curve_i[-1] * (1 + ROUNDING)
+    return np.asarray(np.where(beyond, np.nan, found) if np.any(beyond) else found)
+
+
+def _extended(transfer: Transfer) -> tuple[Array, Array]:
+    """Logarithms of the curve's points, i and g, and of one far below them on the line of the first two."""
+    log_i, log_g = np.log(transfer.curve_i), np.log(transfer.curve_g)
     slope = (log_g[1] - log_g[0]) / (log_i[1] - log_i[0])
-    g = np.where(at < log_i[0], log_g[0] + slope * (at - log_i[0]), np.interp(at, log_i, log_g))
-    return np.asarray(np.where(i > transfer.curve_i[-1] * (1 + ROUNDING), np.nan, np.exp(at + g)))
+    return np.append(log_i[0] - FAR, log_i), np.append(log_g[0] - slope * FAR, log_g)

@@ -26,4 +26,4 @@ class Measured:
         room = limit - value if self.sense == "<=" else value - limit
         with np.errstate(invalid="ignore", divide="ignore"):
             share = np.where(limit != 0, room / np.abs(limit), room)
-        return np.where(np.isnan(share), -np.inf, share)
+        return np.asarray(np.fmax(share, -np.inf))

@@ -97,7 +97,9 @@ def _chunk(
 
 def _histogram(margin: Array) -> tuple[int, ...]:
     """Counts of the margin over equal bins from -1 to 3, the ends open."""
-    at = (np.clip(margin, -1.0, 3.0 - 1e-12) + 1.0) * (BINS / 4.0)
+    at = np.multiply(margin, BINS / 4.0)
+    at += BINS / 4.0
+    np.clip(at, 0.0, BINS - 1e-9, out=at)
     return tuple(np.bincount(at.astype(np.intp), minlength=BINS).tolist())
 
 
