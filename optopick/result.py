@@ -5,6 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 from enum import StrEnum
 
+from optopick.brief import GoalName
 from optopick.coupler import Assumed
 
 NOT_CHOSEN = "not among the brief's couplers"
@@ -106,6 +107,17 @@ class Review:
     def failing(self) -> tuple[Check, ...]:
         """The checks that do not hold."""
         return tuple(check for check in self.checks if not check.passed)
+
+
+def goal_of(reviewed: Review, goal: GoalName) -> float:
+    """A goal's value in a review, guard included."""
+    timing = reviewed.timing
+    return {
+        GoalName.EDGE_TIME: max(timing.edge_on, timing.edge_off),
+        GoalName.DELAY: max(timing.delay_on, timing.delay_off),
+        GoalName.DISTORTION: timing.distortion,
+        GoalName.POWER: reviewed.power.worst,
+    }[goal]
 
 
 @dataclass(frozen=True)

@@ -297,7 +297,8 @@ def test_sweep():
 def test_front():
     """A mark for each design, lower where the second goal is less; stairs only where the front is complete."""
     front = samples.front()
-    picture = front_plot(front, 1)
+    own = front.points[1]
+    picture = front_plot(front, (own.first, own.second))
     dots = nodes(picture, "circle", "dot")
     assert len(dots) == len(front.points)
     across, down = ([share(dot.attrib[key]) for dot in dots] for key in ("cx", "cy"))
@@ -310,6 +311,10 @@ def test_front():
     assert stairs[1][1] == stairs[0][1], "to the right of a design nothing better is known until the next"
     assert not nodes(front_plot(replace(front, complete=False), None), "polyline", "series-1")
     assert not nodes(front_plot(front, None), "circle", "ring")
+    # a design that gave a little of its first goal is no point of the front, and has its place all the same
+    between = ((front.points[0].first + own.first) / 2, (front.points[0].second + own.second) / 2)
+    (ring,) = nodes(front_plot(front, between), "circle", "ring")
+    assert share(dots[0].attrib["cx"]) < share(ring.attrib["cx"]) < share(dots[1].attrib["cx"])
 
 
 def test_front_far_apart_is_logarithmic():

@@ -38,7 +38,7 @@ from optopick.report.words import (
     standing,
     verdict,
 )
-from optopick.result import Check, Review
+from optopick.result import Check, Review, goal_of
 
 LEAST_EATEN = 5e-4
 """Room [1] below which a cause goes unsaid."""
@@ -188,10 +188,11 @@ def _waveforms(document: Document) -> dict[str, Any]:
 
 def _front(document: Document, front: Front) -> dict[str, Any]:
     designs = [point.review.design for point in front.points]
-    design = document.review.design if document.review else None
-    chosen = designs.index(design) if design in designs else None
+    review = document.review
+    chosen = designs.index(review.design) if review and review.design in designs else None
+    here = (goal_of(review, front.goals[0]), goal_of(review, front.goals[1])) if review else None
     units = [goal_unit(goal) for goal in front.goals]
-    return {"front_plot": front_plot(front, chosen), "front_chosen": chosen, "front_units": units}
+    return {"front_plot": front_plot(front, here), "front_chosen": chosen, "front_units": units}
 
 
 def _goal_words(document: Document) -> str:

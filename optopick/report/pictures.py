@@ -74,20 +74,21 @@ def goal_unit(goal: GoalName) -> str:
     return "W" if goal is GoalName.POWER else "s"
 
 
-def front_plot(front: Front, chosen: int | None) -> Markup:
-    """A trade-off front: each design a mark, the document's own (index `chosen`) ringed; every goal falls to the left.
+def front_plot(front: Front, here: Point | None) -> Markup:
+    """A trade-off front: a mark for each design, a ring at the goals `here` of the document's own; goals fall to the left.
 
     Stairs join the designs where the front is complete: between two of them nothing better is in stock than the first.
     """
     units = [goal_unit(goal) for goal in front.goals]
     points = [(point.first, point.second) for point in front.points]
-    x, y = (_goal_scale([at[k] for at in points], units[k]) for k in (0, 1))
+    shown = [*points, *([here] if here else [])]
+    x, y = (_goal_scale([at[k] for at in shown], units[k]) for k in (0, 1))
     names = [f"{goal.value}, worst case" for goal in front.goals]
     frame = Frame(x, f"{names[0]} →", y, f"↑ {names[1]}")
     drawn = [frame.line(_steps(points), series_class(0))] if front.complete else []
     drawn += [frame.mark(*point, "dot") for point in points]
-    if chosen is not None:
-        drawn += [frame.mark(*points[chosen], "ring", 9.0), _beside(frame, points[chosen], "this design")]
+    if here is not None:
+        drawn += [frame.mark(*here, "ring", 9.0), _beside(frame, here, "this design")]
     told = f"{len(points)} designs from {amount(points[0][0], units[0])} to {amount(points[-1][0], units[0])}."
     return frame.drawn(f"{names[1]} against {names[0]}", told, *drawn)
 

@@ -2,12 +2,13 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
-from dataclasses import replace
+from collections.abc import Iterator, Mapping, Sequence
+from dataclasses import dataclass, replace
 from importlib.metadata import version
 from pathlib import Path
+from typing import cast
 
-from optopick.answers import Front, Ranking, Sweep
+from optopick.answers import Front, Ranked, Ranking, Sweep
 from optopick.brief import Brief
 from optopick.coupler import Coupler
 from optopick.report.as_json import dumps, result_object
@@ -18,7 +19,7 @@ from optopick.report.page import page
 from optopick.report.plots import figure_bytes, front_figure, sweep_figure
 from optopick.report.schematic import schematic_svg
 from optopick.report.styles import standalone
-from optopick.result import Design, Result
+from optopick.result import Design, Rejected, Result
 from optopick.simulate.corner import typical_corner
 from optopick.simulate.design import simulate_all, simulate_pattern
 from optopick.simulate.errors import NotSimulatedError
@@ -26,10 +27,11 @@ from optopick.uses.budget import budget
 from optopick.uses.check import coupler_named
 from optopick.uses.engine import Progress, quiet
 from optopick.uses.pick import pick
-from optopick.uses.rank import rank
+from optopick.uses.rank import Task, rank_one, ranking_of, tasks_of
 from optopick.uses.sweep import sweep
 from optopick.uses.tradeoff import tradeoff
 from optopick.uses.why import why
+from optopick.uses.workers import Processes
 
 FRONT_POINTS = 9
 """Points of the trade-off front in a document."""
@@ -37,15 +39,39 @@ FRONT_POINTS = 9
 
 def review_files(brief: Brief, date: str, progress: Progress = quiet) -> tuple[Result, Mapping[str, bytes | str]]:
     """The answer to a brief, and the files of its design review by name."""
-    result = pick(brief, progress=progress)
-    coupler = coupler_named(brief, result.design.coupler) if result.design else None
+    tasks, rejected = tasks_of(brief)
+    work: list[Brief | Task] = [brief, *tasks]
+    answers = Processes().map(_answered, work)
+    chosen = next(answers)
+    assert isinstance(chosen, _Chosen)
+    result, coupler = chosen.result, chosen.coupler
     document = document_of(brief, result, coupler, _inputs(brief), version("optopick"), date)
     if result.design is None or coupler is None:
         document = replace(document, why=why(brief, progress=progress))
         return result, {"review.html": page(document), "design.json": dumps(result_object(result))}
-    sweeps = _sweeps(brief, coupler, result.design)
-    document = _with_parts(document, brief, coupler, result.design, sweeps, progress)
-    return result, _files(brief, coupler, result, document, sweeps)
+    ranking = ranking_of(cast(Iterator[Ranked | Rejected], answers), len(tasks), rejected, progress)
+    document = _with_parts(document, brief, coupler, result.design, chosen.sweeps, ranking, progress)
+    return result, _files(brief, coupler, result, document, chosen.sweeps)
+
+
+@dataclass(frozen=True)
+class _Chosen:
+    """The answer to a brief, its coupler, and what moving its resistors does."""
+
+    result: Result
+    coupler: Coupler | None
+    sweeps: tuple[Sweep, ...]
+
+
+def _answered(task: Brief | Task) -> _Chosen | Ranked | Rejected:
+    """The best design of a brief, or that of one coupler: done side by side, as neither needs the other."""
+    if isinstance(task, Task):
+        return rank_one(task)
+    result = pick(task)
+    if result.design is None:
+        return _Chosen(result, None, ())
+    coupler = coupler_named(task, result.design.coupler)
+    return _Chosen(result, coupler, _sweeps(task, coupler, result.design))
 
 
 def _inputs(brief: Brief) -> tuple[InputFile, InputFile]:
@@ -69,10 +95,10 @@ def _with_parts(
     coupler: Coupler,
     design: Design,
     sweeps: Sequence[Sweep],
+    ranking: Ranking,
     progress: Progress,
 ) -> Document:
     """The document with everything a design allows: ranking, front, budget, walks, waveforms."""
-    ranking = rank(brief, progress=progress)
     front = _front(brief, ranking, progress)
     document = replace(
         document,

@@ -17,7 +17,7 @@ from optopick.model.search import STEP, Search, shown
 from optopick.model.solver import Clock
 from optopick.read_couplers import read_couplers
 from optopick.recheck import review
-from optopick.result import NOT_CHOSEN, Design, Objective, Rejected, Review
+from optopick.result import NOT_CHOSEN, Design, Objective, Rejected, Review, goal_of
 from optopick.units import format_quantity
 
 Progress = Callable[[str, int, int], None]
@@ -263,17 +263,6 @@ def objective(goal: GoalName, brief: Brief, stage: Best, reviewed: Review) -> Ob
     """A goal's value from the re-check, and the bound that the search showed."""
     unit = "W" if goal is GoalName.POWER else "s"
     return Objective(goal.value, goal_of(reviewed, goal), stage.bound * guard_of(brief, goal), unit)
-
-
-def goal_of(reviewed: Review, goal: GoalName) -> float:
-    """A goal's value in a review, guard included."""
-    timing = reviewed.timing
-    return {
-        GoalName.EDGE_TIME: max(timing.edge_on, timing.edge_off),
-        GoalName.DELAY: max(timing.delay_on, timing.delay_off),
-        GoalName.DISTORTION: timing.distortion,
-        GoalName.POWER: reviewed.power.worst,
-    }[goal]
 
 
 def rechecked(brief: Brief, entry: Entry, choice: Choice) -> Review:

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -50,21 +50,34 @@ def rank(
 
     time_limit [s] holds for each coupler.
     """
+    tasks, rejected = tasks_of(brief, couplers, time_limit)
+    return ranking_of((workers or Processes()).map(rank_one, tasks), len(tasks), rejected, progress)
+
+
+def tasks_of(
+    brief: Brief, couplers: Sequence[Coupler] | None = None, time_limit: float = np.inf
+) -> tuple[list[Task], list[Rejected]]:
+    """What there is to rank, and the couplers that cannot serve whatever the resistors."""
     usable, rejected = couplers_of(brief, couplers)
-    ranked: list[Ranked] = []
-    complete = True
-    tasks = [Task(brief, coupler, time_limit) for coupler in usable]
+    return [Task(brief, coupler, time_limit) for coupler in usable], rejected
+
+
+def ranking_of(
+    answers: Iterator[Ranked | Rejected], count: int, rejected: Sequence[Rejected], progress: Progress = quiet
+) -> Ranking:
+    """The ranking that the answers to `count` tasks make; an interrupt as in `rank`."""
+    ranked, others, complete = [], list(rejected), True
     try:
-        for done, answer in enumerate((workers or Processes()).map(rank_one, tasks)):
-            progress("couplers ranked", done + 1, len(tasks))
+        for done, answer in enumerate(answers):
+            progress("couplers ranked", done + 1, count)
             if isinstance(answer, Ranked):
                 ranked.append(answer)
             else:
-                rejected.append(answer)
+                others.append(answer)
     except KeyboardInterrupt:
         complete = False
     ranked.sort(key=lambda one: (one.objective.value, one.second.value, one.coupler.part))
-    return Ranking(tuple(ranked), tuple(r for r in rejected if r.reason != NOT_CHOSEN), complete)
+    return Ranking(tuple(ranked), tuple(r for r in others if r.reason != NOT_CHOSEN), complete)
 
 
 @dataclass(frozen=True)

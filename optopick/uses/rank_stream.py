@@ -20,9 +20,9 @@ from optopick.model.kinds import model_of
 from optopick.model.search import STEP, refuted
 from optopick.read_couplers import SetAside
 from optopick.recheck import review
-from optopick.result import NOT_CHOSEN, Rejected, Review
+from optopick.result import NOT_CHOSEN, Rejected, Review, goal_of
 from optopick.stream_answers import StreamedRanking
-from optopick.uses.engine import AGREE, Progress, ask_of, goal_of, guard_of, quiet, unusable
+from optopick.uses.engine import AGREE, Progress, ask_of, guard_of, quiet, unusable
 from optopick.uses.rank import Task, rank_one
 from optopick.uses.results_file import Designed, Outcome, PassedOver, Refused, ResultsFile
 from optopick.uses.workers import Processes, Workers

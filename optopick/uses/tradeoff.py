@@ -17,13 +17,13 @@ from optopick.model.kinds import model_of
 from optopick.model.rows import Ask
 from optopick.model.search import NEVER, STEP
 from optopick.model.solver import Clock
+from optopick.result import goal_of
 from optopick.uses.engine import (
     Best,
     Entry,
     Progress,
     ask_of,
     couplers_of,
-    goal_of,
     guard_of,
     over_all,
     quiet,
