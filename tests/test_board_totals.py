@@ -174,6 +174,21 @@ def test_a_hot_link_has_packages_of_its_own():
     assert placed(2 * share * 0.97) == 6
 
 
+def test_each_of_several_resistors_in_series_has_its_price():
+    board, made = priced(0.3)
+    brief = board.links[0].brief
+    count = len(brief.stock.r_led.values)
+    # so few watts that one resistor takes too much
+    weak = replace(brief.stock.r_led, power=(0.015,) * count, pieces=4)
+    links = tuple(replace(link, brief=replace(brief, stock=replace(brief.stock, r_led=weak))) for link in board.links)
+    result = solve_board(replace(board, links=links), couplers=made)
+    assert result.status is Status.OPTIMAL
+    design = result.links[0].review.design
+    assert design.pieces > 1
+    placed = design.pieces + 1 + (design.r_be is not None)
+    assert result.goals[0].value == pytest.approx(3 * 0.3 + 6 * 0.02 * placed)
+
+
 def only(position: Position, ohms: float) -> Position:
     """A position with one of its values."""
     k = position.values.index(ohms)

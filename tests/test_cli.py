@@ -2,7 +2,10 @@
 
 from __future__ import annotations
 
+import os
 import re
+import subprocess
+import sys
 from pathlib import Path
 
 import click
@@ -151,10 +154,38 @@ class TestProgress:
         self._slow(monkeypatch)
         assert run(option, "pick", TINY).err == ""
 
+    @pytest.mark.parametrize("option", ["--verbose", "-v"])
+    def test_every_stage_when_told(self, option):
+        told = run(option, "pick", TINY).err.splitlines()
+        assert [line.split(", from ")[0] for line in told] == ["optopick: least power", "optopick: least edge time"]
+
+    def test_not_both(self):
+        ran = run("--verbose", "--quiet", "pick", TINY)
+        assert ran.code == 2
+        assert "--quiet and --verbose" in ran.err
+
     @staticmethod
     def _slow(monkeypatch: pytest.MonkeyPatch) -> None:
         seconds = iter(range(0, 10**6, 3))
         monkeypatch.setattr("optopick.cli.app.time.monotonic", lambda: float(next(seconds)))
+
+
+@pytest.mark.parametrize("shell", ["bash", "zsh", "fish"])
+def test_the_shell_can_complete(shell):
+    """What README says to evaluate is a script for the shell, and the script's question is answered."""
+    words = {"bash": {"COMP_WORDS": "optopick pi", "COMP_CWORD": "1"}}.get(
+        shell, {"COMP_WORDS": "optopick pi", "COMP_CWORD": "pi" if shell == "fish" else "1"}
+    )
+    script = completed(f"{shell}_source", {})
+    assert "_OPTOPICK_COMPLETE" in script
+    assert "pick" in completed(f"{shell}_complete", words)
+
+
+def completed(instruction: str, environment: dict[str, str]) -> str:
+    """What the installed command says to a shell."""
+    command = Path(sys.executable).with_name("optopick")
+    asked = {**os.environ, "_OPTOPICK_COMPLETE": instruction, **environment}
+    return subprocess.run([command], env=asked, capture_output=True, text=True, check=False).stdout
 
 
 class TestPython:

@@ -53,14 +53,17 @@ class Messages(click.Group):
 @click.group(cls=Messages, context_settings={"help_option_names": ["-h", "--help"], "max_content_width": 100})
 @click.version_option(package_name="optopick")
 @click.option("-q", "--quiet", is_flag=True, help="No progress on standard error. Example: optopick -q rank BRIEF")
+@click.option("-v", "--verbose", is_flag=True, help="Every stage as it begins, too. Example: optopick -v pick BRIEF")
 @click.pass_context
-def main(ctx: click.Context, quiet: bool) -> None:
+def main(ctx: click.Context, quiet: bool, verbose: bool) -> None:
     """Choose an optocoupler and the stock resistors around it, and prove the choice.
 
     A brief (TOML) says what one link must do; a coupler table (CSV) says what may be used. Exit codes: 0 a valid
     design, or all checks pass; 1 a checked design fails; 2 wrong input; 3 no design exists; 4 out of time with none.
     """
-    ctx.obj = quiet
+    if quiet and verbose:
+        raise click.UsageError("--quiet and --verbose: one of them at the most")
+    ctx.obj = "quiet" if quiet else "verbose" if verbose else ""
 
 
 brief_argument = click.argument("brief", type=click.Path(path_type=Path))
@@ -104,13 +107,18 @@ def exit_code(status: Status) -> int:
 def progress() -> Callable[[str, int, int], None]:
     """A progress line on standard error once the work has taken two seconds; none with --quiet.
 
-    At a terminal one line, written over each time; elsewhere lines ever farther apart.
+    At a terminal one line, written over each time; elsewhere lines ever farther apart. With --verbose a line for each
+    stage as it begins, which stays.
     """
-    started, shown = time.monotonic(), [0.0]
-    quiet, here = bool(click.get_current_context().obj), sys.stderr.isatty()
+    started, shown, stages = time.monotonic(), [0.0], [""]
+    said = click.get_current_context().obj
+    quiet, here = said == "quiet", sys.stderr.isatty()
 
     def report(stage: str, done: int, total: int) -> None:
         now = time.monotonic()
+        if said == "verbose" and stage != stages[0]:
+            stages[0] = stage
+            echo(f"optopick: {stage}, from {now - started:.2f} s", err=True)
         pause = 0.3 if here else 0.5 * (shown[0] - started)
         if quiet or now - started < 2 or now - shown[0] < pause:
             return

@@ -41,13 +41,13 @@ Seen = Callable[[BoardGoalName, float, float], None]
 
 @dataclass(frozen=True)
 class Place:
-    """One link of the model: couplers that may serve it with their models, what is asked, how many there are where.
+    """One link of the model: couplers that may serve it, each with what makes its model, what is asked, how many where.
 
     least: a bound on the power of one of it [W]; quickest: on its edge time [s]. prices: for each coupler, where they
     count.
     """
 
-    couplers: tuple[tuple[Coupler, LinkModel], ...]
+    couplers: tuple[tuple[Coupler, Callable[[], LinkModel]], ...]
     ask: Ask
     counts: Counts
     least: float
@@ -209,7 +209,8 @@ class BoardSearch:
     def _seat(self, link: int, k: int, asked: Ask) -> Seat | None:
         """The seat of a link's coupler number k."""
         place = self.places[link]
-        return seat_of(link, *place.couplers[k], asked, place.prices[k] if place.prices else None)
+        coupler, make = place.couplers[k]
+        return seat_of(link, coupler, make(), asked, place.prices[k] if place.prices else None)
 
     def _sketched(self, caps: Caps, best: BoardFound) -> BoardFound:
         """A good board from few couplers, if they have a better one than `best`; the bound stays as it was."""
@@ -224,7 +225,7 @@ class BoardSearch:
         looks: list[list[tuple[float, Coupler, int]]] = []
         for link, place in enumerate(self.places):
             asked = place.asked(caps, self._room(link, power))
-            found = [(first_look(model, GoalName.POWER, asked), c, k) for k, (c, model) in enumerate(place.couplers)]
+            found = [(first_look(make(), GoalName.POWER, asked), c, k) for k, (c, make) in enumerate(place.couplers)]
             mine = [(look.value, c, k) for look, c, k in found if look.choice is not None]
             looks.append(sorted(mine, key=lambda one: one[0]))
         shared = self._shared(looks, caps)

@@ -75,7 +75,7 @@ def goal_unit(goal: GoalName) -> str:
 
 
 def front_plot(front: Front, here: Point | None) -> Markup:
-    """A trade-off front: a mark for each design, a ring at the goals `here` of the document's own; goals fall to the left.
+    """A trade-off front: a mark for each design, a ring at the goals `here` of the document's own; less is to the left.
 
     Stairs join the designs where the front is complete: between two of them nothing better is in stock than the first.
     """

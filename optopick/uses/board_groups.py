@@ -2,8 +2,9 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass, replace
+from functools import cache, partial
 from typing import Any
 
 from optopick.board import Board, BoardGoalName, BoardLink
@@ -12,12 +13,15 @@ from optopick.coupler import Coupler
 from optopick.errors import InputError, Mistake
 from optopick.model.board_packages import Counts
 from optopick.model.board_seats import Prices, prices_of
+from optopick.model.kinds import LinkModel, model_of
 from optopick.units import format_resistor
-from optopick.uses.engine import Entry, entries_of
+from optopick.uses.engine import Entry, couplers_of
 
 POSITIONS = ("r_led", "r_shunt", "r_load", "r_be")
 COLUMNS = ("values", "tolerance", "power", "voltage", "price")
 MOST_NAMED = 6
+MOST_KEPT = 200
+"""Models that are kept: one takes some megabytes, and some hundredths of a second to make again."""
 
 
 @dataclass(frozen=True)
@@ -27,14 +31,25 @@ class Group:
     (Give each of them the design that takes least power among theirs, and the board takes from no further reel, has no
     further part, no longer edge and takes no more power.)
 
-    prices: of each entry's stock, None where no price counts; unpriced: what was left out for want of one.
+    models: makes the model of each coupler; they are large, so only those of small boards are kept. prices: of each
+    coupler's stock, None where no price counts; unpriced: what was left out for want of one.
     """
 
     brief: Brief
     links: tuple[BoardLink, ...]
-    entries: tuple[Entry, ...]
+    couplers: tuple[Coupler, ...]
+    models: tuple[Callable[[], LinkModel], ...]
     prices: tuple[Prices, ...] | None = None
     unpriced: tuple[str, ...] = ()
+
+    def entry(self, k: int) -> Entry:
+        """Coupler number k with its model."""
+        return Entry(self.couplers[k], self.models[k]())
+
+    @property
+    def entries(self) -> list[Entry]:
+        """Every coupler with its model."""
+        return [self.entry(k) for k in range(len(self.couplers))]
 
     @property
     def counts(self) -> Counts:
@@ -50,38 +65,36 @@ def groups_of(board: Board, couplers: Sequence[Coupler] | None) -> list[Group]:
     by_brief: dict[Brief, list[BoardLink]] = {}
     for link in board.links:
         by_brief.setdefault(link.brief, []).append(link)
+    usable = {brief: tuple(couplers_of(brief, couplers)[0]) for brief in by_brief}
+    keep = sum(map(len, usable.values())) <= MOST_KEPT
+    plain = [_group(brief, tuple(links), usable[brief], keep) for brief, links in by_brief.items()]
     if board.limits.price is None and BoardGoalName.COST not in board.goals:
-        return [Group(brief, tuple(links), tuple(entries_of(brief, couplers)[0])) for brief, links in by_brief.items()]
+        return plain
     mistakes: list[Mistake] = []
-    groups = [_priced(board, brief, tuple(links), couplers, mistakes) for brief, links in by_brief.items()]
+    groups = [_priced(group, f"{board.path or 'board'}: link {group.links[0].name}", mistakes, keep) for group in plain]
     if mistakes:
         raise InputError(mistakes)
     return groups
 
 
-def _priced(
-    board: Board,
-    brief: Brief,
-    links: tuple[BoardLink, ...],
-    couplers: Sequence[Coupler] | None,
-    mistakes: list[Mistake],
-) -> Group:
+def _group(brief: Brief, links: tuple[BoardLink, ...], couplers: tuple[Coupler, ...], keep: bool) -> Group:
+    made = [partial(model_of, brief, coupler) for coupler in couplers]
+    return Group(brief, links, couplers, tuple(cache(make) if keep else make for make in made))
+
+
+def _priced(group: Group, where: str, mistakes: list[Mistake], keep: bool) -> Group:
     """Links with the couplers and values that have a price; a position or link left with none is a mistake."""
-    where = f"{board.path or 'board'}: link {links[0].name}"
-    usable = entries_of(brief, couplers)[0]
-    entries = [entry for entry in usable if entry.coupler.price is not None]
-    if usable and not entries:
-        found = f"no price of any coupler that may serve: {_listed([entry.coupler.part for entry in usable])}"
+    usable = group.couplers
+    left = tuple(coupler for coupler in usable if coupler.price is not None)
+    if usable and not left:
+        found = f"no price of any coupler that may serve: {_listed([coupler.part for coupler in usable])}"
         mistakes.append(Mistake(where, found, "prices in the coupler table where cost is limited or a goal"))
-    stock, unpriced = _priced_stock(brief.stock, where, mistakes)
-    if stock == brief.stock:
-        left = entries
-    else:
-        brief = replace(brief, stock=stock)
-        left = entries_of(brief, [entry.coupler for entry in entries])[0]
-    missing = [entry.coupler.part for entry in usable if entry.coupler.price is None]
-    prices = () if mistakes else tuple(prices_of(entry.model, _position_prices(stock)) for entry in left)
-    return Group(brief, links, tuple(left), prices, (*missing, *(f"{links[0].name} {name}" for name in unpriced)))
+    stock, unpriced = _priced_stock(group.brief.stock, where, mistakes)
+    priced = _group(replace(group.brief, stock=stock), group.links, left, keep)
+    missing = [coupler.part for coupler in usable if coupler.price is None]
+    prices = () if mistakes else tuple(prices_of(make(), _position_prices(stock)) for make in priced.models)
+    named = [f"{group.links[0].name} {name}" for name in unpriced]
+    return replace(priced, prices=prices, unpriced=(*missing, *named))
 
 
 def _priced_stock(stock: Stock, where: str, mistakes: list[Mistake]) -> tuple[Stock, list[str]]:

@@ -60,7 +60,7 @@ class BoardWork:
         self.alone = _alone(self.groups, clock, progress)
         seen = partial(_tell, progress)
         self.search = BoardSearch(_places(board, self.groups, self.alone, clock), clock, progress, seen)
-        self.parts = {entry.coupler.part: entry.coupler for group in self.groups for entry in group.entries}
+        self.parts = {coupler.part: coupler for group in self.groups for coupler in group.couplers}
 
     @property
     def hopeless(self) -> tuple[str, ...]:
@@ -143,7 +143,7 @@ def _alone(groups: Sequence[Group], clock: Clock, progress: Progress) -> list[Be
 def _places(board: Board, groups: Sequence[Group], alone: Sequence[Best], clock: Clock) -> list[Place]:
     return [
         Place(
-            couplers=tuple((entry.coupler, entry.model) for entry in group.entries),
+            couplers=tuple(zip(group.couplers, group.models, strict=True)),
             ask=ask_of(group.brief),
             counts=group.counts,
             least=best.bound if np.isfinite(best.bound) else 0.0,
@@ -200,7 +200,7 @@ def _choices(
     """The links in the board's order, each with its design checked again alone."""
     found = {}
     for group, best, one in zip(groups, alone, taken, strict=True):
-        entry = next(entry for entry in group.entries if entry.coupler is one.seat.coupler)
+        entry = group.entry([coupler is one.seat.coupler for coupler in group.couplers].index(True))
         try:
             reviewed = rechecked(group.brief, entry, one.seat.box.whole(one.choice))
         except DisagreementError as error:

@@ -1,4 +1,9 @@
-"""Measure `board` on generated boards: `python -m tests.benchmarks.board`. See README.md beside this file.
+"""Measure `board` on generated boards: `python -m tests.benchmarks.board`, about a quarter of an hour.
+
+Least power, at most 10 reels (6 on the smallest board) and 3 coupler parts. A case ends when its time is up, or all is
+proved. Printed: what is known then, the gap of the power found to the bound shown, the size of the last model, seconds by
+the clock and of the processor, and the most memory that the process has held. `--plain` leaves out what goes before the
+solver: the narrowing of every link to what may still be of use.
 
 Links and boards are invented: six kinds of link as in examples/plant, each time with other supplies, pulses, thresholds
 and temperatures, drawn from a fixed seed. No two links are equal.
@@ -7,9 +12,13 @@ and temperatures, drawn from a fixed seed. No two links are equal.
 from __future__ import annotations
 
 import argparse
+import os
+import platform
 import resource
 import sys
 import time
+from collections.abc import Iterator
+from contextlib import contextmanager, nullcontext
 from dataclasses import dataclass, replace
 from pathlib import Path
 
@@ -19,6 +28,10 @@ from optopick.board import Board, BoardGoal, BoardGoalName, BoardLimits, BoardLi
 from optopick.board_answers import BoardResult
 from optopick.brief import Brief, Span
 from optopick.coupler import Coupler
+from optopick.model import board_seats
+from optopick.model.box import Box
+from optopick.model.rows import Ask, stack
+from optopick.model.solver import highs_name
 from optopick.read_brief import read_brief
 from optopick.read_couplers import read_couplers
 from optopick.uses.board import solve_board
@@ -99,6 +112,27 @@ def board_of(case: Case) -> tuple[Board, list[Coupler]]:
     return board, [table[part] for part in PARTS[: case.couplers]]
 
 
+def as_it_is(box: Box, ask: Ask) -> Box | None:
+    """In place of `narrowed`: the rows as they are; only what can never hold them is left out."""
+    rows = stack([box.model.rows(ask), box.cuts], box.model.sizes)
+    live = [~np.isneginf(part).any(axis=0) for part in (rows.a, rows.b, rows.c)]
+    if not all(mask.any() for mask in live):
+        return None
+    box = box.take(*(np.flatnonzero(mask) for mask in live))
+    return Box(box.model, box.indices, box.cuts, stack([box.model.rows(ask), box.cuts], box.model.sizes))
+
+
+@contextmanager
+def plain() -> Iterator[None]:
+    """The model without what goes before it: no narrowing, no look at small seats."""
+    kept = board_seats.narrowed, board_seats.SMALL
+    board_seats.narrowed, board_seats.SMALL = as_it_is, 0  # type: ignore[assignment]
+    try:
+        yield
+    finally:
+        board_seats.narrowed, board_seats.SMALL = kept
+
+
 def peak_megabytes() -> float:
     """The most memory that this process has held [MB]."""
     return resource.getrusage(resource.RUSAGE_SELF).ru_maxrss / 1024
@@ -117,20 +151,29 @@ def told(case: Case, result: BoardResult, wall: float, processor: float) -> str:
 def main() -> None:
     parser = argparse.ArgumentParser(description=__doc__, formatter_class=argparse.RawDescriptionHelpFormatter)
     parser.add_argument("--case", type=int, help="only that one, from 1")
+    parser.add_argument("--plain", action="store_true", help="without narrowing")
     parser.add_argument("-v", action="store_true", help="progress on standard error")
-    chosen = parser.parse_args().case
+    given = parser.parse_args()
+    busy = ", ".join(f"{load:.1f}" for load in os.getloadavg())
+    print(f"{os.cpu_count()} cores, load {busy}; Python {platform.python_version()}, {highs_name()}")
     print("board                    status      gap (power) columns   rows solves wall s  proc. s  peak MB", flush=True)
     for number, case in enumerate(CASES, 1):
-        if chosen in (None, number):
-            board, couplers = board_of(case)
-            wall, processor = time.monotonic(), time.process_time()
+        if given.case in (None, number):
+            measure(case, plainly=given.plain, loud=given.v)
 
-            def report(stage: str, done: int, total: int, since: float = wall) -> None:
-                if "-v" in sys.argv:
-                    print(f"{time.monotonic() - since:6.1f} {stage} {done} {total}", file=sys.stderr)
 
-            result = solve_board(board, time_limit=case.seconds, couplers=couplers, progress=report)
-            print(told(case, result, time.monotonic() - wall, time.process_time() - processor), flush=True)
+def measure(case: Case, *, plainly: bool, loud: bool) -> None:
+    """Solve the board of a case and print its line."""
+    board, couplers = board_of(case)
+    wall, processor = time.monotonic(), time.process_time()
+
+    def report(stage: str, done: int, total: int) -> None:
+        if loud:
+            print(f"{time.monotonic() - wall:6.1f} {stage} {done} {total}", file=sys.stderr)
+
+    with plain() if plainly else nullcontext():
+        result = solve_board(board, time_limit=case.seconds, couplers=couplers, progress=report)
+    print(told(case, result, time.monotonic() - wall, time.process_time() - processor), flush=True)
 
 
 if __name__ == "__main__":
