@@ -383,7 +383,7 @@ class Trial:
     def _timing(self, x: out.Lot, i: np.ndarray, j: np.ndarray, m: np.ndarray) -> None:
         light, off, _, r_be = self._ends(x, i, j, m)
         swing = oracle_times.swing(self.brief, self.coupler, x, self.load.ends[float(x.t)][:, None, None, :]).taken(j)
-        times = oracle_times.times(self.coupler, x, swing, light, off, r_be)
+        times = oracle_times.times(self.coupler, x, swing, light, off, r_be, self.brief.limits.timing_guard)
         held, goals = oracle_times.timing_checks(self.brief, times)
         worst_of(self.rooms, held, len(i))
         for name, goal in goals.items():

@@ -148,8 +148,8 @@ class Times(NamedTuple):
     skew: np.ndarray
 
 
-def times(coupler: Coupler, x: Lot, s: Swing, i_eff, i_off, r_be) -> Times:
-    """i_off: LED current left in the dark."""
+def times(coupler: Coupler, x: Lot, s: Swing, i_eff, i_off, r_be, guard: float) -> Times:
+    """i_off: LED current left in the dark. guard: by so much the delay that is subtracted may be shorter."""
     b, rest = base_taken(x, r_be), (i_off + dark_as_light(coupler, x)) * early(x)
     n = i_eff - b
     tau_s, spread = coupler.transistor.tau_s, coupler.transistor.tau_s_spread
@@ -166,7 +166,8 @@ def times(coupler: Coupler, x: Lot, s: Swing, i_eff, i_off, r_be) -> Times:
         charge * np.where(rest > 0, np.clip(1 - rest / np.maximum(s.hold * b, 1e-30), 0, 1), 1.0),
     )
     skews = [
-        np.where(np.isinf(a) & np.isinf(c), np.inf, a - c) for a, c in ((off, on_soon), (charge + to_late, off_soon))
+        np.where(np.isinf(a) & np.isinf(c), np.inf, a - c / guard)
+        for a, c in ((off, on_soon), (charge + to_late, off_soon))
     ]
     return Times(
         edge_on=np.where(n < s.i_sat, np.inf, climb(s.edge, enough)),

@@ -135,7 +135,8 @@ def rooms_at(brief: Brief, coupler: Coupler, design: Design, p: Points) -> tuple
         held["r_be_power"] = oracle_led.below(x.v_base**2 / p.r_be, most)
     i_eff = s.i_f * (1.0 + p.age * (light_at_end_of_life(brief, coupler, design) - 1.0))
     held |= output_rooms(brief, coupler, x, s, i_eff, p)
-    times = oracle_times.times(coupler, x, oracle_times.swing(brief, coupler, x, p.r_load), i_eff, s.i_off, p.r_be)
+    swing, guard = oracle_times.swing(brief, coupler, x, p.r_load), brief.limits.timing_guard
+    times = oracle_times.times(coupler, x, swing, i_eff, s.i_off, p.r_be, guard)
     timing, goals = oracle_times.timing_checks(brief, times)
     power = brief.signal.lit * (p.drive * s.i_branch + p.v_cc * out.load_of(brief, coupler, x, p.r_load))
     if brief.limits.power is not None:

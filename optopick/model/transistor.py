@@ -210,7 +210,7 @@ class TransistorModel:
 
     def _time(self, family: str, swing: switching.Swing, eta: Array, at: Point) -> Array:
         """The time of a family [s]; every argument broadcasts."""
-        tau_s = self.candidates.tau_s_most
+        tau_s, guard = self.candidates.tau_s_most, self.brief.limits.timing_guard
         if family == "edge_off":
             return switching.edge_off(swing.edge, switching.EDGE, at.i_be, at.i_rest)
         if family == "delay_on":
@@ -218,8 +218,8 @@ class TransistorModel:
         if family == "delay_off":
             return switching.delay_off(swing, tau_s, at.i_eff, at.i_be, at.i_rest)
         if family == "late_off":
-            return switching.late_off(swing, tau_s, eta, at.i_eff, at.i_be, at.i_rest)
-        return switching.late_on(swing, self.candidates.tau_s_least, eta, at.i_eff, at.i_be)
+            return switching.late_off(swing, tau_s, eta, at.i_eff, at.i_be, at.i_rest, guard)
+        return switching.late_on(swing, self.candidates.tau_s_least, eta, at.i_eff, at.i_be, guard)
 
     def _worst_times(self, family: Family, i: Index, swing: switching.Swing, m: Index) -> Array:
         """Times of K designs at every corner and load end, (C, 2, K) [s]; swing: of their loads."""

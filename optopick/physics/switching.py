@@ -405,28 +405,30 @@ def delay_off(s: Swing, tau_s: Real, i_eff: Real, i_be: Real, i_rest: Real) -> A
     return storage(tau_s, i_eff, i_be, s.i_sat, s.hold, i_rest) + time_off(s.off, i_be, i_rest)
 
 
-def late_off(s: Swing, tau_s: Real, eta: Real, i_eff: Real, i_be: Real, i_rest: Real) -> Array:
+def late_off(s: Swing, tau_s: Real, eta: Real, i_eff: Real, i_be: Real, i_rest: Real, sooner: float = 1.0) -> Array:
     """By how much the LED's dark edge is seen later than its lit edge [s], at the threshold where that is most.
 
     `delay_off` less the delay on to the earlier threshold, whose `charging` counts by the share 1 - i_rest/(hold*i_be)
-    that the base resistor leaves to be charged: none where it does not take all of i_rest. -infinite where the output
-    never turns on. Broadcasts.
+    that the base resistor leaves to be charged: none where it does not take all of i_rest. sooner >= 1: the delay on
+    counts by 1/sooner, as it may be so much shorter than computed. -infinite where the output never turns on.
+    Broadcasts.
     """
     charged, rest = charging(s.charge, eta, i_eff, i_be), np.asarray(i_rest, dtype=float)
     pull = np.maximum(s.hold * np.asarray(i_be), TINY * np.maximum(rest, TINY))
     left = np.where(rest > 0, np.maximum(1.0 - rest / pull, 0.0), 1.0)
     start = np.where(np.isfinite(charged), left * np.where(np.isfinite(charged), charged, 0.0), np.inf)
     on = start + crossing_on(s.on_early, np.asarray(i_eff) - i_be)
-    return _difference(delay_off(s, tau_s, i_eff, i_be, i_rest), on)
+    return _difference(delay_off(s, tau_s, i_eff, i_be, i_rest), on / sooner)
 
 
-def late_on(s: Swing, tau_s: Real, eta: Real, i_eff: Real, i_be: Real) -> Array:
+def late_on(s: Swing, tau_s: Real, eta: Real, i_eff: Real, i_be: Real, sooner: float = 1.0) -> Array:
     """By how much the LED's lit edge is seen later than its dark edge [s], at the threshold where that is most.
 
-    `delay_on` less the delay off to the earlier threshold with nothing left of light and dark current. Broadcasts.
+    `delay_on` less 1/sooner of the delay off to the earlier threshold with nothing left of light and dark current.
+    Broadcasts.
     """
     off = storage(tau_s, i_eff, i_be, s.i_sat, s.hold) + time_off(s.off_early, i_be)
-    return _difference(delay_on(s, eta, i_eff, i_be), off)
+    return _difference(delay_on(s, eta, i_eff, i_be), off / sooner)
 
 
 def _difference(a: Array, b: Array) -> Array:

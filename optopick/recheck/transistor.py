@@ -211,8 +211,10 @@ def times(brief: Brief, coupler: Coupler, box: Vertices, s: Stage, checks_only: 
     tau_s, lit = transistor.tau_s * box.storage, (s.eta, s.i_eff, s.i_be)
     distortion, storage = np.zeros(1), np.zeros(1)
     if skewed:
-        late_off = switching.late_off(swung, tau_s, *lit, s.i_rest)
-        distortion = np.maximum(late_off, switching.late_on(swung, tau_s, *lit))
+        # times are multiplied by the guard in the end: of a difference only the longer delay is meant
+        guard = brief.limits.timing_guard
+        late_off = switching.late_off(swung, tau_s, *lit, s.i_rest, guard)
+        distortion = np.maximum(late_off, switching.late_on(swung, tau_s, *lit, guard))
     if not checks_only:
         tenth = switching.steps(base, load, transfer, carried, switching.FIRST_TENTH)
         held = switching.storage(tau_s, s.i_eff, s.i_be, swung.i_sat, swung.hold, s.i_rest)
