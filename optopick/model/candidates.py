@@ -20,11 +20,10 @@ from optopick.physics.charge import Base, Load
 from optopick.physics.heat import derated, output_dissipation, resistor_derated
 from optopick.physics.leakage import dark_current, dark_current_held, raised
 from optopick.physics.saturation import (
-    junction_part,
     load_current,
     overdrive_to_hold,
-    rise_with_current,
-    rise_with_heat,
+    sheet_point,
+    v_ce_saturated,
 )
 from optopick.physics.switching import Swing, swing
 from optopick.physics.transfer import base_led_current, collector_current, led_current_for, relative_ctr
@@ -222,13 +221,9 @@ def _for_level(
     noise = brief.output.noise_margin
     pulled_up = brief.output.circuit is OutputCircuit.PULL_UP
     v_ce = (c.v_il - noise if pulled_up else c.v_cc - c.v_ih - noise)[:, :, None]
-    sheet = float(collector_current(transfer, transfer.ctr_min, 1.0, transistor.sat_i_f)) / transistor.sat_i_c
-    inner = transistor.v_be / 2 if coupler.kind is Kind.DARLINGTON else 0.0
-    junctions = junction_part(sheet, transistor.h_fe, transistor.beta_r, inner)
+    sheet = sheet_point(transfer, transistor, coupler.kind is Kind.DARLINGTON)
     t, h_fe = c.t[:, :, None], c.h_fe[:, :, None]
-    v_sat = rise_with_current(transistor.v_ce_sat, j_s, transistor.sat_i_c, junctions)
-    v_sat = v_sat + rise_with_heat(sheet, transistor.h_fe, transistor.beta_r, t)
-    overdrive = overdrive_to_hold(v_ce, v_sat, sheet, h_fe, transistor.beta_r, t)
+    overdrive = overdrive_to_hold(v_ce, v_ce_saturated(sheet, j_s, t), sheet.overdrive, h_fe, sheet.beta_r, t)
     carried = np.maximum(load_current(c.v_cc[:, :, None], v_ce, r, input_current(brief, on=True)), 1e-12)
     i = led_current_for(transfer, c.ctr[:, :, None], c.h[:, :, None], overdrive * carried)
     return np.asarray(i.max(axis=1))

@@ -2,9 +2,13 @@
 
 from __future__ import annotations
 
+from dataclasses import dataclass
+
 import numpy as np
 
+from optopick.coupler import Transfer, Transistor
 from optopick.physics.led import thermal_voltage
+from optopick.physics.transfer import collector_current
 from optopick.physics.types import Array, Real
 
 NO_DRIVE = 1e-18
@@ -150,3 +154,39 @@ def rise_with_current(v_ce_sat: float, i_c: Real, i_c_sheet: float, v_junctions:
     """
     resistive = max(v_ce_sat - v_junctions, 0.0)
     return np.asarray(v_ce_sat + resistive * np.maximum(np.asarray(i_c) / i_c_sheet - 1.0, 0.0))
+
+
+@dataclass(frozen=True)
+class SheetPoint:
+    """Where a sheet states the output's saturation voltage.
+
+    v_ce_sat: the largest [V], at collector current i_c [A] and 25 degC; overdrive: of the weakest unit there [1]; h_fe,
+    beta_r: of a typical one [1]; v_inner: as in `junction_part` [V].
+    """
+
+    v_ce_sat: float
+    i_c: float
+    overdrive: float
+    h_fe: float
+    beta_r: float
+    v_inner: float
+
+
+def sheet_point(transfer: Transfer, transistor: Transistor, darlington: bool) -> SheetPoint:
+    """The saturation row of a coupler's sheet; a darlington's output lies above the first transistor's base."""
+    carried = float(collector_current(transfer, transfer.ctr_min, 1.0, transistor.sat_i_f))
+    return SheetPoint(
+        v_ce_sat=transistor.v_ce_sat,
+        i_c=transistor.sat_i_c,
+        overdrive=carried / transistor.sat_i_c,
+        h_fe=transistor.h_fe,
+        beta_r=transistor.beta_r,
+        v_inner=transistor.v_be / 2 if darlington else 0.0,
+    )
+
+
+def v_ce_saturated(p: SheetPoint, i_c: Real, t: Real) -> Array:
+    """The sheet's v_ce_sat [V] at collector current `i_c` [A] and `t` [degC]: rise_with_current + rise_with_heat."""
+    junctions = junction_part(p.overdrive, p.h_fe, p.beta_r, p.v_inner)
+    carried = rise_with_current(p.v_ce_sat, i_c, p.i_c, junctions)
+    return np.asarray(carried + rise_with_heat(p.overdrive, p.h_fe, p.beta_r, t))

@@ -13,13 +13,7 @@ from optopick.physics import switching
 from optopick.physics.charge import Base, Load
 from optopick.physics.heat import derated, output_dissipation, resistor_derated
 from optopick.physics.leakage import dark_current, dark_current_held, raised
-from optopick.physics.saturation import (
-    junction_part,
-    load_current,
-    rise_with_current,
-    rise_with_heat,
-    v_ce_on_load_line,
-)
+from optopick.physics.saturation import load_current, sheet_point, v_ce_on_load_line, v_ce_saturated
 from optopick.physics.transfer import (
     base_led_current,
     collector_current,
@@ -41,7 +35,7 @@ from optopick.result import Design
 class Stage:
     """The output stage at every vertex; see the glossary of optopick.physics.
 
-    i_dark: LED current that would carry the dark current [A]; i_rest: that and what is left in the dark LED [A].
+    i_ceo: dark current [A]; i_dark: LED current that would carry it [A]; i_rest: that and what is left in the dark LED [A].
     """
 
     h: Array
@@ -50,6 +44,7 @@ class Stage:
     v_be: Array
     i_eff: Array
     i_be: Array
+    i_ceo: Array
     i_dark: Array
     i_rest: Array
     i_input: float
@@ -98,6 +93,7 @@ def stage(brief: Brief, coupler: Coupler, box: Vertices, branch: LedBranch, dark
         v_be=v_be,
         i_eff=branch.i_f * branch.light,
         i_be=base_led_current(v_be + box.v_be, box.r_be, eta),
+        i_ceo=i_ceo,
         i_dark=i_dark,
         i_rest=(branch.i_off + i_dark) * raised(box.v_cc),
         i_input=i_input,
@@ -139,19 +135,15 @@ def _v_ce(coupler: Coupler, box: Vertices, s: Stage, drive: Array) -> Array:
 
     The sheet's own figure, moved by current and heat, wherever the drive there is at least the sheet's.
     """
-    transfer, transistor = parts_of(coupler)
-    sheet = float(collector_current(transfer, transfer.ctr_min, 1.0, transistor.sat_i_f)) / transistor.sat_i_c
-    inner = transistor.v_be / 2 if coupler.kind is Kind.DARLINGTON else 0.0
-    junctions = junction_part(sheet, transistor.h_fe, transistor.beta_r, inner)
-    v_sat = rise_with_current(transistor.v_ce_sat, s.j_s, transistor.sat_i_c, junctions)
-    v_sat = v_sat + rise_with_heat(sheet, transistor.h_fe, transistor.beta_r, box.t)
+    sheet = sheet_point(*parts_of(coupler), coupler.kind is Kind.DARLINGTON)
+    v_sat = v_ce_saturated(sheet, s.j_s, box.t)
     wide = np.broadcast_arrays(drive, v_sat, s.h_fe, box.v_cc, box.r_load, box.t)
     found = np.array(wide[1])
-    weak = drive < sheet * load_current(box.v_cc, v_sat, box.r_load, s.i_input)
+    weak = drive < sheet.overdrive * load_current(box.v_cc, v_sat, box.r_load, s.i_input)
     if np.any(weak):
         mask = np.broadcast_to(weak, found.shape)
         j, v, h_fe, v_cc, r_load, t = (part[mask] for part in wide)
-        found[mask] = v_ce_on_load_line(v, sheet, j, h_fe, transistor.beta_r, t, v_cc, r_load, s.i_input)
+        found[mask] = v_ce_on_load_line(v, sheet.overdrive, j, h_fe, sheet.beta_r, t, v_cc, r_load, s.i_input)
     found[np.isnan(wide[0])] = np.nan  # beyond the CTR curve nothing is known
     return found
 
@@ -169,12 +161,11 @@ def _off_current(coupler: Coupler, box: Vertices, branch: LedBranch, s: Stage) -
 
     Below the CTR curve the light counts by the curve's first point or by its slope, whichever gives more.
     """
-    transfer, transistor = parts_of(coupler)
-    i_ceo = dark_current(transistor.i_ceo_1, transistor.t_1, transistor.i_ceo_2, transistor.t_2, box.t)
-    dark = dark_current_held(i_ceo, s.eta * s.i_dark, box.r_be)
+    transfer, _ = parts_of(coupler)
+    dark = dark_current_held(s.i_ceo, s.eta * s.i_dark, box.r_be)
     g = relative_ctr(transfer, np.clip(branch.i_off, transfer.curve_i[0], transfer.curve_i[-1]))
     both = collector_current(transfer, box.ctr, s.h, np.minimum(branch.i_off + s.i_dark, transfer.curve_i[-1]))
-    lit = np.maximum(box.ctr * s.h * g * branch.i_off, both - i_ceo)
+    lit = np.maximum(box.ctr * s.h * g * branch.i_off, both - s.i_ceo)
     return np.asarray((dark + lit) * raised(box.v_cc))
 
 
