@@ -9,6 +9,7 @@ import pytest
 import report_samples as samples
 
 from optopick.brief import DriveCircuit, Limits, Signal
+from optopick.coupler import Assumed
 from optopick.report.brief_words import requirement_parts
 from optopick.report.words import (
     binding,
@@ -17,6 +18,7 @@ from optopick.report.words import (
     ohms_words,
     proof_words,
     room_words,
+    rule_words,
     set_aside,
     standing,
     tightest,
@@ -89,6 +91,12 @@ def test_a_bound_that_is_none_is_not_told():
     told = verdict(Status.FEASIBLE, (Objective("delay", 1e-6, 0.0, "s"), Objective("power", 2e-3, 1e-3, "W")), None)
     assert told.endswith("(best found in the time given; no design has power below 1 mW)")
     assert verdict(Status.FEASIBLE, (Objective("delay", 1e-6, 0.0, "s"),), None).endswith("no bound shown in it)")
+
+
+def test_a_rule_does_not_say_again_the_value_beside_it():
+    assert rule_words(Assumed("A", "c_be", "14 pF", "14 pF (from memory)")) == "from memory"
+    assert rule_words(Assumed("A", "c_be", "14 pF", "14 pFs at the most (from memory)")).startswith("14 pFs")
+    assert rule_words(Assumed("A", "tau_0", "1 µs", "what is left (charge control)")) == "what is left (charge control)"
 
 
 def test_ohms():

@@ -35,7 +35,7 @@ from optopick.result import Design
 class Stage:
     """The output stage at every vertex; see the glossary of optopick.physics.
 
-    i_ceo: dark current [A]; i_dark: LED current that would carry it [A]; i_rest: that and what is left in the dark LED [A].
+    i_ceo: dark current [A]; i_dark: LED current that would carry it [A]; i_rest: that and what the dark LED keeps [A].
     """
 
     h: Array

@@ -19,6 +19,7 @@ from optopick.cautions import cautions
 from optopick.coupler import Coupler, Led
 from optopick.physics.charge import J_V_BE
 from optopick.physics.led import branch_current, forward_voltage
+from optopick.report.words import rule_words
 from optopick.result import Design
 from optopick.simulate.corner import Corner, threshold_pair
 from optopick.simulate.design import simulate_pulse
@@ -102,7 +103,7 @@ def _comments(s: Scene) -> Iterator[str]:
     yield "*"
     yield "* Assumed, because the table does not say:" if assumed else "* The table left nothing to assume."
     for item in assumed:
-        yield from _comment(f"{item.parameter} = {item.value}: {item.rule}", "* - ")
+        yield from _comment(f"{item.parameter} = {item.value}: {rule_words(item)}", "* - ")
 
 
 RULES = (

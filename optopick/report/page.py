@@ -34,6 +34,7 @@ from optopick.report.words import (
     ohms_words,
     proof_words,
     room_words,
+    rule_words,
     set_aside,
     standing,
     verdict,
@@ -61,19 +62,20 @@ def page(document: Document) -> str:
     if document.review and document.coupler:
         context |= _of_design(document, document.review, document.coupler)
     context |= _optional(document)
-    return _environment().get_template("page.html.jinja").render(context)
+    return environment().get_template("page.html.jinja").render(context)
 
 
 @cache
-def _environment() -> Environment:
-    environment = Environment(
+def environment() -> Environment:
+    """The templates, and the helpers that they may call."""
+    made = Environment(
         loader=PackageLoader("optopick.report", "templates"),
         autoescape=True,
         undefined=StrictUndefined,
         trim_blocks=True,
         lstrip_blocks=True,
     )
-    environment.globals |= {
+    made.globals |= {
         "amount": amount,
         "number": _number,
         "state": _state,
@@ -86,9 +88,10 @@ def _environment() -> Environment:
         "margin_bar": margin_bar,
         "ohms_words": ohms_words,
         "resistors_words": resistors_words,
+        "rule_words": rule_words,
         "time_label": TIMES.__getitem__,
     }
-    return environment
+    return made
 
 
 def _number(value: float, unit: str) -> Markup:
@@ -229,12 +232,12 @@ def _files(document: Document) -> tuple[tuple[InputFile, str, bool, str], ...]:
     """Each input file: what is quoted of it, whether on paper too, and what it is."""
     row = document.coupler.row if document.coupler else None
     return (
-        (document.brief_file, _quoted(document.brief_file, None), True, "Brief"),
-        (document.table_file, _quoted(document.table_file, row), False, "Coupler table"),
+        (document.brief_file, quoted(document.brief_file, None), True, "Brief"),
+        (document.table_file, quoted(document.table_file, row), False, "Coupler table"),
     )
 
 
-def _quoted(file: InputFile, row: int | None) -> str:
+def quoted(file: InputFile, row: int | None) -> str:
     """A file's text; of one too long to carry along the first lines, and the line that was used."""
     text = file.text
     if len(text) <= QUOTED_MOST:

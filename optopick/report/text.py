@@ -22,6 +22,7 @@ from optopick.report.words import (
     ohms_words,
     proof_words,
     room_words,
+    rule_words,
     set_aside,
     verdict,
 )
@@ -154,7 +155,7 @@ def _assumed(assumed: tuple[Assumed, ...]) -> Iterator[RenderableType]:
     table.add_column(no_wrap=True)
     table.add_column()
     for item in assumed:
-        table.add_row(item.parameter, item.value, item.rule)
+        table.add_row(item.parameter, item.value, rule_words(item))
     yield table
 
 

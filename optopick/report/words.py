@@ -6,6 +6,7 @@ import math
 from collections.abc import Sequence
 from functools import lru_cache
 
+from optopick.coupler import Assumed
 from optopick.report.labels import check_label
 from optopick.result import NOT_CHOSEN, Check, Objective, Proof, Rejected, Review, Status
 from optopick.units import format_quantity, format_resistor
@@ -114,6 +115,12 @@ def standing(review: Review) -> str:
     if review.passed:
         return f"all checks hold; tightest: {told}"
     return f"{_failing(review)}; worst: {told}"
+
+
+def rule_words(item: Assumed) -> str:
+    """The rule that filled a gap, without the value where it begins with that: it stands beside it."""
+    said = item.rule.removeprefix(f"{item.value} (")
+    return said if said == item.rule else said.removesuffix(")")
 
 
 def set_aside(rejected: Sequence[Rejected]) -> tuple[tuple[Rejected, ...], int]:
