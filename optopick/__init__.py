@@ -1,7 +1,7 @@
 """optopick: choose an optocoupler and the stock resistors around it, and prove the choice.
 
-`optopick.pick(brief)` gives a `Result`; see optopick.uses.pick. Names load on first use: the solver and the numerical
-libraries take their time to import.
+`optopick.pick(brief)` gives a `Result`, see optopick.uses.pick; `optopick.solve_board(path)` a `BoardResult`, see
+optopick.uses.board. Names load on first use: the solver and the numerical libraries take their time to import.
 """
 
 from __future__ import annotations
@@ -10,10 +10,13 @@ from importlib import import_module
 from typing import TYPE_CHECKING, Any
 
 if TYPE_CHECKING:
+    from optopick.read_board import read_board as load_board
     from optopick.read_brief import read_brief as load_brief
     from optopick.read_couplers import read_couplers as load_couplers
     from optopick.recheck import review
     from optopick.report.frames import front_frame, ranking_frame, sweep_frame
+    from optopick.uses.board import solve_board
+    from optopick.uses.board_front import board_front
     from optopick.uses.pick import alternatives, pick
     from optopick.uses.rank import rank
     from optopick.uses.tradeoff import tradeoff
@@ -21,13 +24,16 @@ if TYPE_CHECKING:
 
 _HOMES = {
     "alternatives": ("optopick.uses.pick", "alternatives"),
+    "board_front": ("optopick.uses.board_front", "board_front"),
     "front_frame": ("optopick.report.frames", "front_frame"),
+    "load_board": ("optopick.read_board", "read_board"),
     "load_brief": ("optopick.read_brief", "read_brief"),
     "load_couplers": ("optopick.read_couplers", "read_couplers"),
     "pick": ("optopick.uses.pick", "pick"),
     "rank": ("optopick.uses.rank", "rank"),
     "ranking_frame": ("optopick.report.frames", "ranking_frame"),
     "review": ("optopick.recheck", "review"),
+    "solve_board": ("optopick.uses.board", "solve_board"),
     "sweep_frame": ("optopick.report.frames", "sweep_frame"),
     "tradeoff": ("optopick.uses.tradeoff", "tradeoff"),
     "why": ("optopick.uses.why", "why"),
@@ -36,13 +42,16 @@ _HOMES = {
 
 __all__ = [
     "alternatives",
+    "board_front",
     "front_frame",
+    "load_board",
     "load_brief",
     "load_couplers",
     "pick",
     "rank",
     "ranking_frame",
     "review",
+    "solve_board",
     "sweep_frame",
     "tradeoff",
     "why",

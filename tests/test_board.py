@@ -18,6 +18,7 @@ from optopick.model.rows import Rows
 from optopick.model.solver import Answer, Program, solve_program
 from optopick.read_board import read_board
 from optopick.read_brief import read_brief
+from optopick.read_couplers import read_couplers
 from optopick.recheck import review
 from optopick.result import Design, Status
 from optopick.uses import board as uses
@@ -27,6 +28,7 @@ from optopick.uses.board import solve_board
 from optopick.uses.board_totals import resistances
 
 PLANT = ROOT / "examples" / "plant"
+DEMO = ROOT / "catalogs" / "demo.csv"
 
 
 def two_links(**limits: float) -> Board:
@@ -211,6 +213,15 @@ class TestExample:
         assert board.limits.couplers
         used = {link.brief.path for link in board.links}
         assert used == set(PLANT.glob("*.toml")) - {PLANT / "board.toml"}
+
+    def test_it_shows_changes_and_shared_packages(self):
+        """Among them a limit on packages that only sharing holds, and a part that can be shared."""
+        board = read_board(PLANT / "board.toml")
+        assert any(link.changes for link in board.links)
+        assert board.limits.packages < sum(link.count for link in board.links)
+        shared = {link.brief for link in board.links if link.grounds == ("logic", "relays")}
+        table = {coupler.part: coupler.channels for coupler in read_couplers(DEMO).couplers}
+        assert any(table[part] > 1 for brief in shared for part in brief.couplers.only)
 
     @pytest.mark.parametrize("path", sorted(PLANT.glob("*.toml")), ids=lambda path: path.stem)
     def test_it_is_said_to_be_invented(self, path):

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import csv
+import json
 from pathlib import Path
 
 import pytest
@@ -296,3 +297,57 @@ def test_a_bill_that_cannot_be_written(board, tmp_path):
     assert ran.code == 2
     assert "parts.csv" in ran.err
     assert ran.out == ""
+
+
+class TestReview:
+    """The folder of a board's design review."""
+
+    def test_it_is_written_beside_the_answer(self, board, tmp_path):
+        folder = tmp_path / "review"
+        path = board("reels = 4")
+        ran = run("board", path, "--output", folder, "--date", "2026-01-15", "--json")
+        assert ran.code == 0, ran
+        assert ran.err == f"optopick: {folder}: board.json, bom.csv, review.html\n"
+        told, kept = json_of(ran), json.loads((folder / "board.json").read_text(encoding="utf-8"))
+        assert told["proof"].pop("seconds") == kept["proof"].pop("seconds")
+        assert told == kept
+        page = (folder / "review.html").read_text(encoding="utf-8")
+        assert "Design review of a board with 2 optocoupler links, 2026-01-15" in page
+        run("board", path, "--csv", tmp_path / "parts.csv")
+        assert (folder / "bom.csv").read_bytes() == (tmp_path / "parts.csv").read_bytes()
+
+    def test_the_same_page_each_time(self, board, tmp_path):
+        pages = []
+        for name in ("one", "two"):
+            assert run("board", board(), "-o", tmp_path / name, "--date", "2026-01-15").code == 0
+            pages.append((tmp_path / name / "review.html").read_bytes())
+        assert pages[0] == pages[1]
+
+    def test_what_is_there_is_replaced_by_force_alone(self, board, tmp_path):
+        path, folder = board(), tmp_path / "review"
+        assert run("board", path, "-o", folder).code == 0
+        before = (folder / "review.html").stat().st_ino
+        ran = run("board", path, "-o", folder)
+        assert ran.code == 2
+        assert "or --force" in ran.err
+        assert ran.out == ""
+        assert (folder / "review.html").stat().st_ino == before
+        # one that does not exist has no bill: the earlier one's goes with it
+        assert run("board", board("reels = 2"), "-o", folder, "--force").code == 3
+        assert sorted(one.name for one in folder.iterdir()) == ["board.json", "review.html"]
+        assert "cannot be kept" in (folder / "review.html").read_text(encoding="utf-8")
+
+    @pytest.mark.parametrize(
+        ("options", "said"),
+        [
+            (("--front", "reels", "--output", "review"), "--output: found --front beside it"),
+            (("--front", "reels", "--csv", "parts.csv"), "--csv: found --front beside it"),
+            (("--force",), "--force: found no --output"),
+            (("--date", "2026-01-15"), "--date: found no --output"),
+        ],
+    )
+    def test_options_that_mean_nothing_together(self, board, options, said):
+        ran = run("board", board(), *options)
+        assert ran.code == 2
+        assert said in ran.err
+        assert ran.out == ""

@@ -1,98 +1,30 @@
-"""A board for people at a terminal, as JSON, and as a bill of materials."""
+"""A board for people at a terminal and as JSON."""
 
 from __future__ import annotations
 
-import csv
-import io
-from collections.abc import Sequence
-from dataclasses import asdict, dataclass, field
+from dataclasses import asdict
 
 from rich.console import Group, RenderableType
 from rich.table import Table
 from rich.text import Text
 
-from optopick.board import BoardGoalName, BoardLimits, reel_of
-from optopick.board_answers import BoardProof, BoardResult, LinkChoice, Needed, Packages
+from optopick.board import BoardLimits
+from optopick.board_answers import BoardResult, LinkChoice, Packages
 from optopick.report.as_json import objective_object, review_object
-from optopick.report.placed import Placed, placed_resistors
+from optopick.report.board_words import board_proof_words, board_verdict, change_words, gave_words, limit_name
 from optopick.report.text_uses import values_text
-from optopick.report.words import amount, margin_words, ohms_words
-from optopick.result import Objective, Status
-
-BILL_COLUMNS = ("quantity", "value", "tolerance", "rating", "used")
+from optopick.report.words import amount, ohms_words
 
 
 def board_text(result: BoardResult, title: str, limits: BoardLimits) -> RenderableType:
     """The whole answer to `board`."""
-    parts: list[RenderableType] = [Text(title, style="bold"), Text(_verdict(result))]
+    parts: list[RenderableType] = [Text(title, style="bold"), Text(board_verdict(result))]
     if not result.links:
-        return Group(*parts, Text(), Text(f"Proof: {_proof_words(result.status, result.proof)}"))
+        return Group(*parts, Text(), Text(f"Proof: {board_proof_words(result.status, result.proof)}"))
     parts += [Text(), _links_table(result), *_changes(result), Text(), _totals(result, limits), Text()]
-    parts.append(Text(f"Proof: {_proof_words(result.status, result.proof)}"))
+    parts.append(Text(f"Proof: {board_proof_words(result.status, result.proof)}"))
     parts += [Text(), Text(f"Left out, no price: {'; '.join(result.unpriced)}.")] if result.unpriced else []
     return Group(*parts, Text(), *(Text(f"Caution: {caution}") for caution in result.cautions))
-
-
-def _verdict(result: BoardResult) -> str:
-    if result.hopeless:
-        names = ", ".join(result.hopeless)
-        have = "has" if len(result.hopeless) == 1 else "have"
-        return f"No board exists: {names} {have} no design even alone; optopick why gives the reasons for a brief."
-    if result.status is Status.INFEASIBLE:
-        return f"No board holds every limit, though every link has designs alone.{_conflict_words(result.conflict)}"
-    if result.status is Status.UNKNOWN:
-        return "Out of time: no board found, and none ruled out."
-    if result.status is Status.OPTIMAL:
-        return _capital("; then ".join(f"least {goal.name}: {_reached(goal)}" for goal in result.goals)) + " (proved)"
-    said = _capital("; then ".join(f"{goal.name}: {_goal_amount(goal, goal.value)}" for goal in result.goals))
-    bounds = " and ".join(f"no board has {goal.name} below {_goal_amount(goal, goal.bound)}" for goal in result.goals)
-    return f"{said} (best found in the time given; {bounds})"
-
-
-def _conflict_words(conflict: Sequence[Needed]) -> str:
-    """Which limits contradict each other, and what each of them would have to be."""
-    if not conflict:
-        return ""
-    stated = [f"{_limit_name(one)} {goal_words(one.name, one.limit)}" for one in conflict]
-    last = stated[-1] if len(stated) == 1 else f"{', '.join(stated[:-1])} and {stated[-1]}"
-    said = f" {_capital(last)} cannot be kept{' together' if len(stated) > 1 else ''}."
-    return said + "".join(f" {_needed_words(one)}" for one in conflict)
-
-
-def _needed_words(one: Needed) -> str:
-    if one.least is None:
-        none = f"No {_limit_name(one)} helps" if one.proved else f"What {_limit_name(one)} would do is not known"
-        return f"{none} with all other limits as they are."
-    least = "at least" if one.proved else "at most as found so far"
-    return f"{_capital(_limit_name(one))} would have to be {least} {goal_words(one.name, one.least)}."
-
-
-def _limit_name(one: Needed) -> str:
-    return "price" if one.name == BoardGoalName.COST else one.name
-
-
-def _capital(text: str) -> str:
-    return text[:1].upper() + text[1:]
-
-
-def goal_words(name: str, value: float) -> str:
-    """The value of a board's goal in words."""
-    if name == BoardGoalName.POWER:
-        return amount(value, "W")
-    if name == BoardGoalName.COST:
-        return f"{value:.4g}"
-    return f"{amount(value, '%')} of its limit" if name == BoardGoalName.EDGE else f"{value:.0f}"
-
-
-def _goal_amount(goal: Objective, value: float) -> str:
-    return goal_words(goal.name, value)
-
-
-def _reached(goal: Objective) -> str:
-    """The value reached, and the least there is where some of it was given for the second goal."""
-    said = _goal_amount(goal, goal.value)
-    given = goal.bound < goal.value * (1 - 1e-5)
-    return f"{said}, {_goal_amount(goal, goal.bound)} without what is given for the second goal" if given else said
 
 
 def _links_table(result: BoardResult) -> RenderableType:
@@ -105,7 +37,7 @@ def _links_table(result: BoardResult) -> RenderableType:
         table.add_column(heading, justify="right", no_wrap=True)
     for one in result.links:
         design = one.review.design
-        powers = (amount(one.power, "W"), amount(one.alone, "W"), _gave(one))
+        powers = (amount(one.power, "W"), amount(one.alone, "W"), gave_words(one))
         table.add_row(Text(one.link.name), f"{one.link.count} ×", design.coupler, values_text(design), *powers)
     return table
 
@@ -113,17 +45,8 @@ def _links_table(result: BoardResult) -> RenderableType:
 def _changes(result: BoardResult) -> list[Text]:
     """What links change in their briefs, one line for each that does."""
     changed = [one.link for one in result.links if one.link.changes]
-    lines = [f"{link.name}: {', '.join(_change(*one) for one in link.changes)}" for link in changed]
+    lines = [f"{link.name}: {', '.join(change_words(*one) for one in link.changes)}" for link in changed]
     return [Text(), Text("Changed in their briefs:"), *map(Text, lines)] if lines else []
-
-
-def _change(key: str, value: str | None) -> str:
-    return f"no {key}" if value is None else f"{key} = {value}"
-
-
-def _gave(one: LinkChoice) -> str:
-    """How much more power than alone; nothing where it is the same to within the proof."""
-    return "–" if one.gave < 1e-5 else margin_words(one.gave)
 
 
 def _totals(result: BoardResult, limits: BoardLimits) -> RenderableType:
@@ -156,18 +79,6 @@ def _of(count: int, limit: int | None) -> str:
     return f"{count}" if limit is None else f"{count} of {limit}"
 
 
-def _proof_words(status: Status, proof: BoardProof) -> str:
-    claim = {
-        Status.OPTIMAL: "no other board does better; every link re-checked alone at every corner",
-        Status.FEASIBLE: "the best found is given, not proved best; every link re-checked alone at every corner",
-        Status.INFEASIBLE: "no choice of stock values and couplers holds every limit",
-        Status.UNKNOWN: "not decided",
-    }[status]
-    size = f"{proof.columns:,} columns and {proof.rows:,} rows at the end" if proof.columns else "no model needed"
-    how = f"{proof.solves} solver calls, {proof.cuts} designs cut, {proof.seconds:.2g} s; {proof.solver}"
-    return f"{claim} ({size}; {how})."
-
-
 def board_object(result: BoardResult, title: str, limits: BoardLimits) -> dict[str, object]:
     """The object that `board --json` prints."""
     return {
@@ -186,7 +97,7 @@ def board_object(result: BoardResult, title: str, limits: BoardLimits) -> dict[s
         "power": result.power if result.links else None,
         "power_alone": result.alone if result.links else None,
         "hopeless": list(result.hopeless),
-        "conflict": [asdict(one) | {"name": _limit_name(one)} for one in result.conflict],
+        "conflict": [asdict(one) | {"name": limit_name(one)} for one in result.conflict],
         "proof": asdict(result.proof),
         "cautions": list(result.cautions),
     }
@@ -203,64 +114,3 @@ def _link_object(one: LinkChoice) -> dict[str, object]:
     named["changes"] = dict(one.link.changes)
     # the power of one of it stands in the review, under the same name as in the answer to pick
     return named | review_object(one.review) | {"power_alone": one.alone, "gave": one.gave}
-
-
-@dataclass
-class _Line:
-    """One kind of part: how many, where it is used, and for resistors what the stocks say of it."""
-
-    value: str
-    quantity: int = 0
-    used: list[str] = field(default_factory=list)
-    placed: list[Placed] = field(default_factory=list)
-
-    def add(self, quantity: int, where: str) -> None:
-        self.quantity += quantity
-        self.used.append(where)
-
-    @property
-    def cells(self) -> tuple[object, ...]:
-        """The line as BILL_COLUMNS say: the tightest tolerance and the highest ratings, which serve everywhere."""
-        tolerances = [one.tolerance for one in self.placed if one.tolerance is not None]
-        powers = [one.power for one in self.placed if one.power is not None]
-        voltages = [one.voltage for one in self.placed if one.voltage is not None]
-        tolerance = amount(min(tolerances), "%") if tolerances else ""
-        rating = f"{amount(max(powers), 'W')}, {amount(max(voltages), 'V')}" if powers and voltages else ""
-        return self.quantity, self.value, tolerance, rating, "; ".join(self.used)
-
-
-def board_bill(result: BoardResult) -> str:
-    """Couplers, then resistors by value, then diodes, as CSV: one line for each reel."""
-    out = io.StringIO()
-    writer = csv.writer(out, lineterminator="\n")
-    writer.writerow(BILL_COLUMNS)
-    for line in (*_coupler_lines(result), *_resistor_lines(result), *_diode_lines(result)):
-        writer.writerow(line.cells)
-    return out.getvalue()
-
-
-def _coupler_lines(result: BoardResult) -> list[_Line]:
-    """Packages, with the links whose channels are in them."""
-    lines = {part: _Line(part) for part in result.couplers}
-    for one in result.packages:
-        lines[one.part].quantity += one.count
-        lines[one.part].used += [name for name, _ in one.links]
-    return list(lines.values())
-
-
-def _resistor_lines(result: BoardResult) -> list[_Line]:
-    lines: dict[float, _Line] = {}
-    for one in result.links:
-        for placed in placed_resistors(one.link.brief, one.review.design):
-            line = lines.setdefault(reel_of(placed.ohms), _Line(ohms_words(placed.ohms)))
-            line.placed.append(placed)
-            line.add(placed.pieces * one.link.count, f"{one.link.name} {placed.position}")
-    return [lines[ohms] for ohms in sorted(lines)]
-
-
-def _diode_lines(result: BoardResult) -> list[_Line]:
-    line = _Line("diode")
-    for one in result.links:
-        if one.review.design.reverse_diode:
-            line.add(one.link.count, f"{one.link.name} reverse_diode")
-    return [line] if line.quantity else []

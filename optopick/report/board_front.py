@@ -11,7 +11,7 @@ from rich.text import Text
 from optopick.board import BoardGoalName
 from optopick.board_answers import BoardFront, FrontPoint
 from optopick.report.as_json import objective_object
-from optopick.report.board import goal_words
+from optopick.report.board_words import goal_words
 from optopick.report.words import margin_words, ohms_words
 from optopick.result import Status
 

@@ -19,7 +19,7 @@ from optopick.model.board_search import BoardFound, BoardSearch, Place
 from optopick.model.board_seats import Taken
 from optopick.model.search import STEP
 from optopick.model.solver import Clock, highs_name
-from optopick.report.board import goal_words
+from optopick.report.board_words import goal_words
 from optopick.report.words import margin_words
 from optopick.result import Objective, Status
 from optopick.uses.board_groups import Group, groups_of

@@ -48,15 +48,6 @@ DOCUMENTS = {
 
 
 @pytest.fixture(scope="session")
-def browser():
-    """One Chromium; playwright gives it a fresh profile of its own and takes that away again."""
-    with sync_api.sync_playwright() as playwright:
-        started = playwright.chromium.launch(executable_path=CHROMIUM, headless=True, args=FLAGS)
-        yield started
-        started.close()
-
-
-@pytest.fixture(scope="session")
 def files(tmp_path_factory) -> dict[str, Path]:
     """The pages as files."""
     folder = tmp_path_factory.mktemp("pages")
