@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 import sys
 from pathlib import Path
 
@@ -73,11 +74,14 @@ def test_checks_open_by_keyboard(browser, pages):
 
 @pytest.mark.skipif(shutil.which("pdftotext") is None, reason="pdftotext is missing (Debian: poppler-utils)")
 def test_on_paper_every_check_is_there(browser, pages, tmp_path):
-    """What is folded on the screen is printed: the last check of each link, and the briefs."""
+    """Nothing is cut at the sides, and what is folded on the screen is printed: every check, and the briefs."""
     path = tmp_path / "page.pdf"
     with Shown(browser, pages["full"]) as shown:
         shown.page.pdf(path=str(path), format="A4")
     printed = "".join(pdf_words(path))
+    for left, right, word in re.findall(r'<word xMin="([-\d.]+)".*?xMax="([-\d.]+)".*?>(.*?)</word>', printed):
+        assert float(left) >= 36, word
+        assert float(right) <= 595 - 36, word
     told = alike(samples.full().result)
     for name in {check.name for one in told for check in one.review.checks}:
         word = check_label(name).split()[0]
