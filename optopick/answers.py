@@ -12,6 +12,8 @@ from optopick.result import Check, Objective, Rejected, Result, Review, Status
 CAUSES: dict[str, tuple[str, ...]] = {
     "CTR": ("ctr",),
     "light": ("light",),
+    "V_BE": ("v_be",),
+    "storage": ("storage",),
     "V_F": ("v_f",),
     "age": ("age",),
     "temp": ("temperature",),

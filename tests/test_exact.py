@@ -17,10 +17,11 @@ from enumeration_kinds import grid_of, grids_of
 from test_enumeration import shortened
 from test_enumeration_kinds import winner_of
 
-from optopick.answers import Change, Front
+from optopick.answers import CAUSES, Change, Front
 from optopick.brief import Brief, Goal, GoalName, OutputCircuit, Span
 from optopick.coupler import Coupler
 from optopick.eseries import series_values
+from optopick.recheck.vertices import ORDER
 from optopick.result import Design, Status
 from optopick.uses.budget import budget
 from optopick.uses.nearest import nearest
@@ -364,3 +365,13 @@ def test_budget(n):
         gains = {share.check: rooms[share.check][k] - grid.rooms[share.check][k] for share in shares}
         assert max(gains.values()) > 1e-4
         assert {share.check: share.cost[cause] for share in shares} == pytest.approx(gains, rel=1e-6, abs=1e-6), cause
+    for cause, alike in (("V_BE", {"v_be_spread": 0.0}), ("storage", {"tau_s_spread": 1.0})):
+        unit = replace(coupler, transistor=replace(coupler.transistor, **alike))
+        rooms = grid_of(brief, unit, every_vertex=True).rooms
+        gains = {share.check: rooms[share.check][k] - grid.rooms[share.check][k] for share in shares}
+        assert {share.check: share.cost[cause] for share in shares} == pytest.approx(gains, rel=1e-6, abs=1e-6), cause
+
+
+def test_the_budget_knows_every_cause():
+    """What is uncertain about a design stands under one cause, so that nothing of it is left with all nominal."""
+    assert sorted(axis for axes in CAUSES.values() for axis in axes) == sorted(ORDER)

@@ -166,8 +166,9 @@ def budget_text(shares: Sequence[Share]) -> RenderableType:
         table.add_row(check_label(share.check), _percent(share.worst), _percent(share.nominal), *costs)
     note = Text(
         "left: at the worst corner; nominal: with everything at its nominal value; then the room that comes back if "
-        "one cause alone stands there: CTR bin, the LED's light at a given CTR, its forward voltage, ageing, "
-        "temperature, drive supply and drop, output supply, resistor tolerance."
+        "one cause alone stands there: CTR bin, the LED's light at a given CTR, the transistor's base-emitter voltage "
+        "and storage constant, the LED's forward voltage, ageing, temperature, drive supply and drop, output supply, "
+        "resistor tolerance."
     )
     return Group(Text(), Text("Margin budget", style="bold"), table, note)
 
