@@ -7,7 +7,7 @@ import json
 from pathlib import Path
 
 import pytest
-from cli_links import CHECK, FIELDS, TINY, json_of
+from cli_links import CHECK, FIELDS, TINY, changed, json_of
 from command import run
 
 TWO = """\
@@ -26,25 +26,14 @@ brief = "{second}"
 """
 
 
-def tighter(folder: Path, name: str, *changes: tuple[str, str]) -> Path:
-    """The tiny brief with texts replaced."""
-    text = TINY.read_text(encoding="utf-8").replace('"tiny.csv"', f'"{TINY.with_name("tiny.csv")}"')
-    for old, new in changes:
-        assert old in text, old
-        text = text.replace(old, new, 1)
-    path = folder / name
-    path.write_text(text, encoding="utf-8")
-    return path
-
-
 @pytest.fixture
 def board(tmp_path):
     """Writes a board of two links, the second of which is slower."""
 
     def write(limits: str = "", goal: str = "power", second: tuple[tuple[str, str], ...] = ()) -> Path:
-        one = tighter(tmp_path, "one.toml")
+        one = changed(tmp_path, name="one.toml")
         slower = (("edge_time", "#edge_time"), ("delay", "#delay"), ('["2k2", "4k7", "10k"]', '["4k7", "10k", "12k"]'))
-        two = tighter(tmp_path, "two.toml", *slower, *second)
+        two = changed(tmp_path, *slower, *second, name="two.toml")
         path = tmp_path / "board.toml"
         path.write_text(TWO.format(limits=limits, goal=goal, first=one.name, second=two.name), encoding="utf-8")
         return path

@@ -127,7 +127,7 @@ def progress() -> Callable[[str, int, int], None]:
         told = f"optopick: {stage}{count}, {now - started:.0f} s"
         if here:
             told = f"{WIPED}{told[: get_terminal_size().columns - 1]}"
-            _open.append(told)
+            _open[:] = [told]
         click.echo(told, err=True, nl=not here)
 
     return report

@@ -172,13 +172,17 @@ class SheetPoint:
     v_inner: float
 
 
+def sheet_overdrive(transfer: Transfer, transistor: Transistor) -> float:
+    """Overdrive of the weakest unit at the saturation row of the sheet [1]: what it could carry over what it does."""
+    return float(collector_current(transfer, transfer.ctr_min, 1.0, transistor.sat_i_f)) / transistor.sat_i_c
+
+
 def sheet_point(transfer: Transfer, transistor: Transistor, darlington: bool) -> SheetPoint:
     """The saturation row of a coupler's sheet; a darlington's output lies above the first transistor's base."""
-    carried = float(collector_current(transfer, transfer.ctr_min, 1.0, transistor.sat_i_f))
     return SheetPoint(
         v_ce_sat=transistor.v_ce_sat,
         i_c=transistor.sat_i_c,
-        overdrive=carried / transistor.sat_i_c,
+        overdrive=sheet_overdrive(transfer, transistor),
         h_fe=transistor.h_fe,
         beta_r=transistor.beta_r,
         v_inner=transistor.v_be / 2 if darlington else 0.0,

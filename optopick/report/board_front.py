@@ -11,7 +11,7 @@ from rich.text import Text
 from optopick.board import BoardGoalName
 from optopick.board_answers import BoardFront, FrontPoint
 from optopick.report.as_json import objective_object
-from optopick.report.board_words import goal_words
+from optopick.report.board_words import UNKNOWN, goal_words, hopeless_words
 from optopick.report.words import margin_words, ohms_words
 from optopick.result import Status
 
@@ -30,13 +30,11 @@ def front_text(front: BoardFront, title: str) -> RenderableType:
 
 def _verdict(front: BoardFront) -> str:
     if front.hopeless:
-        names = ", ".join(front.hopeless)
-        have = "has" if len(front.hopeless) == 1 else "have"
-        return f"No board exists: {names} {have} no design even alone; optopick why gives the reasons for a brief."
+        return hopeless_words(front.hopeless)
     if front.status is Status.INFEASIBLE:
         return f"No board holds the other limits, whatever the {front.count}; without --front the reasons are given."
     if front.status is Status.UNKNOWN:
-        return "Out of time: no board found, and none ruled out."
+        return UNKNOWN
     proof = "each proved" if front.complete else "out of time before each was proved"
     return f"Least {front.goal} for each number of {front.count}, from the fewest to where more gain nothing ({proof})"
 

@@ -9,17 +9,25 @@ from optopick.board_answers import BoardProof, BoardResult, LinkChoice, Needed
 from optopick.report.words import amount, margin_words
 from optopick.result import Objective, Status
 
+UNKNOWN = "Out of time: no board found, and none ruled out."
+
+
+def hopeless_words(links: Sequence[str]) -> str:
+    """That no board exists, as these links have no design even alone."""
+    have = "has" if len(links) == 1 else "have"
+    return (
+        f"No board exists: {', '.join(links)} {have} no design even alone; optopick why gives the reasons for a brief."
+    )
+
 
 def board_verdict(result: BoardResult) -> str:
     """The answer in one sentence."""
     if result.hopeless:
-        names = ", ".join(result.hopeless)
-        have = "has" if len(result.hopeless) == 1 else "have"
-        return f"No board exists: {names} {have} no design even alone; optopick why gives the reasons for a brief."
+        return hopeless_words(result.hopeless)
     if result.status is Status.INFEASIBLE:
         return f"No board holds every limit, though every link has designs alone.{_conflict_words(result.conflict)}"
     if result.status is Status.UNKNOWN:
-        return "Out of time: no board found, and none ruled out."
+        return UNKNOWN
     if result.status is Status.OPTIMAL:
         return _capital("; then ".join(f"least {goal.name}: {_reached(goal)}" for goal in result.goals)) + " (proved)"
     said = _capital("; then ".join(f"{goal.name}: {goal_words(goal.name, goal.value)}" for goal in result.goals))

@@ -25,8 +25,8 @@ from optopick.coupler import Coupler, Kind, Transfer, Transistor
 from optopick.physics.charge import J_V_BE, M_J, V_J
 from optopick.physics.leakage import dark_current
 from optopick.physics.led import thermal_voltage
-from optopick.physics.saturation import saturation_shape
-from optopick.physics.transfer import collector_current, light_factor, temperature_factor
+from optopick.physics.saturation import saturation_shape, sheet_overdrive
+from optopick.physics.transfer import light_factor, temperature_factor
 from optopick.simulate.corner import Corner
 from optopick.simulate.errors import NotSimulatedError
 from optopick.simulate.gain import GainLaw, gain_law
@@ -140,7 +140,7 @@ def reverse_transit(tau_s: float, tau_f: float, h_fe: float, beta_r: float) -> f
 
 def _v_off(transfer: Transfer, transistor: Transistor, v_t: float, h_fe: float) -> float:
     """What the table's v_ce_sat has above the saturation voltage of the junctions in its own row [V]."""
-    sheet = float(collector_current(transfer, transfer.ctr_min, 1.0, transistor.sat_i_f)) / transistor.sat_i_c
+    sheet = sheet_overdrive(transfer, transistor)
     overdrive = max(sheet, LEAST_OVERDRIVE) if math.isfinite(sheet) else LEAST_OVERDRIVE
     junctions = v_t * math.log(float(saturation_shape(overdrive, h_fe, transistor.beta_r)))
     return max(transistor.v_ce_sat - junctions, 0.0)

@@ -26,10 +26,6 @@ def chosen_design(
             raise InputError([Mistake("--coupler", "nothing, beside resistor values", "the part they belong to")])
         found = pick(brief, progress=progress).design
         return None if found is None else (coupler_named(brief, found.coupler), found)
-    missing = [name for name in ("r_led", "r_load") if texts[name] is None]
-    if missing:
-        options = [f"--{name.replace('_', '-')}" for name in missing]
-        raise InputError([Mistake(option, "nothing, beside --coupler", 'a value such as "2k2"') for option in options])
     design, coupler = design_from_text(part, texts), coupler_named(brief, part)
     refuse_missing_pin(coupler, design)
     return coupler, design

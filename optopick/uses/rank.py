@@ -76,8 +76,13 @@ def ranking_of(
                 others.append(answer)
     except KeyboardInterrupt:
         complete = False
-    ranked.sort(key=lambda one: (one.objective.value, one.second.value, one.coupler.part))
+    ranked.sort(key=order)
     return Ranking(tuple(ranked), tuple(r for r in others if r.reason != NOT_CHOSEN), complete)
+
+
+def order(one: Ranked) -> tuple[float, float, str]:
+    """What couplers are ranked by."""
+    return one.objective.value, one.second.value, one.coupler.part
 
 
 @dataclass(frozen=True)
@@ -145,10 +150,13 @@ def _at_least(brief: Brief, entry: Entry, conflict: Sequence[str]) -> str:
 
 
 def _judge(brief: Brief, entry: Entry) -> Contradicts:
-    """Whether a coupler has no design without some limits: by ranges, or by the solver where ranges do not tell."""
+    """Whether a coupler has no design without some limits: by ranges, or by the solver where ranges do not tell.
+
+    That it has none with all of them is known: it would not be rejected.
+    """
     if refuted(entry.model, ask_of(brief)):
-        return lambda dropped: refuted(entry.model, ask_of(brief, dropped))
-    return lambda dropped: exists(entry.model, ask_of(brief, dropped), Clock()) is False
+        return lambda dropped: not dropped or refuted(entry.model, ask_of(brief, dropped))
+    return lambda dropped: not dropped or exists(entry.model, ask_of(brief, dropped), Clock()) is False
 
 
 def _without(brief: Brief, entry: Entry, names: Sequence[str]) -> str:

@@ -23,7 +23,7 @@ from optopick.recheck import review
 from optopick.result import NOT_CHOSEN, Rejected, Review, goal_of
 from optopick.stream_answers import StreamedRanking
 from optopick.uses.engine import AGREE, Progress, ask_of, guard_of, quiet, unusable
-from optopick.uses.rank import Task, rank_one
+from optopick.uses.rank import Task, order, rank_one
 from optopick.uses.results_file import Designed, Outcome, PassedOver, Refused, ResultsFile
 from optopick.uses.workers import Processes, Workers
 
@@ -172,7 +172,7 @@ class _Run:
         if not isinstance(known, Designed):
             return
         key = (known.objective.value, known.second.value, known.part)
-        if len(self.best) == self.top and key > _order(self.best[-1]):
+        if len(self.best) == self.top and key > order(self.best[-1]):
             return
         coupler = row.resolved
         if isinstance(coupler, Coupler):
@@ -187,12 +187,8 @@ class _Run:
         return reviewed
 
     def _enter(self, one: Ranked) -> None:
-        insort(self.best, one, key=_order)
+        insort(self.best, one, key=order)
         del self.best[self.top :]
-
-
-def _order(one: Ranked) -> tuple[float, float, str]:
-    return one.objective.value, one.second.value, one.coupler.part
 
 
 def _outcome(answer: Ranked | Rejected | PassedOver) -> Outcome:

@@ -7,6 +7,7 @@ from __future__ import annotations
 
 import fcntl
 import json
+import math
 import os
 import sqlite3
 from dataclasses import asdict, dataclass, replace
@@ -21,7 +22,6 @@ from optopick.errors import InputError, Mistake
 from optopick.result import Design, Objective, Status
 
 FORMAT = 1
-NEVER = float("inf")
 
 
 @dataclass(frozen=True)
@@ -198,7 +198,7 @@ def _told(outcome: Outcome) -> dict[str, object]:
 
 def _goal(objective: Objective) -> dict[str, object]:
     """A goal with null for what never ends."""
-    return {name: None if value == NEVER else value for name, value in asdict(objective).items()}
+    return {name: None if value == math.inf else value for name, value in asdict(objective).items()}
 
 
 def _outcome(found: dict[str, Any]) -> Outcome:
@@ -213,5 +213,5 @@ def _outcome(found: dict[str, Any]) -> Outcome:
 
 
 def _objective(found: dict[str, Any]) -> Objective:
-    value, bound = (NEVER if found[name] is None else float(found[name]) for name in ("value", "bound"))
+    value, bound = (math.inf if found[name] is None else float(found[name]) for name in ("value", "bound"))
     return Objective(str(found["name"]), value, bound, str(found["unit"]))
